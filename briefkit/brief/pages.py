@@ -1,0 +1,147 @@
+"""What a handout is made of: finished strings in small frozen blocks, and the template that sets them.
+
+Nothing is computed here. `crew_page` fills a `CrewPage`, `export` adds the author's analysis, `render` sets the page.
+"""
+
+from __future__ import annotations
+
+import re
+from dataclasses import dataclass
+from enum import StrEnum
+from functools import cache
+from pathlib import Path
+
+import jinja2
+from markupsafe import Markup
+
+from briefkit.errors import BuildError
+
+
+class Ink(StrEnum):
+    """Whose number it is: decides the ink, and nothing else."""
+
+    MANUAL = "manual"  # typed from the flight manual: black
+    COMPUTED = "computed"  # ours: the one deep blue
+    CONTEXT = "context"  # neither: grey
+
+
+@dataclass(frozen=True)
+class Grid:
+    """A small table of finished strings; every row as long as the header.
+
+    `caption` names the table (a screen reader says it first). `beside` are short notes set at the table's side on
+    paper and below it on a phone. The first cell of a row is its heading unless `row_headings` is False; `numbers`
+    sets the other cells as right-aligned figures, otherwise as text.
+    """
+
+    header: tuple[str, ...]
+    rows: tuple[tuple[str, ...], ...]
+    caption: str
+    ink: Ink = Ink.MANUAL
+    beside: tuple[str, ...] = ()
+    numbers: bool = True
+    row_headings: bool = True
+
+    def __post_init__(self) -> None:
+        for row in self.rows:
+            if len(row) != len(self.header):
+                raise BuildError(f"table {self.caption!r}: a row of {len(row)} cells under {len(self.header)} headings")
+
+
+@dataclass(frozen=True)
+class Section:
+    """One numbered or titled part of a page, in the order it is set: before, grid, figure, points, after.
+
+    `aside` stands at the right of the heading ("KIAS, power on"); `points` are list items; `figure` is a finished
+    fragment of `figures.still`, trusted as it stands (hardening is last).
+    """
+
+    heading: str
+    aside: str = ""
+    before: tuple[str, ...] = ()
+    grid: Grid | None = None
+    figure: str = ""
+    points: tuple[str, ...] = ()
+    after: tuple[str, ...] = ()
+
+    @property
+    def run_in(self) -> bool:
+        """Sentences only: on the crew's sheet the heading runs into the first of them."""
+        return self.grid is None and not self.figure and not self.points
+
+
+@dataclass(frozen=True)
+class CrewPage:
+    """Pages 1 to 4 of a handout as finished strings.
+
+    `mark` is "DRAFT: not for crews" or empty; `revision` is "rev 0"; `expires` is "expires 29 Feb 2032". `heading` is
+    the type, configuration and work area; `under` the lines below it. `front` is sheet 1, `recognition` sheet 2,
+    `analysis` goes before the author's notebook, `control` after it; `slip` is a sheet of its own.
+    """
+
+    number: str
+    revision: str
+    title: str
+    expires: str
+    mark: str
+    heading: str
+    under: tuple[str, ...]
+    front: tuple[Section, ...]
+    recognition: tuple[Section, ...]
+    analysis: tuple[Section, ...]
+    control: tuple[Section, ...]
+    slip: Section | None = None
+    invented: str = ""
+
+    @property
+    def running(self) -> str:
+        """The line every printed page carries."""
+        return " | ".join(part for part in (self.mark, f"{self.number} {self.revision}", self.expires) if part)
+
+
+def template_folder() -> Path:
+    """The handout's template and style: inside the package in a wheel, beside it in a checkout."""
+    package = Path(__file__).resolve().parents[1]
+    for folder in (package / "templates" / "handout", package.parent / "templates" / "handout"):
+        if folder.is_dir():
+            return folder
+    raise BuildError("the handout template is missing from this installation; install briefkit again")
+
+
+def render(page: CrewPage, analysis: tuple[str, ...]) -> str:
+    """The handout before hardening. `analysis` are the notebook's finished fragments, in order.
+
+    Raises:
+        BuildError: the template is missing.
+    """
+    return _set("handout.html.j2", page=page, analysis=tuple(map(Markup, analysis)))
+
+
+def render_plain(template: str, **values: object) -> str:
+    """A plain sheet (read-back, index) in the handout's own style, before hardening."""
+    return _set(template, **values)
+
+
+def _set(template: str, **values: object) -> str:
+    style = (template_folder() / "handout.css").read_text(encoding="utf-8")
+    return _environment().get_template(template).render(style=Markup(style), **values)
+
+
+@cache
+def _environment() -> jinja2.Environment:
+    environment = jinja2.Environment(
+        loader=jinja2.FileSystemLoader(template_folder()),
+        autoescape=True,
+        undefined=jinja2.StrictUndefined,
+        trim_blocks=True,
+        lstrip_blocks=True,
+        keep_trailing_newline=True,
+    )
+    environment.filters["css_string"] = css_string
+    environment.filters["fragment"] = Markup
+    return environment
+
+
+def css_string(text: str) -> Markup:
+    """Text as the inside of a CSS string: everything but plain letters, digits and spaces is written as its code."""
+    return Markup(re.sub(r"[^A-Za-z0-9 ]", lambda match: f"\\{ord(match[0]):06x}", text))
