@@ -1,0 +1,1 @@
+"""What a person typed: the aircraft with its manual's charts and limits, and the operation."""

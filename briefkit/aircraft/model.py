@@ -1,0 +1,233 @@
+"""The aircraft as its author stated it: frozen values in SI, each with the text as typed, its source and its spread."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+from enum import StrEnum
+
+import numpy as np
+from numpy.typing import NDArray
+
+from briefkit import units
+from briefkit.aircraft.chart import VneChart
+from briefkit.errors import OutsideCalibration, Reason
+from briefkit.physics import atmosphere
+
+Floats = NDArray[np.float64]
+
+
+class Hub(StrEnum):
+    """How the blades are held; decides coning freedom and the words of the cues."""
+
+    TEETERING = "teetering"
+    ARTICULATED = "articulated"
+    HINGELESS = "hingeless"
+
+
+class Rotation(StrEnum):
+    """Seen from above."""
+
+    ANTICLOCKWISE = "anticlockwise"
+    CLOCKWISE = "clockwise"
+
+
+@dataclass(frozen=True)
+class Stated:
+    """A number as its author stated it.
+
+    `value` and `spread` (the half-width the author would bet on at 95 %) are SI; `text` is what was typed, so that a
+    limit prints as typed; `basis` is empty for a known value and names the published basis of the class range where
+    the author wrote "unknown".
+    """
+
+    value: float
+    text: str
+    source: str
+    spread: float = 0.0
+    basis: str = ""
+
+    @property
+    def known(self) -> bool:
+        """False where the author wrote "unknown" and a class range stands in."""
+        return not self.basis
+
+
+@dataclass(frozen=True)
+class DisplayUnits:
+    """The units of the type's manual and weight report: all doors show these."""
+
+    speed: str = "kt"
+    height: str = "ft"
+    mass: str = "lb"
+    pressure: str = "inHg"
+
+    def speed_label(self, kind: units.SpeedKind = units.SpeedKind.INDICATED) -> str:
+        """ "KIAS", "km/h IAS", "mph IAS"; likewise for calibrated and true."""
+        return f"K{kind}" if self.speed == "kt" else f"{self.speed} {kind}"
+
+    @property
+    def speed_step(self) -> float:
+        """What a reduction is rounded up to: 5 kt, 10 km/h, 5 mph per printed row."""
+        return 10.0 if self.speed == "km/h" else 5.0
+
+
+@dataclass(frozen=True)
+class Limits:
+    """The manual's limits. Temperatures in kelvin, `isa_deviation` above standard, rotor speeds as fractions."""
+
+    max_mass: Stated
+    min_mass: Stated
+    max_altitude: Stated
+    min_temperature: Stated
+    isa_deviation: Stated | None
+    max_temperature: Stated | None
+    max_bank: Stated | None
+    rotor_on: tuple[Stated, Stated]
+    rotor_off: tuple[Stated, Stated]
+    climb_speed: Stated
+    source: str
+
+    def max_temperature_at(self, pressure_altitude: Floats | float) -> Floats:
+        """Highest permitted outside air temperature [K] at a pressure altitude [m] (-1,000 to 11,000)."""
+        height = np.asarray(pressure_altitude, dtype=float)
+        highest = np.full(height.shape, np.inf)
+        if self.isa_deviation is not None:
+            highest = atmosphere.temperature_at(height) + self.isa_deviation.value
+        if self.max_temperature is not None:
+            highest = np.minimum(highest, self.max_temperature.value)
+        return highest
+
+
+@dataclass(frozen=True)
+class Calibration:
+    """Indicated against calibrated airspeed [m/s], both rising. "None in manual": empty arrays, one stated spread.
+
+    With none, indicated is taken as calibrated and `spread` [m/s] is taken once, on the difference of two speeds.
+    """
+
+    indicated: tuple[float, ...]
+    calibrated: tuple[float, ...]
+    source: str
+    spread: float = 0.0
+    text: tuple[tuple[str, ...], ...] = ()
+
+    @property
+    def in_manual(self) -> bool:
+        return bool(self.indicated)
+
+    @property
+    def lowest_indicated(self) -> float:
+        return self.indicated[0] if self.indicated else 0.0
+
+    @property
+    def highest_indicated(self) -> float:
+        return self.indicated[-1] if self.indicated else np.inf
+
+    def to_calibrated(self, indicated: Floats | float) -> Floats:
+        """Indicated [m/s] to calibrated [m/s], by straight lines; NaN outside the table (callers give the reason)."""
+        if not self.indicated:
+            return np.asarray(indicated, dtype=float)
+        return np.interp(indicated, self.indicated, self.calibrated, left=np.nan, right=np.nan)
+
+    def to_indicated(self, calibrated: Floats | float) -> Floats:
+        """Calibrated [m/s] to indicated [m/s]; NaN outside the table (callers give the reason)."""
+        if not self.indicated:
+            return np.asarray(calibrated, dtype=float)
+        return np.interp(calibrated, self.calibrated, self.indicated, left=np.nan, right=np.nan)
+
+    def refuse(self, indicated: float, unit: str) -> OutsideCalibration:
+        """The refusal for an indicated speed [m/s] outside the table, in the type's own unit."""
+        low, high = (units.from_si(end, "speed", unit) for end in (self.indicated[0], self.indicated[-1]))
+        return OutsideCalibration(
+            "indicated airspeed",
+            "below the table" if not np.isfinite(indicated) else units.from_si(indicated, "speed", unit),
+            f"{unit} indicated" if np.isfinite(indicated) else "",
+            f"{low:g} to {high:g} {unit} indicated",
+            self.source,
+            Reason.OUTSIDE_CALIBRATION,
+        )
+
+
+@dataclass(frozen=True)
+class PowerOffVne:
+    """Power-off VNE: a constant, or the power-on VNE where that is less (14 CFR 27.1505(c)(2)(i))."""
+
+    constant: Stated
+    source: str
+
+
+@dataclass(frozen=True)
+class ManualSpeed:
+    """One other speed of the manual, printed verbatim with its page before anything computed."""
+
+    label: str
+    text: str
+    applies: str
+    source: str
+
+
+@dataclass(frozen=True)
+class RotorData:
+    """What the rotor model needs; a value typed "unknown" carries its class range as spread and its basis."""
+
+    hub: Hub
+    rotation: Rotation
+    blades: int
+    radius: Stated
+    rpm: Stated
+    chord: Stated
+    twist: Stated
+    root_cutout: Stated
+    hinge_offset: Stated
+    flap_frequency: Stated
+    flap_inertia: Stated
+    precone: Stated
+    lift_slope: Stated
+    drag_area: Stated
+    source: str
+
+    @property
+    def tip_speed(self) -> float:
+        """At 100 % rotor speed [m/s]."""
+        return self.rpm.value * self.radius.value
+
+
+@dataclass(frozen=True)
+class HoverLine:
+    """One line of the manual's hover table: its label and its cells, as typed."""
+
+    label: str
+    text: str
+    source: str
+
+
+@dataclass(frozen=True, eq=False)  # compared by identity, so that tables made once per aircraft can be kept with it
+class Aircraft:
+    """One type in one configuration, as its file states it.
+
+    `data_hash` is the SHA-256 of the file as read; `unknowns` lists dotted keys typed "?" (a draft may have them, a
+    released page may not).
+    """
+
+    name: str
+    serials: tuple[str, ...]
+    configuration: str
+    units: DisplayUnits
+    rotor: RotorData
+    limits: Limits
+    calibration: Calibration
+    vne: VneChart
+    vne_off: PowerOffVne
+    speeds: tuple[ManualSpeed, ...] = ()
+    hover: tuple[HoverLine, ...] = ()
+    recovery: str = ""
+    recovery_source: str = ""
+    invented: str = ""
+    file: str = ""
+    data_hash: str = ""
+    sources: tuple[tuple[str, str], ...] = field(default=())
+
+    @property
+    def mirrored(self) -> bool:
+        """True for a clockwise rotor, whose pictures and side words are mirrored; the equations do not change."""
+        return self.rotor.rotation is Rotation.CLOCKWISE

@@ -1,0 +1,245 @@
+"""The manual's VNE read at the equivalent level flight: what the chart itself says of this load factor and rotor speed.
+
+A rotor at load factor n, mass m, rotor speed k, density rho and temperature T has the same blade loading, advance ratio
+and tip Mach numbers as in level flight at 100 % with p' = p m'/(n m), T' = T/k^2 and true airspeed V' = V/k (the
+flight-test trade's referral). So the manual's own chart is read there, at every permitted point at least as loaded and
+no warmer; the largest speed found is the answer. The load factor enters as n^1.15, which guards limits that are set
+by loads in newtons and so do not follow the similarity. No rotor model takes part.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterable
+from dataclasses import dataclass, replace
+from typing import Final
+
+import numpy as np
+from numpy.typing import NDArray
+
+from briefkit import units
+from briefkit.aircraft.model import Aircraft
+from briefkit.envelope import here, search
+from briefkit.envelope.condition import Condition, Conditions
+from briefkit.envelope.speeds import indicated_of
+from briefkit.errors import BeyondChart, NoTrim, OutsideCalibration, OutsideChart, Reason, SetBy
+
+Floats = NDArray[np.float64]
+Reasons = NDArray[np.object_]
+
+LOAD_EXPONENT: Final = 1.15
+
+
+@dataclass(frozen=True)
+class ChartPoint:
+    """Where on the manual's chart the answer was read: SI, and the chart's VNE there in the type's own unit."""
+
+    pressure_altitude: float
+    temperature: float
+    mass: float
+    vne: float
+
+
+@dataclass(frozen=True)
+class EquivalentVne:
+    """The answer at one condition, in the unit of the type's airspeed indicator, indicated.
+
+    `ias`, `below_vne` (manual's VNE here less `ias`) and `upper` (with the plain load factor) are kept to 0.01 and not
+    floored; `text` is floored to one unit and carries unit and kind. `set_by` says whose number it is.
+    """
+
+    ias: float
+    unit: str
+    text: str
+    below_vne: float
+    upper: float
+    set_by: SetBy
+    chart_point: ChartPoint
+
+
+@dataclass(frozen=True, eq=False)
+class EquivalentVnes:
+    """The answers of a batch (batch,), as in `EquivalentVne`; where `reason` is not empty the numbers are NaN."""
+
+    ias: Floats
+    below_vne: Floats
+    upper: Floats
+    vne: Floats
+    unit: str
+    set_by: Reasons
+    reason: Reasons
+    point_altitude: Floats
+    point_temperature: Floats
+    point_mass: Floats
+
+
+def equivalent_vne(aircraft: Aircraft, condition: Condition) -> EquivalentVne:
+    """The manual's VNE at the equivalent level flight of one condition.
+
+    Level with the rotor at 100 % it is the manual's VNE by definition. Raises `OutsideLimits` or `OutsideChart` where
+    the condition itself is not on the chart and inside the limits, `BeyondChart` (with `covered_bank`, radians) where
+    no point of the chart is as loaded, `OutsideCalibration` where the answer has no indicated speed.
+    """
+    conditions = Conditions.of(condition)
+    here.refuse(aircraft, conditions)
+    answers = equivalent_vnes(aircraft, conditions)
+    reason = answers.reason[0]
+    if reason:
+        raise _refusal(aircraft, condition, reason)
+    ias = float(answers.ias[0])
+    point = ChartPoint(
+        float(answers.point_altitude[0]),
+        float(answers.point_temperature[0]),
+        float(answers.point_mass[0]),
+        _in_unit(aircraft, aircraft.vne.indicated(
+            answers.point_altitude[0], answers.point_temperature[0], answers.point_mass[0])),
+    )  # fmt: skip
+    text = f"{units.show_number(units.round_down(ias))} {aircraft.units.speed_label()}"
+    return EquivalentVne(
+        ias, answers.unit, text, float(answers.below_vne[0]), float(answers.upper[0]), answers.set_by[0], point
+    )
+
+
+def equivalent_vnes(aircraft: Aircraft, conditions: Conditions | Iterable[Condition]) -> EquivalentVnes:
+    """The same for a batch; a refused member has NaN and a `Reason`, and disturbs no other."""
+    many = conditions if isinstance(conditions, Conditions) else Conditions.of(conditions)
+    reason = here.reasons(aircraft, many)
+    vne = np.where(reason == Reason.NONE, here.indicated_vne(aircraft, many), np.nan)
+    level = (many.load_factor <= 1.0 + 1e-12) & (np.abs(many.rotor_speed - 1.0) <= 1e-12)
+    ask = np.nonzero((reason == Reason.NONE) & ~level)[0]
+    ias, upper = vne.copy(), vne.copy()
+    point = [many.pressure_altitude.copy(), many.oat.copy(), here.chart_mass(aircraft, many)]
+    set_by = np.full(len(many), SetBy.MANUAL_VNE, dtype=object)
+    if len(ask):
+        asked = _take(many, ask)
+        found, why, best = _read(aircraft, asked, vne[ask], LOAD_EXPONENT)
+        lower = (why == Reason.NONE) & (found < vne[ask])
+        ias[ask], reason[ask] = found, why
+        upper[ask] = _read(aircraft, asked, vne[ask], 1.0)[0]
+        set_by[ask[lower]] = SetBy.EQUIVALENT
+        for array, value in zip(point, (best.height, best.temperature, best.mass), strict=True):
+            array[ask[lower]] = value[lower]
+    refused = reason != Reason.NONE
+    ias, upper = (np.where(refused, np.nan, array) for array in (ias, upper))
+    unit = aircraft.units.speed
+    shown = [np.round(units.from_si(array, "speed", unit), 2) for array in (ias, vne - ias, upper, vne)]  # type: ignore[arg-type]
+    return EquivalentVnes(*shown, unit, set_by, reason, *point)
+
+
+def covered_bank(aircraft: Aircraft, condition: Condition) -> float:
+    """Steepest bank [deg] whose equivalent level flight the manual's chart still reaches here; its own bank left out.
+
+    Never above the manual's bank limit. Raises as `equivalent_vne` does; `BeyondChart` where not even level flight at
+    this rotor speed is on the chart.
+    """
+    conditions = Conditions.of(replace_load(condition, 1.0))
+    here.refuse(aircraft, conditions)
+    banks, reason = covered_banks(aircraft, conditions)
+    if reason[0]:
+        raise _refusal(aircraft, condition, reason[0])
+    return math.degrees(float(banks[0]))
+
+
+def covered_banks(aircraft: Aircraft, conditions: Conditions) -> tuple[Floats, Reasons]:
+    """Covered banks of a batch [rad] with their reasons; the load factor of each condition is left out."""
+    level = replace(conditions, load_factor=np.ones(len(conditions)))
+    reason = here.reasons(aircraft, level)
+    if not aircraft.vne.temperatures and not aircraft.vne.covers_temperatures:
+        reason[reason == Reason.NONE] = Reason.NO_TEMPERATURES
+    load = np.full(len(level), np.inf)
+    for day in _days(level):
+        warmest = day.oat / day.rotor_speed**2
+        room = search.largest_loading(aircraft, warmest) * day.density * day.rotor_speed**2
+        cold = np.isneginf(room) & (reason == Reason.NONE)
+        reason[cold] = Reason.TOO_COLD
+        heaviest = day.mass + day.mass_spread
+        load = np.minimum(load, np.where(np.isneginf(room), np.nan, np.maximum(room, 0.0) / heaviest))
+    n = load ** (1.0 / LOAD_EXPONENT)
+    reason[(reason == Reason.NONE) & (n < 1.0 - search.SLACK)] = Reason.NOT_EVEN_LEVEL
+    bank = np.arccos(1.0 / np.maximum(n, 1.0))
+    if aircraft.limits.max_bank is not None:
+        bank = np.minimum(bank, aircraft.limits.max_bank.value)
+    return np.where(reason == Reason.NONE, bank, np.nan), reason
+
+
+def replace_load(condition: Condition, load_factor: float) -> Condition:
+    """The same condition at another load factor."""
+    return Condition.si(**{name: getattr(condition, name) for name in Condition.__dataclass_fields__} | {
+        "load_factor": load_factor})  # fmt: skip
+
+
+def _read(aircraft: Aircraft, many: Conditions, vne: Floats, exponent: float) -> tuple[Floats, Reasons, search.Best]:
+    """Indicated speed [m/s] at the equivalent level flight, its reasons, and the chart points; never above `vne`."""
+    reason = np.full(len(many), Reason.NONE, dtype=object)
+    if not aircraft.vne.temperatures and not aircraft.vne.covers_temperatures:
+        reason[:] = Reason.NO_TEMPERATURES
+        nothing = np.full(len(many), np.nan)
+        return nothing, reason, search.Best(nothing, nothing, nothing, nothing)
+    answer, kept = vne.copy(), None
+    for day in _days(many):
+        k = day.rotor_speed
+        loading = day.load_factor**exponent * (day.mass + day.mass_spread) / (day.density * k**2)
+        warmest = day.oat / k**2
+        best = search.fastest(aircraft, loading, warmest, day.oat)
+        reason[np.isneginf(best.vne) & (reason == Reason.NONE)] = Reason.BEYOND_CHART
+        true = np.where(np.isneginf(best.vne), np.nan, best.vne * k)
+        indicated = indicated_of(aircraft.calibration, true, day.pressure, day.oat)
+        # Above the calibration's top is above VNE here in any case; below its foot there is no indicated speed.
+        here_true = here.true_airspeed(aircraft, vne, day)
+        indicated = np.where(true >= here_true * (1.0 - search.SLACK), vne, indicated)
+        reason[np.isnan(indicated) & (reason == Reason.NONE)] = Reason.OUTSIDE_CALIBRATION
+        lower = indicated < answer
+        kept = best if kept is None else best.where(lower, kept)
+        answer = np.where(np.isnan(indicated), np.nan, np.minimum(answer, indicated))
+    if kept is None:
+        raise AssertionError("a day always has at least one temperature")
+    cold = np.isneginf(search.largest_loading(aircraft, many.oat / many.rotor_speed**2))
+    reason[cold & (reason == Reason.BEYOND_CHART)] = Reason.TOO_COLD
+    return np.where(reason == Reason.NONE, answer, np.nan), reason, kept
+
+
+def _days(many: Conditions) -> list[Conditions]:
+    """The temperature as read, and both ends of its spread where one is stated."""
+    if not np.any(many.oat_spread):
+        return [many]
+    return [replace(many, oat=many.oat + side * many.oat_spread) for side in (0.0, -1.0, 1.0)]
+
+
+def _take(many: Conditions, index: NDArray[np.intp]) -> Conditions:
+    return Conditions(*(getattr(many, name)[index] for name in Conditions.__dataclass_fields__))
+
+
+def _in_unit(aircraft: Aircraft, speed: Floats) -> float:
+    return round(float(units.from_si(float(speed), "speed", aircraft.units.speed)), 2)
+
+
+def _refusal(
+    aircraft: Aircraft, condition: Condition, reason: Reason
+) -> BeyondChart | OutsideCalibration | OutsideChart | NoTrim:
+    """The refusal a single call raises, with what is permitted."""
+    if reason is Reason.OUTSIDE_CALIBRATION:
+        return aircraft.calibration.refuse(math.nan, aircraft.units.speed)
+    if reason is Reason.NO_TEMPERATURES:
+        return OutsideChart(
+            "outside air temperature", "not on the chart", "", "level flight at 100 %", aircraft.vne.source, reason
+        )
+    percent = f"rotor {condition.rotor_speed * 100.0:.4g} %"
+    if reason is Reason.TOO_COLD:
+        coldest = search.temperature_range(aircraft)[0] - units.ZERO_CELSIUS
+        needs = condition.oat / condition.rotor_speed**2 - units.ZERO_CELSIUS
+        permitted = (
+            f"the chart ends at {units.show_number(coldest)} °C; at {percent} this needs {units.show_number(needs)} °C"
+        )
+        return BeyondChart("rotor speed", condition.rotor_speed * 100.0, "%", permitted, aircraft.vne.source, reason)
+    banks, why = covered_banks(aircraft, Conditions.of(condition))
+    bank = float(banks[0])
+    if why[0]:
+        refusal = BeyondChart(
+            "rotor speed and mass", f"{percent}, {units.show(condition.mass, 'mass', aircraft.units.mass)}", "",
+            "a lighter aircraft or a faster rotor", aircraft.vne.source, why[0],
+        )  # fmt: skip
+    else:
+        permitted = f"up to {units.show_number(math.floor(math.degrees(bank) + 1e-9))} deg of bank here"
+        refusal = BeyondChart("bank", math.degrees(condition.bank), "deg", permitted, aircraft.vne.source, reason)
+        refusal.covered_bank = bank
+    return refusal

@@ -1,0 +1,1 @@
+"""Arrays to bqplot figures, and figures to stills: one definition for the screen and the page."""

@@ -1,0 +1,1 @@
+"""Typed TOML in, checked tables and every fault at once out."""
