@@ -25,7 +25,8 @@ class VneChart:
     `speeds` has shape (heights, temperatures, masses); an axis the chart does not have has length 1 and an empty
     tuple here. `rows` is the chart as typed (header first), for the page and the read-back sheet. `reading_error`
     [m/s] is the half-width of reading a printed curve; 0 for printed figures. `covers_temperatures` is the statement,
-    with its page, that a chart without a temperature axis holds at every permitted temperature.
+    with its page, that a chart without a temperature axis holds at every permitted temperature. `reason` is the
+    manual's own statement, with its page, of what sets VNE; `entry_reason` the author's answer to a finding on cells.
     """
 
     heights: tuple[float, ...]
@@ -37,6 +38,8 @@ class VneChart:
     rows: tuple[tuple[str, ...], ...]
     reading_error: float = 0.0
     covers_temperatures: str = ""
+    reason: str = ""
+    entry_reason: str = ""
 
     def indicated(self, height: Floats | float, temperature: Floats | float, mass: Floats | float) -> Floats:
         """VNE [m/s indicated] by the chart's rule; arguments broadcast; NaN off the chart's axes.

@@ -205,8 +205,8 @@ class HoverLine:
 class Aircraft:
     """One type in one configuration, as its file states it.
 
-    `data_hash` is the SHA-256 of the file as read; `unknowns` lists dotted keys typed "?" (a draft may have them, a
-    released page may not).
+    `data_hash` is the SHA-256 of the file as read; `unanswered` lists dotted keys typed "?" (a draft may have
+    them, a released page may not), `sources` the source of each table.
     """
 
     name: str
@@ -226,6 +226,7 @@ class Aircraft:
     file: str = ""
     data_hash: str = ""
     sources: tuple[tuple[str, str], ...] = field(default=())
+    unanswered: tuple[str, ...] = ()
 
     @property
     def mirrored(self) -> bool:

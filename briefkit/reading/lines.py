@@ -1,0 +1,112 @@
+"""Where things stand in a TOML file, and slips of TOML as faults like any other.
+
+The standard parser stops at the first slip and gives no line for a key. Here a slip is recorded, the line is set aside
+and the rest is still read, so that an author sees every fault of the file at once.
+"""
+
+from __future__ import annotations
+
+import json
+import re
+import tomllib
+from collections.abc import Iterable, Mapping
+from dataclasses import dataclass
+from typing import Any, Final
+
+from briefkit.reading.quantity import NOT_YET
+
+_MOST_SLIPS: Final = 50  # after so many the rest of a file is not looked at
+
+_HEADER = re.compile(r"\s*(\[\[?)\s*([^\[\]]+?)\s*\]\]?\s*(?:#.*)?")
+_PAIR = re.compile(r"""\s*((?:[\w-]+|"[^"]*"|'[^']*')(?:\s*\.\s*(?:[\w-]+|"[^"]*"|'[^']*'))*)\s*=\s*(.*)""")
+_AT_LINE = re.compile(r"(.*) \(at line (\d+), column (\d+)\)", re.DOTALL)
+
+
+@dataclass(frozen=True)
+class Slip:
+    """One line that is not TOML: where, what stood there, what to write instead."""
+
+    line: int
+    key: str
+    read: str
+    remedy: str
+
+
+def parse(text: str) -> tuple[dict[str, Any], list[Slip]]:
+    """The data of a TOML text and its slips; a line with a slip is read as text in quotes where that makes sense."""
+    places = line_numbers(text)
+    lines = text.split("\n")
+    slips: list[Slip] = []
+    while len(slips) < _MOST_SLIPS:
+        try:
+            return tomllib.loads("\n".join(lines)), slips
+        except tomllib.TOMLDecodeError as error:
+            at = _AT_LINE.fullmatch(str(error))
+            said, number = (at[1], int(at[2])) if at else (str(error), 0)
+            line = lines[number - 1] if number else ""
+            again = any(slip.line == number for slip in slips)
+            if not again:
+                key = next((key for key, place in places.items() if place == number), f"line {number}")
+                slips.append(_slip(line, number, key, said))
+            pair = _PAIR.fullmatch(line)
+            if again or pair is None:
+                break
+            lines[number - 1] = "" if "Cannot overwrite" in said else f"{pair[1]} = {json.dumps(pair[2])}"
+    return {}, slips
+
+
+def _slip(line: str, number: int, key: str, said: str) -> Slip:
+    if not number:
+        return Slip(0, "file", "the end of the file", "a block opened with ''' has to be closed with '''")
+    pair = _PAIR.fullmatch(line)
+    if "Cannot overwrite" in said or "twice" in said:
+        return Slip(number, key, f"`{line.strip()}`", "this name stands twice in the file; take one out")
+    if "\\" in line and "Unescaped" in said:
+        remedy = "open and close a block that has a \\ in it with ''', not with \"\"\""
+        return Slip(number, key, f"`{line.strip()}`", remedy)
+    if pair is not None and not pair[2].startswith(('"', "'", "[", "{")):
+        value = re.sub(r"\s*#.*", "", pair[2]).strip("“”„‘’ ")
+        written = json.dumps(value, ensure_ascii=False)
+        return Slip(number, key, f"`{pair[2].strip()}`", f"text stands between straight quotes: {pair[1]} = {written}")
+    return Slip(number, key, f"`{line.strip()}`", f"{said[:1].lower()}{said[1:]}")
+
+
+def line_numbers(text: str) -> dict[str, int]:
+    """Dotted key to line number, good enough to point with: headers, keys, and text blocks passed over."""
+    found: dict[str, int] = {}
+    counts: dict[str, int] = {}
+    prefix, closing = "", ""
+    for number, line in enumerate(text.split("\n"), start=1):
+        if closing:
+            closing = "" if closing in line else closing
+        elif header := _HEADER.fullmatch(line):
+            prefix = _bare(header[2])
+            if header[1] == "[[":
+                counts[prefix] = counts.get(prefix, 0) + 1
+                prefix = f"{prefix} (entry {counts[prefix]})"
+            found.setdefault(prefix, number)
+        elif pair := _PAIR.fullmatch(line):
+            key = _bare(pair[1])
+            found.setdefault(f"{prefix}.{key}" if prefix else key, number)
+            opening = pair[2][:3]
+            closing = opening if opening in ("'''", '"""') and opening not in pair[2][3:] else ""
+    return found
+
+
+def _bare(key: str) -> str:
+    return ".".join(part.strip().strip("\"'") for part in key.split("."))
+
+
+def unanswered(value: object, key: str = "") -> Iterable[str]:
+    """Dotted keys below `value` that are still "?", whole or in part of a text block."""
+    if isinstance(value, Mapping):
+        for name, inner in value.items():
+            yield from unanswered(inner, f"{key}.{name}" if key else name)
+    elif isinstance(value, list):
+        for number, inner in enumerate(value, start=1):
+            between = f"{key} (entry {number})" if isinstance(inner, Mapping) else f"{key}, value {number}"
+            yield from unanswered(inner, between)
+    elif isinstance(value, str):
+        parts = re.split(r"[\s;]+", value) if "\n" in value else [value.strip()]
+        if NOT_YET in parts:
+            yield key
