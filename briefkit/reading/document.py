@@ -112,6 +112,10 @@ class Document:
         if line not in self._slips:
             self.faults.append(Fault(self.file, key, read, permitted, remedy, line))
 
+    def has_fault_below(self, key: str) -> bool:
+        """Whether a table, or anything in it, already has a fault: what depends on the whole table is not held then."""
+        return any(re.match(rf"{re.escape(key)}(?![\w-])", fault.key) for fault in self.faults)
+
     def line_of(self, key: str) -> int:
         """The line a dotted key, or the nearest table above it, stands on; 0 where it is not in the file."""
         while key:
