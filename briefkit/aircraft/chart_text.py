@@ -20,7 +20,7 @@ from briefkit import units
 from briefkit.aircraft.chart import Floats
 from briefkit.errors import ReadingError
 from briefkit.reading.document import Document
-from briefkit.reading.quantity import quoted
+from briefkit.reading.quantity import quoted, spelling
 
 _CORNER = re.compile(r"[^\s\\]+(?:\s*\\\s*[^\s\\]+)*")
 _SPEEDS: Final = tuple(units.permitted_units("speed"))
@@ -28,6 +28,8 @@ _ACROSS: Final = {unit: kind for kind in ("temperature", "mass") for unit in uni
 _HOTTEST: Final = 55.0  # degC; above it a figure is most likely in Fahrenheit
 _FASTEST: Final = {"kt": 250.0, "km/h": 460.0, "mph": 290.0}
 _SPLIT: Final = "a space inside a number parts it: write 2,000 or 2000"
+
+_EMPTY: Final = "a chart has no empty cells: type the figure from the manual"
 
 
 @dataclass(frozen=True)
@@ -203,7 +205,7 @@ def _speeds(
         if len(cells) != len(labels):
             permitted = f"{len(labels)}, one below each column {', '.join(labels)}"
             document.fault(
-                place, f"{len(cells)} cells", permitted, _SPLIT if len(cells) > len(labels) else "", row.line
+                place, f"{len(cells)} cells", permitted, _SPLIT if len(cells) > len(labels) else _EMPTY, row.line
             )
             continue
         values = []
@@ -223,10 +225,10 @@ def _number(document: Document, place: str, cell: str, line: int) -> float | Non
     try:
         return units.read(cell, "number")
     except ReadingError as error:
-        remedy = error.remedy
+        remedy = spelling(cell, "number") or error.remedy
         if cell == "?":
             remedy = "type the figure from the manual"
         elif not cell:
-            remedy = "a chart has no empty cells: type the figure from the manual"
+            remedy = _EMPTY
         document.fault(place, quoted(cell) if cell else "an empty cell", "a number without unit", remedy, line)
         return None

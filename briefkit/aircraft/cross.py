@@ -39,10 +39,15 @@ def limit_faults(limits: LimitsTable) -> list[Fault]:
     if limits.rotor_on and not _si(limits.rotor_on[0]) <= 1.0 <= _si(limits.rotor_on[1]):
         read = f"{limits.rotor_on[0].text} to {limits.rotor_on[1].text}"
         faults.append(_fault("limits.rotor_on", read, "a range with 100 % in it", "is 100 % the speed of rotor.rpm?"))
-    if not limits.isa_deviation and not limits.max_temperature:
-        remedy = 'add isa_deviation = "35 degC" (above standard) or max_temperature = "40 degC", as the manual has it'
-        faults.append(_fault("limits.isa_deviation", "nothing", "isa_deviation or max_temperature", remedy))
     return faults
+
+
+def hottest_faults(limits: LimitsTable) -> list[Fault]:
+    """No limit of temperature at all: without one the chart's hottest column would count as permitted."""
+    if limits.isa_deviation or limits.max_temperature:
+        return []
+    remedy = 'add isa_deviation = "35 degC" (above standard) or max_temperature = "40 degC", as the manual has it'
+    return [_fault("limits.isa_deviation", "nothing", "isa_deviation or max_temperature", remedy)]
 
 
 def rotor_faults(rotor: RotorTable) -> list[Fault]:

@@ -98,6 +98,8 @@ class _Parts:
 
     def _cross(self) -> None:
         faults = cross.limit_faults(self.limits) if self.limits else []
+        if self.limits and not self.document.has_fault_below("limits"):
+            faults += cross.hottest_faults(self.limits)
         faults += cross.rotor_faults(self.rotor) if self.rotor else []
         faults += cross.loading_faults(self.rotor, self.limits) if self.rotor and self.limits else []
         if self.units:

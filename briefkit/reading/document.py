@@ -151,6 +151,8 @@ class Document:
         except OSError as error:
             beside = self.path.parent.glob(f"*{self.path.suffix}") if self.path.parent.is_dir() else []
             remedy = did_you_mean(self.path.name, (other.name for other in beside), "check the path")
+            if self.path.is_dir():
+                remedy = "give a file in it"
             said = (error.strerror or "not readable").lower()
             raise FaultyFile([Fault(self.file, "file", said, "a readable TOML file", remedy)]) from None
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import difflib
 import math
+import re
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 from typing import Final
@@ -16,6 +17,15 @@ from briefkit.errors import ReadingError
 
 NOT_YET: Final = "?"  # what an author types for a value still to be looked up
 UNKNOWN: Final = "unknown"  # what an author types for a value that is not to be had
+# Common other spellings of the permitted units, for remedies only: none of them is read.
+_SPELLINGS: Final = {
+    "kts": "kt", "knots": "kt", "knot": "kt", "kn": "kt", "KIAS": "kt", "kmh": "km/h", "kph": "km/h", "km/hr": "km/h",
+    "lbs": "lb", "pounds": "lb", "kgs": "kg", "KG": "kg", "feet": "ft", "FT": "ft", "'": "ft", "metres": "m",
+    "meters": "m", "inches": "in", '"': "in", "degrees": "deg", "mb": "hPa", "mbar": "hPa", "in": "inHg", "Hg": "inHg",
+    "celsius": "degC", "Celsius": "degC", "deg C": "degC", "fpm": "ft/min", "percent": "%", "RPM": "rpm",
+}  # fmt: skip
+_DECIMAL_COMMA = re.compile(r"\D*(\d+),(\d{1,2}|\d{4,})([^\d,.]*)")
+_NUMBER_THEN_UNIT = re.compile(r"([-+\u2212]?[\d,]*\.?\d+)\s*(\D.*)")
 _PARTS: Final = ("value", "source", "spread")
 _SPREAD_QUANTITY: Final = {"temperature": "temperature difference"}
 
@@ -41,7 +51,10 @@ def quantity(kind: str, low: float = -math.inf, high: float = math.inf, *, unkno
 
 def nearest(word: str, known: Iterable[str]) -> str:
     """The nearest of the known words, or "" where none is near."""
-    found = difflib.get_close_matches(word, list(known), n=1, cutoff=0.6)
+    known = list(known)
+    if _SPELLINGS.get(word) in known:
+        return _SPELLINGS[word]
+    found = difflib.get_close_matches(word, known, n=1, cutoff=0.6)
     return found[0] if found else ""
 
 
@@ -49,6 +62,21 @@ def did_you_mean(word: str, known: Iterable[str], otherwise: str = "") -> str:
     """The remedy for a misspelt word."""
     like = nearest(word, known)
     return f"did you mean {like}?" if like else otherwise
+
+
+def spelling(text: str, kind: str) -> str:
+    """What a person most likely meant by a quantity that could not be read, as a remedy; "" where it is not clear."""
+    if comma := _DECIMAL_COMMA.fullmatch(text.strip()):
+        return f'a decimal point, not a comma: "{comma[1]}.{comma[2]}{comma[3]}"'
+    if re.search(r"\d\s\d", text):
+        return f'no space inside a number: "{re.sub(r"(?<=[0-9])[^0-9a-zA-Z.](?=[0-9])", "", text.strip())}"'
+    match = _NUMBER_THEN_UNIT.fullmatch(text.strip())
+    if match is None:
+        return ""
+    if kind == "temperature" and match[2].endswith("F"):
+        return "in Celsius: (F - 32) x 5/9"
+    like = nearest(match[2], units.permitted_units(kind))
+    return f'did you mean "{match[1]} {like}"?' if like else ""
 
 
 def quoted(read: object) -> str:
@@ -101,9 +129,13 @@ def _read_value(read: object, kind: str, low: float, high: float, unknown: bool)
     try:
         value, unit = units.read_with_unit(read, kind)  # type: ignore[arg-type]  # it refuses what is not text
     except ReadingError as error:
-        raise ReadingError(error.read, error.permitted + alternative, error.remedy) from None
+        remedy = spelling(error.read, kind) or error.remedy
+        raise ReadingError(error.read, error.permitted + alternative, remedy) from None
     if not low <= value <= high:
-        raise ReadingError(str(read), _range_in_words(kind, unit, low, high), "look again at the digits and the unit")
+        remedy = "look again at the digits and the unit"
+        if kind == "temperature" and value > high:
+            remedy = "is it Fahrenheit? in Celsius: (F - 32) x 5/9"
+        raise ReadingError(str(read), _range_in_words(kind, unit, low, high), remedy)
     return Typed(str(read).strip(), value, unit)
 
 
