@@ -101,7 +101,7 @@ class _OperatorTable(Table):
 
 
 class _PolicyTable(Table):
-    people: Annotated[int, Field(ge=2, le=9)] = 3
+    people: Annotated[int, Field(ge=2, le=3)] = 3
     validity_months: Annotated[int, Field(ge=1, le=60)] = 24
 
 

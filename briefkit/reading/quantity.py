@@ -75,6 +75,8 @@ def spelling(text: str, kind: str) -> str:
         return ""
     if kind == "temperature" and match[2].endswith("F"):
         return "in Celsius: (F - 32) x 5/9"
+    if match[2] in units.permitted_units(kind):
+        return ""
     like = nearest(match[2], units.permitted_units(kind))
     return f'did you mean "{match[1]} {like}"?' if like else ""
 

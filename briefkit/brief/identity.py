@@ -1,0 +1,267 @@
+"""What a brief is: its number, revision, dates, aircraft, work area and people, from `brief.toml` in its folder.
+
+People are staff codes, never names. Nothing is read outside the operator folder, the nearest folder upwards that holds
+`operation.toml`.
+"""
+
+from __future__ import annotations
+
+import datetime as dt
+import re
+from dataclasses import dataclass
+from pathlib import Path, PurePosixPath
+from typing import Annotated, ClassVar, Final
+
+from pydantic import Field
+
+from briefkit.aircraft.load import load_aircraft, needed
+from briefkit.aircraft.model import Aircraft
+from briefkit.aircraft.operation import OPERATION_FILE, Operation, cross_check, load_operation
+from briefkit.aircraft.tables import Text
+from briefkit.errors import Fault, FaultyFile
+from briefkit.reading.document import Document, Table
+from briefkit.reading.quantity import did_you_mean, quoted
+
+BRIEF_FILE: Final = "brief.toml"
+NOTEBOOK: Final = "brief.ipynb"
+# A staff code has a digit in it and no small letters: "NRC-17" is one, a name is not.
+_STAFF_CODE = re.compile(r"(?=[A-Z0-9-]*[0-9])[A-Z0-9]{1,8}(?:-[A-Z0-9]{1,8}){0,2}")
+_NUMBER = re.compile(r"[A-Z0-9][A-Z0-9-]{1,30}")
+_ROLES: Final = ("prepared", "checked", "approved")
+
+
+@dataclass(frozen=True)
+class Change:
+    """One line of the list of changes."""
+
+    revision: int
+    text: str
+
+
+@dataclass(frozen=True)
+class Identity:
+    """A brief as its `brief.toml` states it. Staff codes are "" where nobody has signed; `folder` holds the notebook.
+
+    `aircraft` is the path of the aircraft file inside the operator folder `operator`.
+    """
+
+    number: str
+    title: str
+    revision: int
+    issued: dt.date
+    effective: dt.date
+    expires: dt.date
+    aircraft: str
+    work_area: str
+    serials: tuple[str, ...]
+    configuration: str
+    prepared: str
+    checked: str
+    approved: str
+    changes: tuple[Change, ...]
+    basis: tuple[str, ...]
+    folder: Path
+    operator: Path
+    file: str = BRIEF_FILE
+    data_hash: str = ""
+    unanswered: tuple[str, ...] = ()
+
+    @property
+    def people(self) -> tuple[str, ...]:
+        """Prepared, checked, approved, without the empty ones."""
+        return tuple(code for code in (self.prepared, self.checked, self.approved) if code)
+
+    @property
+    def aircraft_path(self) -> Path:
+        return self.operator / self.aircraft
+
+    @property
+    def notebook(self) -> Path:
+        return self.folder / NOTEBOOK
+
+    def signed(self, people: int) -> bool:
+        """All three roles filled, by at least `people` distinct codes, the approver not the preparer."""
+        roles = (self.prepared, self.checked, self.approved)
+        return all(roles) and len(set(roles)) >= people and self.approved != self.prepared
+
+
+class _DocumentTable(Table):
+    required: ClassVar[tuple[str, ...]] = ("number", "title", "revision", "issued", "effective", "expires")
+    number: Text | None = None
+    title: Text | None = None
+    revision: Annotated[int, Field(ge=0)] | None = None
+    issued: dt.date | None = None
+    effective: dt.date | None = None
+    expires: dt.date | None = None
+    basis: list[Text] | None = None
+
+
+class _SubjectTable(Table):
+    required: ClassVar[tuple[str, ...]] = ("aircraft", "work_area", "serials", "configuration")
+    aircraft: Text | None = None
+    work_area: Text | None = None
+    serials: Annotated[list[Text], Field(min_length=1)] | None = None
+    configuration: Text | None = None
+
+
+class _PeopleTable(Table):
+    prepared: str = ""
+    checked: str = ""
+    approved: str = ""
+
+
+class _ChangeEntry(Table):
+    required: ClassVar[tuple[str, ...]] = ("revision", "text")
+    revision: Annotated[int, Field(ge=0)] | None = None
+    text: Text | None = None
+
+
+def operator_folder(path: Path | str) -> Path:
+    """The nearest folder, from `path` upwards, that holds `operation.toml`; raises `FaultyFile` where none does."""
+    start = Path(path).resolve()
+    for folder in (start, *start.parents):
+        if (folder / OPERATION_FILE).is_file():
+            return folder
+    remedy = "keep the brief in a folder below the one that holds operation.toml"
+    raise FaultyFile([Fault(str(path), "folder", "no operation.toml here or above", OPERATION_FILE, remedy)])
+
+
+def load_identity(path: Path | str) -> Identity:
+    """The identity of a brief, from its folder or its `brief.toml`.
+
+    Raises `FaultyFile` with every fault: file, line, key, what was read, what is permitted, what to write instead.
+    """
+    path = Path(path)
+    file = path / BRIEF_FILE if path.is_dir() else path
+    document = Document(file)
+    operator = operator_folder(file.parent)
+    document.tables("", ("document", "subject"), ("people", "changes"))
+    head = document.table("document", _DocumentTable)
+    subject = document.table("subject", _SubjectTable)
+    people = document.table("people", _PeopleTable) or _PeopleTable()
+    changes = document.entries("changes", _ChangeEntry)
+    if head:
+        _check_head(document, head)
+    if subject:
+        _check_subject(document, subject, operator)
+    for role in _ROLES:
+        _check_code(document, role, getattr(people, role))
+    document.raise_faults()
+    head, subject = needed(head), needed(subject)
+    return Identity(
+        number=needed(head.number),
+        title=needed(head.title),
+        revision=needed(head.revision),
+        issued=needed(head.issued),
+        effective=needed(head.effective),
+        expires=needed(head.expires),
+        aircraft=needed(subject.aircraft),
+        work_area=needed(subject.work_area),
+        serials=tuple(needed(subject.serials)),
+        configuration=needed(subject.configuration),
+        prepared=people.prepared,
+        checked=people.checked,
+        approved=people.approved,
+        changes=tuple(Change(needed(entry.revision), needed(entry.text)) for _, entry in changes),
+        basis=tuple(head.basis or ()),
+        folder=file.parent,
+        operator=operator,
+        file=file.name,
+        data_hash=document.data_hash,
+        unanswered=document.unanswered(),
+    )
+
+
+@dataclass(frozen=True)
+class Brief:
+    """A brief's three files, each loaded and held against the others."""
+
+    identity: Identity
+    aircraft: Aircraft
+    operation: Operation
+
+
+def load_brief(path: Path | str) -> Brief:
+    """The brief in a folder: identity, aircraft and operation. Raises `FaultyFile` with the faults of all three."""
+    faults: list[Fault] = []
+    identity, aircraft, operation = None, None, None
+    try:
+        identity = load_identity(path)
+    except FaultyFile as error:
+        faults += error.faults
+    if identity is not None:
+        try:
+            aircraft = load_aircraft(_shown(identity.aircraft_path))
+        except FaultyFile as error:
+            faults += error.faults
+    try:
+        folder = Path(path) if Path(path).is_dir() else Path(path).parent
+        operation = load_operation(_shown(operator_folder(folder) / OPERATION_FILE))
+    except FaultyFile as error:
+        faults += [fault for fault in error.faults if fault not in faults]
+    if identity is not None:
+        faults += _against(identity, aircraft, operation)
+    if operation is not None and aircraft is not None and identity is not None:
+        faults += cross_check(operation, aircraft, [identity.work_area])
+    if faults:
+        raise FaultyFile(faults)
+    return Brief(needed(identity), needed(aircraft), needed(operation))
+
+
+def _against(identity: Identity, aircraft: Aircraft | None, operation: Operation | None) -> list[Fault]:
+    """What brief.toml says of the aircraft and the operation that they do not say."""
+    faults = []
+    if operation is not None and identity.work_area not in operation.work_areas:
+        known = operation.work_areas
+        permitted = f"{', '.join(known)} ({operation.file})"
+        remedy = did_you_mean(identity.work_area, known)
+        faults.append(Fault(identity.file, "subject.work_area", quoted(identity.work_area), permitted, remedy))
+    if aircraft is not None:
+        for number, serial in enumerate(identity.serials, start=1):
+            if serial not in aircraft.serials:
+                permitted = f"{', '.join(aircraft.serials)} ({aircraft.file})"
+                faults.append(Fault(identity.file, f"subject.serials, value {number}", quoted(serial), permitted))
+        if identity.configuration != aircraft.configuration:
+            permitted = f'"{aircraft.configuration}" ({aircraft.file})'
+            read = quoted(identity.configuration)
+            remedy = "another configuration is another aircraft file: its VNE may differ"
+            faults.append(Fault(identity.file, "subject.configuration", read, permitted, remedy))
+    return faults
+
+
+def _check_head(document: Document, head: _DocumentTable) -> None:
+    if head.number and not _NUMBER.fullmatch(head.number):
+        permitted = 'capitals, digits and hyphens, like "NB-2T-001": it names the file'
+        document.fault("document.number", quoted(head.number), permitted)
+    if head.issued and head.effective and head.effective < head.issued:
+        document.fault("document.effective", str(head.effective), f"the day of issue, {head.issued}, or later")
+    if head.effective and head.expires and head.expires <= head.effective:
+        document.fault("document.expires", str(head.expires), f"after {head.effective}, when it becomes effective")
+
+
+def _check_subject(document: Document, subject: _SubjectTable, operator: Path) -> None:
+    if subject.aircraft is None:
+        return
+    key, inside = "subject.aircraft", PurePosixPath(subject.aircraft)
+    permitted = 'a path inside the operator folder, like "aircraft/pelquill-2t.toml"'
+    target = (operator / inside).resolve()
+    if inside.is_absolute() or "\\" in subject.aircraft or not target.is_relative_to(operator):
+        document.fault(key, quoted(subject.aircraft), permitted, "from the folder that holds operation.toml, with /")
+    elif not target.is_file():
+        known = [str(other.relative_to(operator).as_posix()) for other in sorted(operator.glob("aircraft/*.toml"))]
+        remedy = did_you_mean(subject.aircraft, known, f"there is {', '.join(known)}" if known else "")
+        document.fault(key, f"{quoted(subject.aircraft)}, no such file", permitted, remedy)
+
+
+def _check_code(document: Document, role: str, code: str) -> None:
+    if code and not _STAFF_CODE.fullmatch(code):
+        permitted = 'a staff code with a digit in it, like "NRC-17", or "" while nobody has signed'
+        document.fault(f"people.{role}", quoted(code), permitted, "a code, not a name: people are not named on a brief")
+
+
+def _shown(path: Path) -> Path:
+    """The path as a person would type it here, where it is below the present folder."""
+    try:
+        return path.relative_to(Path.cwd())
+    except ValueError:
+        return path
