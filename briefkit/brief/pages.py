@@ -10,11 +10,16 @@ from dataclasses import dataclass
 from enum import StrEnum
 from functools import cache
 from pathlib import Path
+from typing import Final
 
 import jinja2
-from markupsafe import Markup
+from markupsafe import Markup, escape
 
 from briefkit.errors import BuildError
+from briefkit.figures import theme
+
+_UNIT_GAP: Final = re.compile(r"(?<=\d) (?=(?:°C|%|kt|KIAS|KTAS|km/h|mph|lb|kg|ft|m|hPa|inHg|rpm|degrees?|deg)\b|°|%)")
+_MARKED: Final = re.compile(r"([\d,.\u2212+]+)([*\u2020\u2021])")
 
 
 class Ink(StrEnum):
@@ -123,7 +128,7 @@ def render_plain(template: str, **values: object) -> str:
 
 
 def _set(template: str, **values: object) -> str:
-    style = (template_folder() / "handout.css").read_text(encoding="utf-8")
+    style = theme.stylesheet() + "\n" + (template_folder() / "handout.css").read_text(encoding="utf-8")
     return _environment().get_template(template).render(style=Markup(style), **values)
 
 
@@ -137,11 +142,23 @@ def _environment() -> jinja2.Environment:
         lstrip_blocks=True,
         keep_trailing_newline=True,
     )
-    environment.filters["css_string"] = css_string
-    environment.filters["fragment"] = Markup
+    environment.filters |= {"css_string": css_string, "fragment": Markup, "set": set_text, "cell": set_cell}
     return environment
 
 
 def css_string(text: str) -> Markup:
-    """Text as the inside of a CSS string: everything but plain letters, digits and spaces is written as its code."""
-    return Markup(re.sub(r"[^A-Za-z0-9 ]", lambda match: f"\\{ord(match[0]):06x}", text))
+    """Text as the inside of a CSS string: all but plain letters, digits and spaces as codes, each ended by a space."""
+    return Markup(re.sub(r"[^A-Za-z0-9 ]", lambda match: f"\\{ord(match[0]):x} ", text))
+
+
+def set_text(text: str) -> Markup:
+    """A sentence for the page: a number and its unit are never parted by the end of a line."""
+    return escape(_UNIT_GAP.sub("\u00a0", text))
+
+
+def set_cell(text: str) -> Markup:
+    """A table cell: as a sentence, and a mark after a number hangs outside the column so that the digits line up."""
+    marked = _MARKED.fullmatch(text)
+    if marked is None:
+        return set_text(text)
+    return set_text(marked[1]) + Markup('<span class="mark">{}</span>').format(marked[2])
