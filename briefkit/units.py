@@ -9,9 +9,16 @@ from __future__ import annotations
 import math
 import re
 from enum import StrEnum
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 from briefkit.errors import ReadingError
+
+if TYPE_CHECKING:
+    from typing import Any, TypeVar
+
+    from numpy.typing import NDArray
+
+    Number = TypeVar("Number", float, NDArray[Any])
 
 # Exact by definition (international foot, pound, nautical mile; ISO 80000-3, -4).
 FOOT: Final = 0.3048
@@ -110,13 +117,13 @@ def read(text: str, quantity: str) -> float:
     return read_with_unit(text, quantity)[0]
 
 
-def to_si(number: float, quantity: str, unit: str) -> float:
+def to_si(number: Number, quantity: str, unit: str) -> Number:
     """A number in a permitted unit to SI (works on arrays too)."""
     factor, offset = _UNITS[quantity][unit]
     return number * factor + offset
 
 
-def from_si(value: float, quantity: str, unit: str) -> float:
+def from_si(value: Number, quantity: str, unit: str) -> Number:
     """An SI value to a number in a permitted unit (works on arrays too)."""
     factor, offset = _UNITS[quantity][unit]
     return (value - offset) / factor

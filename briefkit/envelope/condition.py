@@ -119,6 +119,10 @@ class Condition:
         made._fill({field.name: getattr(self, field.name) for field in fields(self)} | _read(text))
         return made
 
+    def changed(self, **si: float | None) -> Self:
+        """A copy with some SI values replaced: `condition.changed(load_factor=1.0, rotor_speed=1.0)`."""
+        return type(self).si(**({field.name: getattr(self, field.name) for field in fields(self)} | si))
+
     def _fill(self, values: dict[str, Any]) -> None:
         defaults = {
             "ias": None, "load_factor": 1.0, "rotor_speed": 1.0, "climb": 0.0, "mass_spread": 0.0, "oat_spread": 0.0,
@@ -190,6 +194,14 @@ class Conditions:
 
     def __len__(self) -> int:
         return len(self.mass)
+
+    def take(self, members: NDArray[np.intp]) -> Conditions:
+        """The members given, in that order."""
+        return Conditions(*(getattr(self, field.name)[members] for field in fields(self)))
+
+    def repeat(self, count: int) -> Conditions:
+        """Each member `count` times in a row."""
+        return Conditions(*(np.repeat(getattr(self, field.name), count) for field in fields(self)))
 
     @property
     def pressure(self) -> Floats:

@@ -111,7 +111,7 @@ def equivalent_vnes(aircraft: Aircraft, conditions: Conditions | Iterable[Condit
     point = [many.pressure_altitude.copy(), many.oat.copy(), here.chart_mass(aircraft, many)]
     set_by = np.full(len(many), SetBy.MANUAL_VNE, dtype=object)
     if len(ask):
-        asked = _take(many, ask)
+        asked = many.take(ask)
         found, why, best = _read(aircraft, asked, vne[ask], LOAD_EXPONENT)
         lower = (why == Reason.NONE) & (found < vne[ask])
         ias[ask], reason[ask] = found, why
@@ -122,8 +122,22 @@ def equivalent_vnes(aircraft: Aircraft, conditions: Conditions | Iterable[Condit
     refused = reason != Reason.NONE
     ias, upper = (np.where(refused, np.nan, array) for array in (ias, upper))
     unit = aircraft.units.speed
-    shown = [np.round(units.from_si(array, "speed", unit), 2) for array in (ias, vne - ias, upper, vne)]  # type: ignore[arg-type]
-    return EquivalentVnes(*shown, unit, set_by, reason, *point)
+
+    def shown(values: Floats) -> Floats:
+        return np.round(units.from_si(values, "speed", unit), 2)
+
+    return EquivalentVnes(
+        ias=shown(ias),
+        below_vne=shown(vne - ias),
+        upper=shown(upper),
+        vne=shown(vne),
+        unit=unit,
+        set_by=set_by,
+        reason=reason,
+        point_altitude=point[0],
+        point_temperature=point[1],
+        point_mass=point[2],
+    )
 
 
 def covered_bank(aircraft: Aircraft, condition: Condition) -> float:
@@ -132,7 +146,7 @@ def covered_bank(aircraft: Aircraft, condition: Condition) -> float:
     Never above the manual's bank limit. Raises as `equivalent_vne` does; `BeyondChart` where not even level flight at
     this rotor speed is on the chart.
     """
-    conditions = Conditions.of(replace_load(condition, 1.0))
+    conditions = Conditions.of(condition.changed(load_factor=1.0))
     here.refuse(aircraft, conditions)
     banks, reason = covered_banks(aircraft, conditions)
     if reason[0]:
@@ -160,12 +174,6 @@ def covered_banks(aircraft: Aircraft, conditions: Conditions) -> tuple[Floats, R
     if aircraft.limits.max_bank is not None:
         bank = np.minimum(bank, aircraft.limits.max_bank.value)
     return np.where(reason == Reason.NONE, bank, np.nan), reason
-
-
-def replace_load(condition: Condition, load_factor: float) -> Condition:
-    """The same condition at another load factor."""
-    return Condition.si(**{name: getattr(condition, name) for name in Condition.__dataclass_fields__} | {
-        "load_factor": load_factor})  # fmt: skip
 
 
 def _read(aircraft: Aircraft, many: Conditions, vne: Floats, exponent: float) -> tuple[Floats, Reasons, search.Best]:
@@ -203,10 +211,6 @@ def _days(many: Conditions) -> list[Conditions]:
     if not np.any(many.oat_spread):
         return [many]
     return [replace(many, oat=many.oat + side * many.oat_spread) for side in (0.0, -1.0, 1.0)]
-
-
-def _take(many: Conditions, index: NDArray[np.intp]) -> Conditions:
-    return Conditions(*(getattr(many, name)[index] for name in Conditions.__dataclass_fields__))
 
 
 def _in_unit(aircraft: Aircraft, speed: Floats) -> float:

@@ -6,7 +6,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from briefkit import units
-from briefkit.aircraft.model import Aircraft, Stated
+from briefkit.aircraft.model import Aircraft
 from briefkit.envelope.condition import Conditions
 from briefkit.envelope.speeds import true_of
 from briefkit.errors import OutsideChart, OutsideLimits, Reason, Refusal
@@ -97,12 +97,13 @@ def _refusals(aircraft: Aircraft, one: Conditions) -> list[Refusal]:
             found.append(
                 _outside(OutsideChart, name, value, quantity, unit, permitted, chart.source, Reason.OUTSIDE_CHART)
             )
+    low_k, high_k = limits.rotor_on
     hottest = float(limits.max_temperature_at(height))
     bounds: list[tuple[str, float, str, str, float | None, float | None]] = [
         ("mass", mass, "mass", shown.mass, limits.min_mass.value, limits.max_mass.value),
         ("pressure altitude", height, "height", shown.height, None, limits.max_altitude.value),
         ("outside air temperature", oat, "temperature", "°C", limits.min_temperature.value, hottest),
-        ("rotor speed", float(one.rotor_speed[0]), "ratio", "%", *(_value(end) for end in limits.rotor_on)),
+        ("rotor speed", float(one.rotor_speed[0]), "ratio", "%", low_k.value, high_k.value),
     ]
     if limits.max_bank is not None:
         bank = float(np.arccos(1.0 / one.load_factor[0]))
@@ -117,10 +118,6 @@ def _refusals(aircraft: Aircraft, one: Conditions) -> list[Refusal]:
                 _outside(OutsideLimits, name, value, quantity, unit, permitted, limits.source, Reason.OUTSIDE_LIMITS)
             )
     return found
-
-
-def _value(stated: Stated) -> float:
-    return stated.value
 
 
 def _outside(

@@ -1,0 +1,47 @@
+"""The crew's page as finished strings: what the template sets before and after the author's own analysis."""
+
+from __future__ import annotations
+
+from typing import Final
+
+from briefkit.brief import control, derivation, front, recognition
+from briefkit.brief.identity import Brief
+from briefkit.brief.pages import CrewPage
+from briefkit.envelope.reductions import reductions
+from briefkit.errors import BuildError
+
+DRAFT: Final = "DRAFT: not for crews"
+
+
+def crew_page(brief: Brief, version: str) -> CrewPage:
+    """Pages 1 to 4 of a brief.
+
+    Raises the refusal of a block point the manual forbids, and `BuildError` where the operation has no fleet entry for
+    the aircraft.
+    """
+    identity, aircraft, operation = brief.identity, brief.aircraft, brief.operation
+    key = aircraft.file.removesuffix(".toml")
+    if key not in operation.fleet:
+        raise BuildError(f"{operation.file}: no table [fleet.{key}] for {aircraft.file}; add its masses and brief_bank")
+    fleet, area = operation.fleet[key], operation.work_areas[identity.work_area]
+    table = reductions(aircraft, fleet, area)
+    serials = control.listed(identity.serials)
+    above = ", then ".join((*operation.documents, "this page"))
+    return CrewPage(
+        number=identity.number,
+        revision=f"rev {identity.revision}",
+        title=identity.title,
+        expires=f"expires {control.day(identity.expires)}",
+        mark=DRAFT,
+        heading=f"{aircraft.name}, {aircraft.configuration}: {area.name}",
+        under=(
+            f"Serials {serials} only. For briefing; not for working out speeds in flight.",
+            f"Flight manual, placards and markings first, then {above}.",
+        ),
+        front=front.front(aircraft, fleet, area, table),
+        recognition=recognition.recognition(aircraft),
+        analysis=derivation.derivation(aircraft, table),
+        control=control.control(brief, version),
+        slip=control.slip(identity),
+        invented=aircraft.invented,
+    )

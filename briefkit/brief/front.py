@@ -1,0 +1,171 @@
+"""Sheet 1 of the crew's page: the manual's VNE, the reduction before a turn, rough air, and what to do if it starts."""
+
+from __future__ import annotations
+
+import math
+from typing import Final
+
+import numpy as np
+
+from briefkit import units
+from briefkit.aircraft.chart import ReadingRule
+from briefkit.aircraft.model import Aircraft
+from briefkit.aircraft.operation import FleetEntry, WorkArea
+from briefkit.brief import words
+from briefkit.brief.pages import Grid, Ink, Section
+from briefkit.envelope import cues
+from briefkit.envelope.reductions import ReductionRow, ReductionTable, RowKind
+
+NOT_PERMITTED: Final = "*"
+
+
+def front(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea, table: ReductionTable) -> tuple[Section, ...]:
+    """The four sections of sheet 1, in their fixed order."""
+    return (
+        vne_section(aircraft, fleet, area),
+        turn_section(aircraft, fleet, area, table),
+        rough_air(aircraft),
+        if_it_starts(aircraft),
+    )
+
+
+def vne_section(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea) -> Section:
+    """The manual's own chart around the work area, cells as typed, with what else the manual says of VNE."""
+    chart, shown = aircraft.vne, aircraft.units
+    heights = _around(chart.heights, area.low_altitude.value, area.high_altitude.value)
+    columns: list[int]
+    if chart.temperatures:
+        columns = _around(chart.temperatures, area.low_temperature.value, area.high_temperature.value)
+        header = [words.temperature(chart.temperatures[j]) for j in columns]
+    elif chart.masses:
+        masses = [mass.value for mass in fleet.masses]
+        columns = _around(chart.masses, min(masses), max(masses))
+        header = [units.show(chart.masses[j], "mass", shown.mass) for j in columns]
+    else:
+        columns, header = [0], ["VNE"]
+    rows, starred = [], False
+    for i in heights:
+        cells = []
+        for j in columns:
+            star = bool(chart.temperatures) and not _permitted(aircraft, chart.heights[i], chart.temperatures[j])
+            starred |= star
+            cells.append(chart.rows[i + 1][j + 1] + (NOT_PERMITTED if star else ""))
+        rows.append((units.show_number(units.from_si(chart.heights[i], "height", shown.height)), *cells))
+    between = "interpolate" if chart.reading is ReadingRule.INTERPOLATE else "take the lower VNE"
+    beside = [
+        f"Between entries: {between} (manual {_page(chart.source)}).",
+        f"Power off: {words.indicated(aircraft, aircraft.vne_off.constant.text)}, or the above if less.",
+    ]
+    if starred:
+        beside.append(f"{NOT_PERMITTED} warmer or higher than permitted: for reading between only.")
+    grid = Grid(
+        (f"Hp {shown.height} ({words.subscale(aircraft)} set)", *header),
+        tuple(rows),
+        f"VNE power on, {shown.speed_label()}, from {chart.source}",
+        Ink.MANUAL,
+        tuple(beside),
+    )
+    others = tuple(
+        f"{speed.label}: {speed.text} ({speed.source})."
+        for speed in aircraft.speeds
+        if speed.applies not in ("turbulence", "bank")
+    )
+    return Section(f"1. VNE: {chart.source}", f"{shown.speed_label()}, power on", (), grid, after=others)
+
+
+def turn_section(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea, table: ReductionTable) -> Section:
+    """The reduction before a turn of the one briefed bank, by mass."""
+    bank = f"{table.brief_bank_deg:.0f}°"
+    status = fleet.status
+    lead = "For awareness" if status == "for information" else f"{status[:1].upper()}{status[1:]}"
+    heading = f"2. {lead}: before a turn of up to {bank} of bank, slow to VNE less"
+    validity = (
+        f"Level turn, rotor at 100 %, Hp {_range(aircraft, area)}, "
+        f"{words.temperature(area.low_temperature.value)} to {words.temperature(area.high_temperature.value)}. "
+        f"Answer under {words.indicated(aircraft, table.floor.text)} ({table.floor.reason}): no {table.brief_bank_deg:.0f}-degree turn. "
+        f"Over {bank}: not briefed."
+    )
+    # What the manual says of turns comes before anything computed, and the slower of the two holds.
+    own = tuple(
+        f"The manual’s own first: {speed.label}, {speed.text} ({speed.source}). The slower of the two holds."
+        for speed in aircraft.speeds
+        if speed.applies == "bank"
+    )
+    if all(row.kind is RowKind.VNE_LIMITS for row in table.rows):
+        nothing = (
+            f"Up to {bank} of bank, blade stall asks for nothing below VNE here. VNE still limits: the maker set it "
+            "for reasons this page cannot see."
+        )
+        return Section(heading, before=(*own, nothing), after=(validity,))
+    rows = tuple(
+        (row.mass.text + (" or less" if row is table.rows[-1] else ""), row_text(aircraft, table, row))
+        for row in table.rows
+    )
+    grid = Grid(
+        ("Mass", "Slow to VNE less"), rows, f"Reduction before a turn of up to {bank}", Ink.COMPUTED, numbers=False
+    )
+    method = (
+        "In between: the heavier line. Read from the manual’s own VNE chart at the equivalent level flight (page 3); "
+        "not a flight-manual limit and not a speed to aim for."
+    )
+    return Section(heading, before=own, grid=grid, after=(method, validity))
+
+
+def row_text(aircraft: Aircraft, table: ReductionTable, row: ReductionRow) -> str:
+    """What a row says: never a speed beside a bank angle, never a bank without its reduction."""
+    amount = f"{words.knots(aircraft, row.reduction)} or more"
+    if row.kind is RowKind.REDUCTION:
+        return amount
+    if row.kind is RowKind.COVERED:
+        return (
+            f"at most {row.bank_deg}°, and {amount}" if row.reduction else f"at most {row.bank_deg}°; VNE still limits"
+        )
+    if row.kind is RowKind.VNE_LIMITS:
+        return "VNE still limits"
+    if row.kind is RowKind.UNDER_FLOOR:
+        return f"no {table.brief_bank_deg:.0f}-degree turn"
+    return "no turn briefed at this mass"
+
+
+def rough_air(aircraft: Aircraft) -> Section:
+    """The manual's rough-air speed verbatim, or that it gives none; never a number of ours."""
+    said = [f"{speed.text} ({speed.source})." for speed in aircraft.speeds if speed.applies == "turbulence"]
+    sentences = said or ["The manual gives no speed. Slow down early; gentle hands."]
+    return Section("3. Rough air", before=tuple(sentences))
+
+
+def if_it_starts(aircraft: Aircraft) -> Section:
+    """Recognition and the first act, in the words of the manual or the handbook."""
+    sentences, source = cues.recovery(aircraft)
+    mirrored = cues.sides(aircraft).mirrored
+    others = (
+        "Light in the seat, or the rotor horn?" if cues.needs_low_g_caution(aircraft) else "The rotor horn, or sinking?"
+    )
+    tail = f"{source}{'; ' + mirrored if mirrored else ''}. {others} Not this: page 2."
+    felt = cues.onset_words(aircraft)
+    return Section("4. If it starts", before=(felt[:1].upper() + felt[1:], *sentences, tail))
+
+
+def _around(axis: tuple[float, ...], low: float, high: float) -> list[int]:
+    """Indices of the chart's entries that enclose a range, with all between them."""
+    nodes = np.asarray(axis)
+    first = max(int(np.searchsorted(nodes, low + 1e-6, side="right")) - 1, 0)
+    last = min(int(np.searchsorted(nodes, high - 1e-6, side="left")), len(nodes) - 1)
+    return list(range(first, last + 1))
+
+
+def _permitted(aircraft: Aircraft, height: float, oat: float) -> bool:
+    limits = aircraft.limits
+    inside = limits.min_temperature.value - 1e-6 <= oat <= float(limits.max_temperature_at(height)) + 1e-6
+    return inside and height <= limits.max_altitude.value + 1e-6
+
+
+def _range(aircraft: Aircraft, area: WorkArea) -> str:
+    unit = aircraft.units.height
+    low = math.floor(units.from_si(area.low_altitude.value, "height", unit) + 1e-6)
+    high = math.ceil(units.from_si(area.high_altitude.value, "height", unit) - 1e-6)
+    return f"{units.show_number(low)} to {units.show_number(high)} {unit}"
+
+
+def _page(source: str) -> str:
+    return source.removeprefix("flight manual").strip() or source

@@ -1,0 +1,219 @@
+"""The absolute onset band: the criterion's range, widened by what the author does not know for certain.
+
+Each stated spread is changed one at a time, both ways; the worse changes combine as the root of the sum of squares.
+The band is softer than the manual's chart and is labelled so wherever it is shown.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from typing import Final
+
+import numpy as np
+from numpy.typing import NDArray
+
+from briefkit import units
+from briefkit.aircraft.model import Aircraft, Stated
+from briefkit.envelope.condition import Condition, Conditions
+from briefkit.envelope.onset import FIRST_SIGNS, LIMIT_OF_CONTROL, onset_speed, tip_angle_at, tip_angles
+from briefkit.envelope.solution import rotor_of
+from briefkit.envelope.speeds import indicated_of
+from briefkit.errors import OutsideCalibration, OutsideLimits, Reason
+from briefkit.physics.rotor import Rotor
+
+Floats = NDArray[np.float64]
+
+# Rotor field -> what the author calls it. Radius, blades and rotor speed are certified figures without a spread.
+INPUTS: Final = {
+    "chord": "blade chord",
+    "twist": "blade twist",
+    "flap_inertia": "blade flap inertia",
+    "flap_frequency": "flap frequency",
+    "lift_slope": "section lift slope",
+    "drag_area": "drag area",
+}
+_STEP: Final = 1.0 * units.KNOT  # for the slope of tip angle against speed
+
+
+@dataclass(frozen=True)
+class Contribution:
+    """What one input's spread does to each end of the band, in the type's unit, zero or more; None where that end lies
+    outside the calibration or the model.
+    """
+
+    name: str
+    spread: str
+    lowers_by: float | None
+    raises_by: float | None
+
+
+@dataclass(frozen=True)
+class OnsetBand:
+    """Indicated, in the type's unit: `lower` (12 degrees less spread), `central` (12), `upper` (16 plus spread).
+
+    An end that lies outside the airspeed calibration or the model's range is None: there is no such indicated speed.
+    `contributions` are the inputs with a spread, the largest effect on the lower end first.
+    """
+
+    lower: float | None
+    central: float | None
+    upper: float | None
+    unit: str
+    contributions: tuple[Contribution, ...]
+
+
+@dataclass(frozen=True, eq=False)
+class OnsetBands:
+    """The band of a batch, indicated [m/s], (batch,); NaN where there is no such speed.
+
+    `lowers` and `raises` are the effects of each input of `names`, (batch, input).
+    """
+
+    lower: Floats
+    central: Floats
+    upper: Floats
+    names: tuple[str, ...]
+    lowers: Floats
+    raises: Floats
+
+
+def onset_band(aircraft: Aircraft, condition: Condition) -> OnsetBand:
+    """The onset band of the rotor model at one condition (its `ias` is not used).
+
+    Raises `OutsideLimits` above the maximum mass or where the retreating tip is above 12 degrees at every speed or
+    reaches it at none; `OutsideCalibration` where no part of the band has an indicated speed.
+    """
+    many = Conditions.of(condition)
+    unit = aircraft.units.speed
+    limit = aircraft.limits.max_mass
+    if condition.mass > limit.value * (1.0 + 1e-9):
+        mass = units.from_si(condition.mass, "mass", aircraft.units.mass)
+        permitted = f"up to {limit.text}"
+        raise OutsideLimits("mass", mass, aircraft.units.mass, permitted, limit.source, Reason.OUTSIDE_LIMITS)
+    if np.isnan(onset_speed(rotor_of(aircraft), many, FIRST_SIGNS)[0]):
+        raise OutsideLimits(
+            "retreating-tip angle", "12 degrees", "", "a speed at which the tip reaches it", "rotor model",
+            Reason.OUTSIDE_MODEL,
+        )  # fmt: skip
+    bands = onset_bands(aircraft, many)
+
+    lower, central, upper = (_shown(end[0], unit) for end in (bands.lower, bands.central, bands.upper))
+    if lower is None and central is None and upper is None:
+        low, high = (units.from_si(end, "speed", unit) for end in (
+            aircraft.calibration.lowest_indicated, aircraft.calibration.highest_indicated))  # fmt: skip
+        raise OutsideCalibration(
+            "onset band", "outside the table", "", f"{low:g} to {high:g} {unit} indicated",
+            aircraft.calibration.source, Reason.OUTSIDE_CALIBRATION,
+        )  # fmt: skip
+    listed = [
+        Contribution(name, text, _shown(bands.lowers[0, i], unit), _shown(bands.raises[0, i], unit))
+        for i, (name, text) in enumerate(zip(bands.names, _spread_texts(aircraft, condition), strict=True))
+    ]
+    listed.sort(key=lambda one: (-(one.lowers_by or 0.0), one.name))
+    return OnsetBand(lower, central, upper, unit, tuple(listed))
+
+
+def onset_bands(aircraft: Aircraft, many: Conditions) -> OnsetBands:
+    """The onset band of a batch: three curves with the effect of every spread at both ends."""
+    rotor = rotor_of(aircraft)
+    curve = tip_angles(rotor, many)
+    first = onset_speed(rotor, many, FIRST_SIGNS, curve)
+    last = onset_speed(rotor, many, LIMIT_OF_CONTROL, curve)
+    changed, changed_many, names = _changed(aircraft, many)
+    count = 2 * len(names)
+    effects = []
+    for speed, target in ((first, FIRST_SIGNS), (last, LIMIT_OF_CONTROL)):
+        moved = _moved_onset(rotor, many, changed, changed_many, speed, target, count)
+        seen = indicated_of(aircraft.calibration, moved, changed_many.pressure, changed_many.oat)
+        at = indicated_of(aircraft.calibration, speed, many.pressure, many.oat)
+        effects.append((at, (seen.reshape(len(many), count) - at[:, None]).reshape(len(many), len(names), 2)))
+    (central, around_first), (limit, around_last) = effects
+    lowers = np.maximum(-around_first.min(axis=2), 0.0) if names else np.zeros((len(many), 0))
+    raises = np.maximum(around_last.max(axis=2), 0.0) if names else np.zeros((len(many), 0))
+    unprinted = 0.0 if aircraft.calibration.in_manual else aircraft.calibration.spread
+    lower = central - np.sqrt((lowers**2).sum(axis=1) + unprinted**2)
+    upper = limit + np.sqrt((raises**2).sum(axis=1) + unprinted**2)
+    foot, top = aircraft.calibration.lowest_indicated, aircraft.calibration.highest_indicated
+    lower, upper = (np.where((end >= foot) & (end <= top), end, np.nan) for end in (lower, upper))
+    return OnsetBands(lower, central, upper, tuple(names), lowers, raises)
+
+
+def _changed(aircraft: Aircraft, many: Conditions) -> tuple[Rotor, Conditions, list[str]]:
+    """For each condition in turn, each input down then up by its spread: one rotor and one condition a member."""
+    stated = {field: getattr(aircraft.rotor, field) for field in INPUTS}
+    fields = [field for field, value in stated.items() if value.spread > 0.0]
+    names = [INPUTS[field] for field in fields]
+    if np.any(many.mass_spread):
+        names.append("mass")
+    if np.any(many.oat_spread):
+        names.append("temperature")
+    count = 2 * len(names)
+    signs = np.tile([-1.0, 1.0], len(names))
+    changes: dict[str, Floats] = {}
+    for i, field in enumerate(fields):
+        steps = np.where(np.arange(count) // 2 == i, signs, 0.0) * stated[field].spread
+        changes[field] = np.tile(_possible(field, stated[field], steps), len(many))
+    wide = many.repeat(count)
+    if "mass" in names:
+        on = np.tile(np.where(np.arange(count) // 2 == names.index("mass"), signs, 0.0), len(many))
+        wide = replace(wide, mass=wide.mass + on * wide.mass_spread)
+    if "temperature" in names:
+        on = np.tile(np.where(np.arange(count) // 2 == names.index("temperature"), signs, 0.0), len(many))
+        wide = replace(wide, oat=wide.oat + on * wide.oat_spread)
+    return rotor_of(aircraft, **changes), wide, names
+
+
+def _possible(field: str, stated: Stated, steps: Floats) -> Floats:
+    """A changed value that a rotor can have: a flap frequency is not below 1, a drag area not below 0."""
+    value = stated.value + steps
+    floors = {"flap_frequency": 1.0, "drag_area": 0.0}
+    return np.maximum(value, floors[field]) if field in floors else value
+
+
+def _moved_onset(
+    rotor: Rotor,
+    many: Conditions,
+    changed: Rotor,
+    changed_many: Conditions,
+    speed: Floats,
+    target: float,
+    count: int,
+) -> Floats:
+    """Onset of the changed members [m/s]: two secant steps from the unchanged one, whose slope they start with."""
+    if count == 0:
+        return np.empty(0)
+    safe = np.where(np.isfinite(speed), speed, 10.0)
+    slope = (tip_angle_at(rotor, many, safe + _STEP) - tip_angle_at(rotor, many, safe - _STEP)) / (2.0 * _STEP)
+    slope = np.repeat(slope, count)
+    start = np.repeat(safe, count)
+    miss = tip_angle_at(changed, changed_many, start) - target
+    guess = np.maximum(start - miss / slope, 0.0)
+    again = tip_angle_at(changed, changed_many, guess) - target
+    moved = guess - start
+    secant = np.where(np.abs(moved) > 1e-6, (again - miss) / np.where(np.abs(moved) > 1e-6, moved, 1.0), slope)
+    found = guess - again / np.where(secant > 0.0, secant, slope)
+    return np.where(np.repeat(np.isfinite(speed), count), found, np.nan)
+
+
+def _spread_texts(aircraft: Aircraft, condition: Condition) -> list[str]:
+    texts = [
+        _half_width(field, getattr(aircraft.rotor, field))
+        for field in INPUTS
+        if getattr(aircraft.rotor, field).spread > 0.0
+    ]
+    if condition.mass_spread:
+        texts.append(f"± {units.show(condition.mass_spread, 'mass', aircraft.units.mass)}")
+    if condition.oat_spread:
+        texts.append(f"± {units.show(condition.oat_spread, 'temperature difference', '°C', 1)}")
+    return texts
+
+
+def _half_width(field: str, stated: Stated) -> str:
+    if field == "twist":
+        return f"± {units.show(stated.spread, 'angle', 'deg', 1)}"
+    share = stated.spread / abs(stated.value) * 100.0 if stated.value else 0.0
+    return f"± {units.show_number(share, 0 if share >= 10.0 else 1)} %"
+
+
+def _shown(speed: float, unit: str) -> float | None:
+    return round(float(units.from_si(float(speed), "speed", unit)), 2) if np.isfinite(speed) else None
