@@ -191,16 +191,16 @@ def load_brief(path: Path | str) -> Brief:
         faults += error.faults
     if identity is not None:
         try:
-            aircraft = load_aircraft(_shown(identity.aircraft_path))
+            aircraft = load_aircraft(shown_path(identity.aircraft_path))
         except FaultyFile as error:
             faults += error.faults
     try:
         folder = Path(path) if Path(path).is_dir() else Path(path).parent
-        operation = load_operation(_shown(operator_folder(folder) / OPERATION_FILE))
+        operation = load_operation(shown_path(operator_folder(folder) / OPERATION_FILE))
     except FaultyFile as error:
         faults += [fault for fault in error.faults if fault not in faults]
     if identity is not None:
-        faults += _against(identity, aircraft, operation)
+        faults += disagreements(identity, aircraft, operation)
     if operation is not None and aircraft is not None and identity is not None:
         faults += cross_check(operation, aircraft, [identity.work_area])
     if faults:
@@ -208,7 +208,7 @@ def load_brief(path: Path | str) -> Brief:
     return Brief(needed(identity), needed(aircraft), needed(operation))
 
 
-def _against(identity: Identity, aircraft: Aircraft | None, operation: Operation | None) -> list[Fault]:
+def disagreements(identity: Identity, aircraft: Aircraft | None, operation: Operation | None) -> list[Fault]:
     """What brief.toml says of the aircraft and the operation that they do not say."""
     faults = []
     if operation is not None and identity.work_area not in operation.work_areas:
@@ -259,7 +259,7 @@ def _check_code(document: Document, role: str, code: str) -> None:
         document.fault(f"people.{role}", quoted(code), permitted, "a code, not a name: people are not named on a brief")
 
 
-def _shown(path: Path) -> Path:
+def shown_path(path: Path) -> Path:
     """The path as a person would type it here, where it is below the present folder."""
     try:
         return path.relative_to(Path.cwd())
