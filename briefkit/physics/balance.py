@@ -1,0 +1,201 @@
+"""The equations of steady flight: seven residuals of nine unknowns, and their slopes.
+
+Unknowns are the fields of `Motion` in order. Equations, in order: vertical and in-plane force over the weight, the
+three of flapping [rad], inflow, torque. A way of solving (`Way`) names which unknowns are free and which equations
+must then hold; trimmed, controls held and torque-free flight are three such choices over this one set.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+from numpy.typing import NDArray
+
+from briefkit.physics.elements import (
+    Coefficients,
+    Flow,
+    Forces,
+    Grid,
+    Motion,
+    Sums,
+    flow_at,
+    flow_coefficients,
+    forces_of,
+    sums_of,
+)
+from briefkit.physics.flapping import flap_balance
+from briefkit.physics.inflow import Inflow, induced_balance
+from briefkit.physics.rotor import Case
+from briefkit.physics.section import Section
+
+Array = NDArray[np.float64]
+Members = NDArray[np.intp]
+
+T0, T1C, T1S, B0, B1C, B1S, INDUCED, TILT, CLIMB = range(9)
+VERTICAL, IN_PLANE, FLAP_MEAN, FLAP_COSINE, FLAP_SINE, INFLOW, TORQUE = range(7)
+
+_ANGLE_STEP: Final = 1e-6  # rad, for slopes of section coefficients
+_UNKNOWN_STEP: Final = 1e-7  # for slopes of the closed-form parts; every unknown is of order 0.01 to 1
+_REFERENCE_LOADING: Final = 0.1  # a usual CT/sigma, only to scale the inflow equation
+
+
+@dataclass(frozen=True)
+class Way:
+    """Free unknowns and the equations they must meet, as many of one as of the other."""
+
+    free: tuple[int, ...]
+    equations: tuple[int, ...]
+
+
+TRIMMED: Final = Way((T0, T1C, T1S, B0, INDUCED, TILT), (VERTICAL, IN_PLANE, FLAP_MEAN, FLAP_COSINE, FLAP_SINE, INFLOW))
+HELD: Final = Way((B0, B1C, B1S, INDUCED), (FLAP_MEAN, FLAP_COSINE, FLAP_SINE, INFLOW))
+
+
+def thrust(case: Case, sums: Sums) -> Array:
+    """Thrust coefficient, normal to the shaft's disc."""
+    return 0.5 * case.solidity * sums.normal[:, 0]
+
+
+def rearward_force(case: Case, motion: Motion, sums: Sums) -> Array:
+    """H-force coefficient: in the shaft's disc plane, downwind. Flapped blades lean part of their lift inward."""
+    cosine, squared, mixed = sums.normal[:, 2], sums.normal[:, 6], sums.normal[:, 7]
+    lean = motion.b0 * cosine + motion.b1c * squared + motion.b1s * mixed
+    return 0.5 * case.solidity * (sums.drag[:, 3] - lean)
+
+
+def side_force(case: Case, motion: Motion, sums: Sums) -> Array:
+    """Y-force coefficient: in the shaft's disc plane, towards psi = 90 degrees of the wind axes."""
+    sine, mixed, squared = sums.normal[:, 3], sums.normal[:, 7], sums.normal[:, 8]
+    lean = motion.b0 * sine + motion.b1c * mixed + motion.b1s * squared
+    return -0.5 * case.solidity * (sums.drag[:, 2] + lean)
+
+
+def torque(case: Case, sums: Sums) -> Array:
+    """Torque coefficient, which is the power coefficient too."""
+    return 0.5 * case.solidity * sums.drag[:, 1]
+
+
+def residuals(case: Case, motion: Motion, sums: Sums) -> Array:
+    """All seven equations, (batch, 7).
+
+    Vertical: T cos(tilt) + H sin(tilt) = n W + D sin(climb). In plane: T sin(tilt) - H cos(tilt) = D cos(climb), both
+    over n W. Drag acts along the flight path, H in the disc's plane.
+    """
+    lift, rearward = thrust(case, sums), rearward_force(case, motion, sums)
+    cosine, sine = np.cos(motion.tilt), np.sin(motion.tilt)
+    mu = motion.mu(case)
+    scale = 2.0 * np.sqrt(mu * mu + 0.5 * _REFERENCE_LOADING * case.solidity)
+    return np.stack(
+        [
+            (lift * cosine + rearward * sine - case.drag * np.sin(motion.climb)) / case.weight - 1.0,
+            (lift * sine - rearward * cosine - case.drag * np.cos(motion.climb)) / case.weight,
+            *flap_balance(case, motion, sums),
+            induced_balance(lift, mu, motion.axial(case), motion.induced) / scale,
+            torque(case, sums) / case.weight,
+        ],
+        axis=1,
+    )
+
+
+@dataclass(frozen=True, eq=False)
+class Balance:
+    """The equations of a batch for one way of solving: `base` (batch, 9) holds the unknowns that are not free."""
+
+    case: Case
+    grid: Grid
+    section: Section
+    inflow: Inflow
+    way: Way
+    base: Array
+
+    def motion(self, x: Array, members: Members) -> Motion:
+        """The motion of members with the free unknowns x (member, free)."""
+        return Motion(*self._columns(x, members).T)
+
+    def sums(self, case: Case, motion: Motion) -> tuple[Sums, Flow, Forces, Coefficients]:
+        """Sums over the disc, with what they were made of."""
+        terms = flow_coefficients(case, motion, self.inflow)
+        flow = flow_at(case, self.grid.points, terms)
+        forces = forces_of(case, flow, self.section, self.grid.lifting)
+        return sums_of(self.grid, forces.normal, forces.drag), flow, forces, terms
+
+    def left(self, x: Array, members: Members) -> Array:
+        """Residuals of the equations in force, (member, equation)."""
+        case, motion = self._members(members), self.motion(x, members)
+        return residuals(case, motion, self.sums(case, motion)[0])[:, self.way.equations]
+
+    def slopes(self, x: Array, members: Members) -> tuple[Array, Array]:
+        """Residuals, and their slopes by the free unknowns (member, equation, free).
+
+        Slopes of the element forces are analytic by angle and velocity, and go to the sums through the grid's
+        shapes; Mach number is held meanwhile. What is in closed form is differenced.
+        """
+        case, columns = self._members(members), self._columns(x, members)
+        motion = Motion(*columns.T)
+        sums, flow, forces, terms = self.sums(case, motion)
+        now = residuals(case, motion, sums)[:, self.way.equations]
+        # Every free unknown moved a little in turn, all in one batch: (free, member) run together.
+        count, free = x.shape[0], len(self.way.free)
+        many = case.take(np.tile(np.arange(count), free))
+        moved = np.tile(columns, (free, 1, 1))
+        moved[np.arange(free), :, self.way.free] += _UNKNOWN_STEP
+        moved_motion = Motion(*moved.reshape(-1, 9).T)
+        moved_terms = flow_coefficients(many, moved_motion, self.inflow)
+        change = [
+            (new.reshape(free, count, -1) - old.reshape(count, -1))
+            for new, old in (
+                (moved_terms.pitch, terms.pitch),
+                (moved_terms.through, terms.through),
+                (moved_terms.across, terms.across),
+            )
+        ]
+        normal, drag = (
+            own + sum(np.einsum("fmk,mks->fms", part, by) for part, by in zip(change, slopes, strict=True))
+            for own, slopes in zip((sums.normal, sums.drag), self._sum_slopes(case, flow, forces), strict=True)
+        )
+        moved_sums = Sums(normal.reshape(free * count, -1), drag.reshape(free * count, -1))
+        after = residuals(many, moved_motion, moved_sums)[:, self.way.equations].reshape(free, count, -1)
+        return now, ((after - now) / _UNKNOWN_STEP).transpose(1, 2, 0)
+
+    def _sum_slopes(self, case: Case, flow: Flow, forces: Forces) -> tuple[list[Array], list[Array]]:
+        """Slopes of the normal and the drag sums by the coefficients of pitch, flow through and flow across.
+
+        Each (member, coefficient, sum).
+        """
+        grid, u, across, through = self.grid, flow.resultant, flow.across, flow.through
+        raised = self.section.coefficients(flow.angle + _ANGLE_STEP, flow.mach, case.lift_slope[:, None])
+        lift, drag = forces.lift_coefficient, forces.drag_coefficient
+        lift_slope = (raised[0] * grid.lifting - lift) / _ANGLE_STEP
+        drag_slope = (raised[1] - drag) / _ANGLE_STEP
+        sine, cosine = through / u, across / u
+        # normal = u (lift across - drag through); in-plane drag = u (lift through + drag across)
+        normal = self._by_flow(lift_slope * across - drag_slope * through, forces.normal, lift, -drag, u, sine, cosine)
+        in_plane = self._by_flow(lift_slope * through + drag_slope * across, forces.drag, drag, lift, u, sine, cosine)
+        shape = (u.shape[0], -1)
+        return (
+            [(by @ product).reshape(*shape, 9) for by, product in zip(normal, grid.normal_products, strict=True)],
+            [(by @ product).reshape(*shape, 6) for by, product in zip(in_plane, grid.drag_products, strict=True)],
+        )
+
+    @staticmethod
+    def _by_flow(
+        turned: Array, force: Array, by_across: Array, by_through: Array, u: Array, sine: Array, cosine: Array
+    ) -> tuple[Array, Array, Array]:
+        """Slopes of an element's force by pitch, flow through and flow across; the angle is pitch less inflow angle."""
+        by_angle = u * turned
+        along = force / u
+        return (
+            by_angle,
+            (along * sine - by_angle * cosine) / u + u * by_through,
+            (along * cosine + by_angle * sine) / u + u * by_across,
+        )
+
+    def _columns(self, x: Array, members: Members) -> Array:
+        columns = self.base[members]
+        columns[:, self.way.free] = x
+        return columns
+
+    def _members(self, members: Members) -> Case:
+        return self.case if members.size == self.case.size else self.case.take(members)

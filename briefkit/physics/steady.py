@@ -1,0 +1,145 @@
+"""What a solved batch holds, and the disc seen element by element."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+from functools import cached_property
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from briefkit.errors import Reason
+from briefkit.physics.elements import Motion, flow_at, flow_coefficients, make_grid, points_at
+from briefkit.physics.inflow import Inflow
+from briefkit.physics.rotor import Case, Rotor, State
+
+Array = NDArray[np.float64]
+
+
+@dataclass(frozen=True, eq=False)
+class Elements:
+    """The disc seen element by element, arrays (batch, radius, azimuth).
+
+    `radii` fractions of R, `azimuths` [rad] from the tail in the direction of rotation; `speed` [m/s] normal to the
+    blade, negative where the flow is reversed; `mach` of the flow across the blade; `angle` of attack [rad], in
+    reversed flow near +-pi, wrapped to -pi..pi.
+    """
+
+    radii: Array
+    azimuths: Array
+    speed: Array
+    mach: Array
+    angle: Array
+
+
+@dataclass(frozen=True, eq=False)
+class Trim:
+    """A solved batch; arrays (batch,). Angles in radians, in axes fixed to the rotor's shaft.
+
+    A member whose `reason` is not `Reason.NONE` holds NaN everywhere but in `residual`, `iterations` and `reason`:
+    check `solved` first.
+
+    - `t0`, `t1c`, `t1s`: pitch from the shaft's plane. `b0`: coning; `b1c`, `b1s`: flapping from the no-feathering
+      plane; `hub_b1c`, `hub_b1s`: flapping from the shaft's plane (zero when trimmed).
+    - `inflow`: mean flow down through the disc by the tip speed; `induced_velocity` [m/s] its mean induced part;
+      `kx`, `ky`: gradients of the induced part by r cos, r sin of azimuth from where the wind leaves the disc.
+    - `mu`, `ct` (T / rho A (Omega R)^2), `ct_sigma`; `ch`, `cy`: in-plane force downwind, and 90 degrees of azimuth on;
+      `cq`: torque.
+    - `disc_tilt`: the disc's plane from the plane normal to the apparent weight, positive into the wind (nose down);
+      `incidence`: the same from the flight path.
+    - `advancing_mach` at the tip, (1 + mu) times `tip_mach`; `tip_angle`: angle of attack at r = 1 where the blade
+      retreats square to the wind (psi = 270 degrees in wind from ahead).
+    - `residual`: largest of the force balances over n W, the flap equations [rad] and the inflow balance (over twice a
+      typical resultant), at the solution. `iterations`: how often the disc was summed to find it.
+    """
+
+    rotor: Rotor
+    state: State
+    t0: Array
+    t1c: Array
+    t1s: Array
+    b0: Array
+    b1c: Array
+    b1s: Array
+    hub_b1c: Array
+    hub_b1s: Array
+    inflow: Array
+    induced_velocity: Array
+    kx: Array
+    ky: Array
+    mu: Array
+    ct: Array
+    ct_sigma: Array
+    ch: Array
+    cy: Array
+    cq: Array
+    disc_tilt: Array
+    incidence: Array
+    tip_mach: Array
+    advancing_mach: Array
+    tip_angle: Array
+    residual: Array
+    iterations: NDArray[np.intp]
+    reason: NDArray[np.object_]
+    case: Case = field(repr=False)
+    motion: Motion = field(repr=False)
+    shape: Inflow = field(repr=False)
+    grid: tuple[int, int] = (24, 12)
+
+    @property
+    def solved(self) -> NDArray[np.bool_]:
+        """True for members that hold numbers."""
+        return np.array([reason is Reason.NONE for reason in self.reason])
+
+    def elements(self, radii: ArrayLike | None = None, azimuths: ArrayLike | None = None) -> Elements:
+        """Speed, Mach number and angle over the disc, at the solver's own points or at those given.
+
+        `radii` (radius,) fractions of R from the root cut-out to 1, `azimuths` (azimuth,) [rad] from the tail in the
+        direction of rotation. Refused members hold NaN.
+        """
+        own = make_grid(self.rotor.planform, self.grid)
+        r = own.radii if radii is None else np.asarray(radii, dtype=np.float64)
+        psi = own.azimuths if azimuths is None else np.asarray(azimuths, dtype=np.float64)
+        shape = (r.size, psi.size)
+        radius = np.broadcast_to(r[:, None], shape).ravel()
+        speed, mach, angle = (np.empty((self.case.size, *shape)) for _ in range(3))
+        terms = flow_coefficients(self.case, self.motion, self.shape)
+        tip_speed = np.broadcast_to(np.asarray(self.state.tip_speed, dtype=np.float64), (self.case.size,))
+        for turn in np.unique(self.case.wind_azimuth):
+            members = np.flatnonzero(self.case.wind_azimuth == turn)
+            points = points_at(self.rotor.planform, radius, np.broadcast_to(psi - turn, shape).ravel())
+            flow = flow_at(self.case.take(members), points, terms.take(members))
+            speed[members] = (flow.across * tip_speed[members, None]).reshape(-1, *shape)
+            mach[members] = flow.mach.reshape(-1, *shape)
+            wrapped = flow.angle - 2.0 * np.pi * np.rint(flow.angle / (2.0 * np.pi))
+            angle[members] = wrapped.reshape(-1, *shape)
+        return Elements(r, psi, speed, mach, angle)
+
+    @cached_property
+    def _own(self) -> Elements:
+        return self.elements()
+
+    @property
+    def radii(self) -> Array:
+        """The solver's radius fractions, (radius,)."""
+        return self._own.radii
+
+    @property
+    def azimuths(self) -> Array:
+        """The solver's azimuths [rad], (azimuth,)."""
+        return self._own.azimuths
+
+    @property
+    def speed(self) -> Array:
+        """Speed normal to the blade [m/s] at the solver's points, (batch, radius, azimuth); negative: reversed."""
+        return self._own.speed
+
+    @property
+    def mach(self) -> Array:
+        """Mach number across the blade at the solver's points, (batch, radius, azimuth)."""
+        return self._own.mach
+
+    @property
+    def angle(self) -> Array:
+        """Angle of attack [rad] at the solver's points, (batch, radius, azimuth)."""
+        return self._own.angle
