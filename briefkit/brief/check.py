@@ -9,7 +9,7 @@ import calendar
 import datetime as dt
 import json
 from collections.abc import Callable, Iterable
-from dataclasses import dataclass, fields
+from dataclasses import dataclass, fields, replace
 from enum import StrEnum
 from pathlib import Path
 from typing import Final, TypeVar
@@ -109,19 +109,17 @@ def _loaded(path: Path, load: Callable[[Path], Loaded]) -> tuple[Loaded | None, 
         document = Document(path)
     except FaultyFile as error:
         return None, [_from_fault(fault) for fault in error.faults]
-    unanswered = document.unanswered()
-    found = [Fault(str(path), key, "?", "", "", document.line_of(key)) for key in unanswered]
-    loaded = None
+    loaded, faults = None, []
     try:
         loaded = load(path)
     except FaultyFile as error:
-        found += [fault for fault in error.faults if not _about(fault, unanswered)]
-    found.sort(key=lambda fault: fault.line)
-    return loaded, [_from_fault(fault) for fault in found]
-
-
-def _about(fault: Fault, unanswered: Iterable[str]) -> bool:
-    return fault.read == '"?"' and any(fault.key.startswith(key) for key in unanswered)
+        faults = [replace(fault, read="?") if fault.read == '"?"' else fault for fault in error.faults]
+    asked = [fault.key for fault in faults if fault.read == "?"]
+    for key in document.unanswered():
+        if not any(other.startswith(key) or key.startswith(other) for other in asked):
+            faults.append(Fault(str(path), key, "?", "", "", document.line_of(key)))
+    faults.sort(key=lambda fault: fault.line)
+    return loaded, [_from_fault(fault) for fault in faults]
 
 
 def _from_fault(fault: Fault) -> Finding:
