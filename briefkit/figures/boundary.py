@@ -1,0 +1,222 @@
+"""Speed against height or mass: the manual's VNE, the equivalent VNE at a few banks, and the onset band behind them."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import bqplot
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from briefkit.figures import canvas, theme
+from briefkit.figures.canvas import Margins, put, write
+from briefkit.figures.curves import Curve, End, EndWords
+
+Floats = NDArray[np.float64]
+
+_ROOM = Margins(40, 122, 30, 44)
+_HEIGHT = 330
+_SAME = 0.05  # speeds closer than this, everywhere, are one line
+
+
+@dataclass(frozen=True)
+class Here:
+    """The present condition on the figure: its place and the words beside it; no speed draws the line alone."""
+
+    x: float
+    speed: float | None
+    words: str
+
+
+@dataclass(frozen=True)
+class Curves:
+    """What the figure shows, in the units it is printed in; NaN marks a gap (refused), and a gap stays a gap.
+
+    `x` (n,) rising; `manual` (n,) the manual's VNE; `turns` (bank in degrees, (n,) speeds) of the equivalent VNE;
+    `onset_lower`, `onset_central`, `onset_upper` (n,) the absolute onset band.
+    """
+
+    x: ArrayLike
+    manual: ArrayLike
+    turns: Sequence[tuple[float, ArrayLike]]
+    onset_lower: ArrayLike
+    onset_central: ArrayLike
+    onset_upper: ArrayLike
+
+
+class BoundaryFigure:
+    """A live bqplot figure of the boundary: built once, changed in place by `update`."""
+
+    def __init__(self, *, x_words: str, speed_words: str, banks: int = 3) -> None:
+        """`x_words` and `speed_words` name the axes with their units; `banks` is how many banks will be shown."""
+        if not 1 <= banks <= len(theme.DASHES):
+            raise ValueError(f"1 to {len(theme.DASHES)} banks can be told apart, not {banks}")
+        area = self._area = canvas.plane((0.0, 1.0, 0.0, 1.0), theme.WIDTH, _HEIGHT, _ROOM)
+        self._words = (x_words, speed_words)
+        self._band: list[bqplot.Lines] = []
+        self._middle = Curve(area, theme.GREY, theme.THIN, "dotted")
+        self._manual = Curve(area, theme.INK, theme.HEAVY)
+        self._turns = [Curve(area, theme.COMPUTED, theme.LINE, theme.DASHES[index]) for index in range(banks)]
+        self._stops = canvas.lines(area, theme.COMPUTED, theme.LINE)
+        self._stop_words = [canvas.texts(area, theme.COMPUTED, align=align) for align in ("start", "end")]
+        self._ends = EndWords(area)
+        self._here_line = canvas.lines(area, theme.RULE, theme.THIN)
+        self._here = bqplot.Scatter(
+            x=[], y=[], scales=area.scales, colors=[theme.PAPER], stroke=theme.INK, stroke_width=2.0, default_size=90,
+            enable_hover=False,
+        )  # fmt: skip
+        self._here_words = canvas.texts(area, bold=True)
+        self._titles = canvas.texts(area, theme.GREY)
+        self._foot = canvas.texts(area, theme.GREY, align="middle")
+        self._x_axis = canvas.axis(area.x, "bottom", [0.0, 1.0])
+        self._y_axis = canvas.axis(area.y, "left", [0.0, 1.0])
+        self.figure = canvas.figure(area, _ROOM, self._in_order(), [self._x_axis, self._y_axis])
+
+    def update(self, curves: Curves, here: Here | None = None) -> None:
+        """New curves and the present condition. A curve without one finite point raises ValueError."""
+        x = np.asarray(curves.x, dtype=float)
+        manual = np.asarray(curves.manual, dtype=float)
+        turns = [(bank, np.asarray(speeds, dtype=float)) for bank, speeds in curves.turns]
+        if len(turns) != len(self._turns):
+            raise ValueError(f"this figure was built for {len(self._turns)} banks, not {len(turns)}")
+        band = [
+            np.asarray(edge, dtype=float) for edge in (curves.onset_lower, curves.onset_central, curves.onset_upper)
+        ]
+        if not np.any(np.isfinite(manual)):
+            raise ValueError("the manual's VNE has no value anywhere on this figure")
+        self._set_limits(x, [manual, *(speeds for _, speeds in turns), *band], here)
+        grown = self._draw_band(x, band)
+        grown |= self._manual.update(x, manual)
+        merged = [bank for bank, speeds in turns if _same(speeds, manual)]
+        grown |= self._draw_turns(x, turns, merged, here)
+        self._write_ends(x, manual, [turn for turn in turns if turn[0] not in merged], band, merged)
+        self._draw_here(here)
+        if grown:
+            self.figure.marks = self._in_order()
+
+    def _in_order(self) -> list[bqplot.Mark]:
+        marks = [*self._band, self._here_line, *self._middle.marks]
+        for turn in self._turns:
+            marks += turn.marks
+        return [
+            *marks, *self._manual.marks, self._stops, *self._stop_words, *self._ends.marks, self._here,
+            self._here_words, self._titles, self._foot,
+        ]  # fmt: skip
+
+    def _set_limits(self, x: Floats, speeds: Sequence[Floats], here: Here | None) -> None:
+        everything = np.concatenate([*speeds, [] if here is None or here.speed is None else [here.speed]])
+        finite = everything[np.isfinite(everything)]
+        step = 10.0 if np.ptp(finite) <= 120.0 else 20.0
+        low, high = (
+            math.floor((finite.min() - 0.12 * np.ptp(finite)) / step) * step,
+            math.ceil((finite.max() + 0.07 * np.ptp(finite)) / step) * step,
+        )
+        area = self._area
+        canvas.rescale(area, (float(x[0]), float(x[-1]), max(low, 0.0), high))
+        canvas.set_ticks(self._x_axis, canvas.ticks(float(x[0]), float(x[-1]), 5))
+        canvas.set_ticks(self._y_axis, canvas.ticks(max(low, 0.0), high, 6))
+        write(self._titles, [(area.x_at(-_ROOM.left + 2.0), area.y_at(-18.0), self._words[1])])
+        write(self._foot, [(area.x_at(area.width / 2.0), area.y_at(area.height + 36.0), self._words[0])])
+
+    def _draw_band(self, x: Floats, band: Sequence[Floats]) -> bool:
+        lower, central, upper = band
+        whole = lower + upper  # finite where both are
+        runs = [run for run in canvas.finite_runs(x, whole) if run[0].size > 1]
+        missing = len(runs) - len(self._band)
+        self._band += [canvas.patch(self._area, theme.BAND) for _ in range(missing)]
+        for index, mark in enumerate(self._band):
+            if index < len(runs):
+                part = np.isin(x, runs[index][0])
+                there = np.concatenate([x[part], x[part][::-1]])
+                put(mark, there, np.concatenate([lower[part], upper[part][::-1]]))
+            else:
+                put(mark, [], [])
+        return self._middle.update(x, central) or missing > 0
+
+    def _draw_turns(
+        self, x: Floats, turns: Sequence[tuple[float, Floats]], merged: Sequence[float], here: Here | None
+    ) -> bool:
+        """The computed lines; where one ends before the figure does, a bar across its end says so."""
+        grown = False
+        area = self._area
+        bars_x, bars_y = [], []
+        ends: list[tuple[float, float, float]] = []
+        for curve, (bank, speeds) in zip(self._turns, turns, strict=True):
+            grown |= curve.update([], []) if bank in merged else curve.update(x, speeds)
+            finite = np.flatnonzero(np.isfinite(speeds))
+            if bank not in merged and finite.size and finite[-1] < x.size - 1:
+                end, speed = float(x[finite[-1]]), float(speeds[finite[-1]])
+                across, down = area.across(end), area.down(speed)
+                ends.append((bank, across, down))
+                bars_x.append([end, end])
+                bars_y.append([area.y_at(down - 6.0), area.y_at(down + 6.0)])
+        put(self._stops, bars_x, bars_y)
+        self._write_stops(ends, None if here is None else area.across(here.x))
+        return grown
+
+    def _write_stops(self, ends: Sequence[tuple[float, float, float]], here: float | None) -> None:
+        """Words under the ends (bank, pixels across and down): heavier, higher or steeper only lowers a line."""
+        area, width = self._area, canvas.text_width("chart ends")
+        words: list[list[tuple[float, float, str]]] = [[], []]
+        taken: list[tuple[float, float]] = []
+        for bank, across, down in sorted(ends, key=lambda end: end[2]):
+            left = across > 0.6 * area.width or (here is not None and -8.0 < here - across < width)
+            edge = across - width if left else across
+            top = down + 16.0
+            while any(abs(edge - other) < width and abs(top - row) < 30.0 for other, row in taken):
+                top += 2.0
+            taken.append((edge, top))
+            place = area.x_at(across + (2.0 if left else -2.0))
+            rows = (_bank(bank) + ",", "chart ends")
+            words[left] += [(place, area.y_at(top + 14.0 * row), text) for row, text in enumerate(rows)]
+        for mark, places in zip(self._stop_words, words, strict=True):
+            write(mark, places)
+
+    def _write_ends(
+        self,
+        x: Floats,
+        manual: Floats,
+        turns: Sequence[tuple[float, Floats]],
+        band: Sequence[Floats],
+        merged: Sequence[float],
+    ) -> None:
+        level = tuple(f"and {_bank(bank)}" for bank in merged)
+        ends = [_end(x, manual, ("VNE, manual", *level), theme.INK, bold=True)]
+        for bank, speeds in turns:
+            if np.isfinite(speeds[-1]):
+                ends.append(_end(x, speeds, (_bank(bank),), theme.COMPUTED))
+        whole = (band[0] + band[2]) / 2.0
+        if np.any(np.isfinite(whole)):
+            ends.append(_end(x, whole, ("onset band,", "softer than", "the chart"), theme.GREY))
+        self._ends.update(ends)
+
+    def _draw_here(self, here: Here | None) -> None:
+        if here is None:
+            for mark in (self._here, self._here_line):
+                put(mark, [], [])
+            write(self._here_words, [])
+            return
+        area = self._area
+        top = area.y_at(-4.0)
+        put(self._here_line, [here.x, here.x], [area.y.min, top])
+        speeds = [] if here.speed is None else [here.speed]
+        put(self._here, [here.x] * len(speeds), speeds)
+        right = area.across(here.x) > area.width - canvas.text_width(here.words)
+        place = area.x_at(area.across(here.x) + (-6.0 if right else 6.0))
+        write(self._here_words, [(place, area.y_at(4.0), here.words)], align="end" if right else "start")
+
+
+def _same(one: Floats, other: Floats) -> bool:
+    gaps = np.array_equal(np.isfinite(one), np.isfinite(other))
+    return gaps and bool(np.nanmax(np.abs(one - other), initial=0.0) < _SAME)
+
+
+def _bank(bank: float) -> str:
+    return "level flight" if bank == 0.0 else f"{bank:g}° bank"
+
+
+def _end(x: Floats, y: Floats, rows: tuple[str, ...], colour: str, *, bold: bool = False) -> End:
+    last = int(np.flatnonzero(np.isfinite(y))[-1])
+    return End(float(x[last]), float(y[last]), rows, colour, bold)
