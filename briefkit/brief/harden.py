@@ -62,6 +62,7 @@ _GEOMETRY: Final = _names(
 )
 _DATA_PICTURE: Final = re.compile(r"data:image/(?:png|jpeg|gif|webp);base64,[A-Za-z0-9+/=]+", re.ASCII)
 _INSIDE: Final = re.compile(r"#[A-Za-z0-9_.:\-]+", re.ASCII)
+_NEIGHBOUR: Final = re.compile(r"#[A-Za-z0-9_.:\-]+|[A-Za-z0-9][A-Za-z0-9.\-]*\.html", re.ASCII)
 _ELSEWHERE: Final = re.compile(r"url\((?!\s*#)|@import|expression\(|javascript:|\\", re.IGNORECASE)
 _FETCHES: Final = re.compile(r"url\(|@import|expression\(", re.IGNORECASE)
 _DECLARATION: Final = re.compile(r"[a-z\-]+\s*:[^;{}<>@\\]+", re.IGNORECASE)
@@ -71,14 +72,14 @@ _BROKEN_TEXT: Final = re.compile(r"\b(?:nan|NaN|NAN)\b")
 _BROKEN_SHAPE: Final = re.compile(r"nan|inf", re.IGNORECASE)
 
 
-def harden(page: str) -> str:
+def harden(page: str, *, neighbours: bool = False) -> str:
     """The page with everything dropped that could run, fetch or send, and its Content-Security-Policy first in head.
 
-    Idempotent. Raises:
+    Idempotent. `neighbours` lets links point to pages of the same folder too (an index). Raises:
         BuildError: a table, list or drawing holds a number that is not one (nan, inf, None); the style sheet would
             fetch something; the page is larger than `LARGEST_PAGE` bytes; it has no head or no style sheet.
     """
-    cleaner = _Cleaner()
+    cleaner = _Cleaner(_NEIGHBOUR if neighbours else _INSIDE)
     cleaner.feed(page)
     cleaner.close()
     hardened = cleaner.page()
@@ -93,8 +94,9 @@ class _Cleaner(HTMLParser):
 
     _HEAD_MARK = "\0head"  # cannot come from a page: NUL is taken out of all text
 
-    def __init__(self) -> None:
+    def __init__(self, links: re.Pattern[str]) -> None:
         super().__init__(convert_charrefs=True)
+        self._links = links
         self._out: list[str] = []
         self._open: list[str] = []
         self._dropping: list[str] = []
@@ -203,11 +205,10 @@ class _Cleaner(HTMLParser):
             return not _ELSEWHERE.search(value)
         return name in _WORDS or name.startswith("aria-")
 
-    @staticmethod
-    def _may_point(tag: str, value: str) -> bool:
+    def _may_point(self, tag: str, value: str) -> bool:
         if tag in ("img", "image"):
             return bool(_DATA_PICTURE.fullmatch(value))
-        return tag == "a" and bool(_INSIDE.fullmatch(value))
+        return tag == "a" and bool(self._links.fullmatch(value))
 
     def _class(self, style: str) -> str:
         """A class that says what a style attribute said; declarations that are not plain are dropped."""

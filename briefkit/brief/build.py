@@ -1,0 +1,146 @@
+"""Builds briefs: for each one the static page and the read-back sheet, and an index of what was built.
+
+Several kernels run at once, one failing brief does not stop the others, and a page is replaced only by a whole one.
+"""
+
+from __future__ import annotations
+
+import asyncio
+import os
+import time
+from collections.abc import Callable, Iterable, Iterator
+from dataclasses import dataclass
+from pathlib import Path
+from typing import Final
+
+from briefkit.brief.export import compose, contents
+from briefkit.brief.harden import harden
+from briefkit.brief.identity import BRIEF_FILE, Brief, load_brief
+from briefkit.brief.pages import CrewPage, render_plain
+from briefkit.brief.readback import readback
+from briefkit.brief.run import read_notebook, run_async
+from briefkit.brief.write import sweep, write_page
+from briefkit.errors import BriefkitError, BuildError
+
+INDEX: Final = "index.html"
+
+
+@dataclass(frozen=True)
+class Result:
+    """What became of one brief: `brief` its folder, `page` the file written (or left), seconds, bytes, the error.
+
+    `title` is the page's own heading ("" where the typed files could not be read); `notes` what its cells said.
+    """
+
+    brief: Path
+    page: Path | None
+    seconds: float = 0.0
+    size: int = 0
+    error: str = ""
+    title: str = ""
+    mark: str = ""
+    notes: tuple[str, ...] = ()
+
+    @property
+    def readback(self) -> Path | None:
+        return self.page.with_suffix(".readback.html") if self.page else None
+
+
+def find_briefs(paths: Iterable[Path]) -> tuple[Path, ...]:
+    """The brief folders under the given folders, notebooks or brief.toml files, each once, in order.
+
+    Raises:
+        BuildError: a path that does not exist, or below which no brief is.
+    """
+    found: dict[Path, None] = {}
+    for path in paths:
+        if not path.exists():
+            raise BuildError(f"{path}: no such file or folder")
+        folder = path if path.is_dir() else path.parent
+        inside = [folder] if (folder / BRIEF_FILE).is_file() else sorted(_below(folder)) if path.is_dir() else []
+        if not inside:
+            raise BuildError(f"{path}: no brief here; a brief is a folder with {BRIEF_FILE} and its notebook")
+        found |= dict.fromkeys(inside)
+    return tuple(found)
+
+
+def _below(folder: Path) -> Iterator[Path]:
+    for file in folder.rglob(BRIEF_FILE):
+        if not any(part.startswith(".") for part in file.relative_to(folder).parts):
+            yield file.parent
+
+
+def build(paths: Iterable[Path], out: Path, tell: Callable[[Result], None] | None = None) -> tuple[Result, ...]:
+    """Build every brief below `paths` into the folder `out`; `tell` hears of each as it is done.
+
+    Never raises for a brief that fails: its result carries the error, and its page stays as it was. Raises:
+        BuildError: no brief found, or `out` cannot be written at all.
+    """
+    briefs = find_briefs(paths)
+    results = asyncio.run(_build_all(briefs, out, tell or (lambda _: None)))
+    write_page(out / INDEX, _index(results))
+    return results
+
+
+async def _build_all(briefs: tuple[Path, ...], out: Path, tell: Callable[[Result], None]) -> tuple[Result, ...]:
+    _make(out)
+    cores = asyncio.Semaphore(_cores())
+    taken: dict[str, Path] = {INDEX: out}
+
+    async def one(folder: Path) -> Result:
+        async with cores:
+            result = await _build_one(folder, out, taken)
+        tell(result)
+        return result
+
+    return tuple(await asyncio.gather(*map(one, briefs)))
+
+
+def _make(out: Path) -> None:
+    try:
+        out.mkdir(parents=True, exist_ok=True)
+    except OSError as error:
+        raise BuildError(f"{out}: cannot be used as a folder ({error.strerror})") from None
+    sweep(out)
+
+
+async def _build_one(folder: Path, out: Path, taken: dict[str, Path]) -> Result:
+    start = time.monotonic()
+    target, title, mark = None, "", ""
+    try:
+        brief = load_brief(folder)
+        target = _target(brief, folder, out, taken)
+        page = contents(brief)
+        title, mark = page.heading, page.mark
+        ran = await run_async(read_notebook(brief.identity.notebook), brief.identity.notebook)
+        html, sheet = compose(page, ran, folder), _readback(brief, page)
+        size = write_page(target, html)
+        write_page(target.with_suffix(".readback.html"), sheet)
+    except BriefkitError as error:
+        return Result(folder, target, time.monotonic() - start, error=str(error), title=title, mark=mark)
+    return Result(folder, target, time.monotonic() - start, size, title=title, mark=mark, notes=ran.notes)
+
+
+def _target(brief: Brief, folder: Path, out: Path, taken: dict[str, Path]) -> Path:
+    """The page's file, named by the document number; two briefs may not carry one number, in any capitals."""
+    name = f"{brief.identity.number}.html"
+    other = taken.setdefault(name.lower(), folder)
+    if other != folder:
+        whose = "the index page" if other == out else f"the brief in {other}"
+        raise BuildError(f"document number {brief.identity.number} is taken by {whose}; give this brief its own")
+    return out / name
+
+
+def _readback(brief: Brief, page: CrewPage) -> str:
+    return harden(render_plain("readback.html.j2", page=page, sheet=readback(brief.aircraft, brief.identity)))
+
+
+def _index(results: tuple[Result, ...]) -> str:
+    return harden(render_plain("index.html.j2", results=results), neighbours=True)
+
+
+def _cores() -> int:
+    try:
+        return len(os.sched_getaffinity(0))
+    except AttributeError:  # not on every system
+        return os.cpu_count() or 1

@@ -1,0 +1,99 @@
+"""A brief as one static page: the same road, and the same bytes, for `briefkit build` and `jupyter nbconvert`."""
+
+from __future__ import annotations
+
+import sys
+from importlib.metadata import version
+from pathlib import Path
+from typing import Any
+
+from nbconvert.exporters import Exporter
+from nbformat import NotebookNode
+from traitlets import default
+from traitlets.config import Application
+
+from briefkit.brief.crew_page import crew_page
+from briefkit.brief.harden import harden
+from briefkit.brief.identity import BRIEF_FILE, NOTEBOOK, Brief, load_brief
+from briefkit.brief.pages import CrewPage, render
+from briefkit.brief.prose import set_words
+from briefkit.brief.run import Ran, Words, read_notebook, run_node
+from briefkit.errors import BriefkitError, BuildError
+
+
+def contents(brief: Brief) -> CrewPage:
+    """Pages 1 to 4 of a loaded brief. Raises BriefkitError where the operation asks for what cannot be answered."""
+    return crew_page(brief, version("briefkit"))
+
+
+def compose(page: CrewPage, ran: Ran, folder: Path) -> str:
+    """The finished, hardened page: the crew's sheets, and what the notebook says and shows, in its order.
+
+    Raises:
+        BuildError: what the notebook wrote or shows cannot be put on paper; see `set_words` and `harden`.
+    """
+    blocks = (set_words(block, folder) if isinstance(block, Words) else block.html for block in ran.blocks)
+    return harden(render(page, tuple(blocks)))
+
+
+def export(notebook: Path, node: NotebookNode | None = None) -> str:
+    """Run the notebook of a brief (or `node`, if given, in its place) and give the page.
+
+    Raises:
+        BriefkitError: faults of the typed files, a failing cell, something without a still.
+    """
+    if notebook.name != NOTEBOOK or not (notebook.parent / BRIEF_FILE).is_file():
+        raise BuildError(
+            f"{notebook.name}: a brief is {NOTEBOOK} beside its {BRIEF_FILE}; no other notebook is its page"
+        )
+    brief = load_brief(notebook.parent)
+    page = contents(brief)
+    ran = run_node(read_notebook(notebook) if node is None else node, notebook)
+    return compose(page, ran, notebook.parent)
+
+
+class BriefExporter(Exporter):
+    """`jupyter nbconvert --to briefkit brief.ipynb`: the page `briefkit build` writes, byte for byte.
+
+    No option, filter, template or preprocessor of nbconvert's changes it: a page that a machine's settings could
+    change would not be the page that was approved.
+    """
+
+    output_mimetype = "text/html"
+    export_from_notebook = "Brief"
+
+    @default("file_extension")
+    def _file_extension_default(self) -> str:
+        return ".html"
+
+    def from_filename(  # type: ignore[override]  # nbconvert's own exporters give text too
+        self, filename: str, resources: dict[str, Any] | None = None, **kw: Any
+    ) -> tuple[str, dict[str, Any]]:
+        """The page of a notebook file; whatever it stored is not read."""
+        return self._page(Path(filename).absolute(), None, resources)
+
+    def from_notebook_node(  # type: ignore[override]
+        self, nb: NotebookNode, resources: dict[str, Any] | None = None, **kw: Any
+    ) -> tuple[str, dict[str, Any]]:
+        """The page of a notebook in memory; `resources` must say in which folder it lives."""
+        metadata = (resources or {}).get("metadata", {})
+        if not metadata.get("path") or not metadata.get("name"):
+            raise BuildError(f"a brief is exported from its file, {NOTEBOOK}, not from a stream")
+        return self._page(Path(metadata["path"]).absolute() / f"{metadata['name']}.ipynb", nb, resources)
+
+    def _page(
+        self, notebook: Path, node: NotebookNode | None, resources: dict[str, Any] | None
+    ) -> tuple[str, dict[str, Any]]:
+        ready = dict(self._init_resources(resources))  # type: ignore[no-untyped-call]
+        try:
+            return export(notebook, node), ready
+        except BriefkitError as error:
+            if not _on_the_command_line():
+                raise
+            sys.stderr.write(f"{notebook.name}: {error}\n")
+            raise SystemExit(1) from None
+
+
+def _on_the_command_line() -> bool:
+    """True under `jupyter nbconvert`, which would show a traceback where a sentence is meant."""
+    return Application.initialized() and type(Application.instance()).__name__ == "NbConvertApp"
