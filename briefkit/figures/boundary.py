@@ -23,11 +23,16 @@ _SAME = 0.05  # speeds closer than this, everywhere, are one line
 
 @dataclass(frozen=True)
 class Here:
-    """The present condition on the figure: its place and the words beside it; no speed draws the line alone."""
+    """The present condition on the figure: its place, its speed, and the equivalent VNE there, with their words.
+
+    No speed leaves its ring out, no answer its dot; the line stays.
+    """
 
     x: float
     speed: float | None
     words: str
+    answer: float | None = None
+    answer_words: str = ""
 
 
 @dataclass(frozen=True)
@@ -35,12 +40,13 @@ class Curves:
     """What the figure shows, in the units it is printed in; NaN marks a gap (refused), and a gap stays a gap.
 
     `x` (n,) rising; `manual` (n,) the manual's VNE; `turns` (bank in degrees, (n,) speeds) of the equivalent VNE;
-    `onset_lower`, `onset_central`, `onset_upper` (n,) the absolute onset band.
+    `onset_lower`, `onset_central`, `onset_upper` (m,) the absolute onset band over `onset_x` (m,) rising.
     """
 
     x: ArrayLike
     manual: ArrayLike
     turns: Sequence[tuple[float, ArrayLike]]
+    onset_x: ArrayLike
     onset_lower: ArrayLike
     onset_central: ArrayLike
     onset_upper: ArrayLike
@@ -67,6 +73,10 @@ class BoundaryFigure:
             x=[], y=[], scales=area.scales, colors=[theme.PAPER], stroke=theme.INK, stroke_width=2.0, default_size=90,
             enable_hover=False,
         )  # fmt: skip
+        self._answer = bqplot.Scatter(
+            x=[], y=[], scales=area.scales, colors=[theme.COMPUTED], default_size=70, enable_hover=False
+        )
+        self._answer_words = canvas.texts(area, theme.COMPUTED, bold=True)
         self._here_words = canvas.texts(area, bold=True)
         self._titles = canvas.texts(area, theme.GREY)
         self._foot = canvas.texts(area, theme.GREY, align="middle")
@@ -84,14 +94,15 @@ class BoundaryFigure:
         band = [
             np.asarray(edge, dtype=float) for edge in (curves.onset_lower, curves.onset_central, curves.onset_upper)
         ]
+        band_x = np.asarray(curves.onset_x, dtype=float)
         if not np.any(np.isfinite(manual)):
             raise ValueError("the manual's VNE has no value anywhere on this figure")
         self._set_limits(x, [manual, *(speeds for _, speeds in turns), *band], here)
-        grown = self._draw_band(x, band)
+        grown = self._draw_band(band_x, band)
         grown |= self._manual.update(x, manual)
         merged = [bank for bank, speeds in turns if _same(speeds, manual)]
         grown |= self._draw_turns(x, turns, merged, here)
-        self._write_ends(x, manual, [turn for turn in turns if turn[0] not in merged], band, merged)
+        self._write_ends(x, manual, [turn for turn in turns if turn[0] not in merged], (band_x, band), merged)
         self._draw_here(here)
         if grown:
             self.figure.marks = self._in_order()
@@ -101,17 +112,18 @@ class BoundaryFigure:
         for turn in self._turns:
             marks += turn.marks
         return [
-            *marks, *self._manual.marks, self._stops, *self._stop_words, *self._ends.marks, self._here,
+            *marks, *self._manual.marks, self._stops, *self._stop_words, *self._ends.marks,
+            self._answer, self._here, self._answer_words,
             self._here_words, self._titles, self._foot,
         ]  # fmt: skip
 
     def _set_limits(self, x: Floats, speeds: Sequence[Floats], here: Here | None) -> None:
-        everything = np.concatenate([*speeds, [] if here is None or here.speed is None else [here.speed]])
+        everything = np.concatenate([*speeds, _speeds(here)])
         finite = everything[np.isfinite(everything)]
         step = 10.0 if np.ptp(finite) <= 120.0 else 20.0
         low, high = (
             math.floor((finite.min() - 0.12 * np.ptp(finite)) / step) * step,
-            math.ceil((finite.max() + 0.07 * np.ptp(finite)) / step) * step,
+            math.ceil((finite.max() + 0.13 * np.ptp(finite)) / step) * step,
         )
         area = self._area
         canvas.rescale(area, (float(x[0]), float(x[-1]), max(low, 0.0), high))
@@ -179,7 +191,7 @@ class BoundaryFigure:
         x: Floats,
         manual: Floats,
         turns: Sequence[tuple[float, Floats]],
-        band: Sequence[Floats],
+        band: tuple[Floats, Sequence[Floats]],
         merged: Sequence[float],
     ) -> None:
         level = tuple(f"and {_bank(bank)}" for bank in merged)
@@ -187,25 +199,35 @@ class BoundaryFigure:
         for bank, speeds in turns:
             if np.isfinite(speeds[-1]):
                 ends.append(_end(x, speeds, (_bank(bank),), theme.COMPUTED))
-        whole = (band[0] + band[2]) / 2.0
-        if np.any(np.isfinite(whole)):
-            ends.append(_end(x, whole, ("onset band,", "softer than", "the chart"), theme.GREY))
+        lower, _, upper = band[1]
+        if np.any(np.isfinite(lower + upper)):
+            ends.append(_end(band[0], (lower + upper) / 2.0, ("onset band,", "softer than", "the chart"), theme.GREY))
         self._ends.update(ends)
 
     def _draw_here(self, here: Here | None) -> None:
         if here is None:
-            for mark in (self._here, self._here_line):
+            for mark in (self._here, self._answer, self._here_line):
                 put(mark, [], [])
             write(self._here_words, [])
+            write(self._answer_words, [])
             return
         area = self._area
         top = area.y_at(-4.0)
         put(self._here_line, [here.x, here.x], [area.y.min, top])
-        speeds = [] if here.speed is None else [here.speed]
-        put(self._here, [here.x] * len(speeds), speeds)
-        right = area.across(here.x) > area.width - canvas.text_width(here.words)
+        for mark, speed in ((self._here, here.speed), (self._answer, here.answer)):
+            put(mark, [] if speed is None else [here.x], [] if speed is None else [speed])
+        longest = max(canvas.text_width(here.words), canvas.text_width(here.answer_words))
+        right = area.across(here.x) > area.width - longest - 8.0
         place = area.x_at(area.across(here.x) + (-6.0 if right else 6.0))
-        write(self._here_words, [(place, area.y_at(4.0), here.words)], align="end" if right else "start")
+        align = "end" if right else "start"
+        write(self._here_words, [(place, area.y_at(2.0), here.words)], align=align)
+        write(
+            self._answer_words, [(place, area.y_at(16.0), here.answer_words)] if here.answer_words else [], align=align
+        )
+
+
+def _speeds(here: Here | None) -> list[float]:
+    return [] if here is None else [speed for speed in (here.speed, here.answer) if speed is not None]
 
 
 def _same(one: Floats, other: Floats) -> bool:

@@ -114,13 +114,9 @@ def _words(
     write(said, [(area.x.min, middle, text) for middle, text in zip(middles.tolist(), texts, strict=True)])
     for reduction, middle, text in zip(reductions, middles.tolist(), texts, strict=True):
         if reduction is None:
-            wide = area.x_at(16.0 + canvas.text_width(text))
-            corners = [
-                (area.x.min, middle - 10.0),
-                (wide, middle - 10.0),
-                (wide, middle + 10.0),
-                (area.x.min, middle + 10.0),
-            ]
+            start, wide = area.x_at(2.0), area.x_at(16.0 + canvas.text_width(text))
+            low, high = middle - 10.0, middle + 10.0
+            corners = [(start, low), (wide, low), (wide, high), (start, high)]
             plates.append(corners)
     sheet = [theme.PAPER] * max(len(plates), 1)
     put(
