@@ -20,7 +20,7 @@ from briefkit.aircraft.model import Aircraft, Limits, RotorData, Stated
 from briefkit.aircraft.operation import OPERATION_FILE, Operation, cross_check, load_operation
 from briefkit.brief.identity import BRIEF_FILE, Identity, disagreements, load_identity, operator_folder, shown_path
 from briefkit.errors import Fault, FaultyFile
-from briefkit.reading.document import Document
+from briefkit.reading.document import EXAMPLE, Document
 
 # A value typed without a spread counts as exact. These never are: each moves the onset band or the pictures.
 _NEVER_EXACT: Final = ("chord", "twist", "flap_inertia", "lift_slope", "drag_area")
@@ -118,6 +118,7 @@ def _loaded(path: Path, load: Callable[[Path], Loaded]) -> tuple[Loaded | None, 
     for key in document.unanswered():
         if not any(other.startswith(key) or key.startswith(other) for other in asked):
             faults.append(Fault(str(path), key, "?", "", "", document.line_of(key)))
+    faults += [Fault(str(path), key, EXAMPLE, "", "", line) for key, line in document.examples()]
     faults.sort(key=lambda fault: fault.line)
     return loaded, [_from_fault(fault) for fault in faults]
 
@@ -126,6 +127,9 @@ def _from_fault(fault: Fault) -> Finding:
     place = f"{fault.file}, line {fault.line}: {fault.key}" if fault.line else f"{fault.file}: {fault.key}"
     if fault.read == "?":
         return Finding(Level.BLOCKS, place, 'still "?"', "type it from its document")
+    if fault.read == EXAMPLE:
+        remedy = f"type your own value and take the mark # {EXAMPLE} out"
+        return Finding(Level.BLOCKS, place, "still the starter's example", remedy)
     return Finding(Level.BLOCKS, place, f"read {fault.read}; permitted: {fault.permitted}", fault.remedy)
 
 

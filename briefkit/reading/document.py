@@ -22,6 +22,7 @@ from briefkit.reading import lines
 from briefkit.reading.quantity import did_you_mean, nearest, quoted
 
 SIZE_LIMIT: Final = 256_000
+EXAMPLE: Final = "EXAMPLE"  # marks a starter's invented values, in a comment at the end of their line
 
 
 class Table(BaseModel):
@@ -133,6 +134,10 @@ class Document:
     def unanswered(self) -> tuple[str, ...]:
         """Dotted keys whose value, or part of whose text block, is still "?"."""
         return tuple(lines.unanswered(self.data))
+
+    def examples(self) -> tuple[tuple[str, int], ...]:
+        """Dotted keys, with their lines, that still carry a starter's mark EXAMPLE in their comment."""
+        return tuple(lines.marked(self._text, EXAMPLE))
 
     def raise_faults(self) -> None:
         """Raise `FaultyFile` with every fault, in the order of the file, if there is any."""

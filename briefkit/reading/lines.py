@@ -97,6 +97,13 @@ def _bare(key: str) -> str:
     return ".".join(part.strip().strip("\"'") for part in key.split("."))
 
 
+def marked(text: str, mark: str) -> list[tuple[str, int]]:
+    """Dotted keys and lines whose comment begins with `mark`; what stands in a text block is no comment."""
+    places = {line: key for key, line in line_numbers(text).items()}
+    comment = re.compile(rf"[^#]*#\s*{re.escape(mark)}\b.*")
+    return [(places[n], n) for n, line in enumerate(text.split("\n"), start=1) if n in places and comment.match(line)]
+
+
 def unanswered(value: object, key: str = "") -> Iterable[str]:
     """Dotted keys below `value` that are still "?", whole or in part of a text block."""
     if isinstance(value, Mapping):
