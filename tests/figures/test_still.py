@@ -12,6 +12,8 @@ import pytest
 
 from briefkit.figures.still import Drawing, StillParts, Table, still
 
+SVG = "{http://www.w3.org/2000/svg}"
+
 
 def line_figure(scales: Any, figure: Any) -> bqplot.Figure:
     return figure(bqplot.Lines(x=[0.0, 10.0], y=[0.0, 5.0], scales=scales), title="Named")
@@ -103,7 +105,7 @@ def test_ordinary_words_with_those_letters_pass(parts):
 
 
 def test_a_bare_figure_is_named_by_its_title(scales, figure):
-    assert texts(fragment(still(line_figure(scales, figure))), "figure/svg/title") == ["Named"]
+    assert texts(fragment(still(line_figure(scales, figure))), f"figure/{SVG}svg/{SVG}title") == ["Named"]
     with pytest.raises(ValueError, match="needs a title"):
         still(figure(bqplot.Lines(x=[0.0, 1.0], y=[0.0, 1.0], scales=scales)))
 
