@@ -82,7 +82,8 @@ def turn_section(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea, table: R
     validity = (
         f"Level turn, rotor at 100 %, Hp {_range(aircraft, area)}, "
         f"{words.temperature(area.low_temperature.value)} to {words.temperature(area.high_temperature.value)}. "
-        f"Answer under {words.indicated(aircraft, table.floor.text)} ({table.floor.reason}): no {table.brief_bank_deg:.0f}-degree turn. "
+        f"Answer under {words.indicated(aircraft, table.floor.text)} ({table.floor.reason}): "
+        f"no {table.brief_bank_deg:.0f}-degree turn. "
         f"Over {bank}: not briefed."
     )
     # What the manual says of turns comes before anything computed, and the slower of the two holds.

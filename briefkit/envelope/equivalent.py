@@ -109,7 +109,7 @@ def equivalent_vnes(aircraft: Aircraft, conditions: Conditions | Iterable[Condit
     ask = np.nonzero((reason == Reason.NONE) & ~level)[0]
     ias, upper = vne.copy(), vne.copy()
     point = [many.pressure_altitude.copy(), many.oat.copy(), here.chart_mass(aircraft, many)]
-    set_by = np.full(len(many), SetBy.MANUAL_VNE, dtype=object)
+    set_by = here.filled(len(many), SetBy.MANUAL_VNE)
     if len(ask):
         asked = many.take(ask)
         found, why, best = _read(aircraft, asked, vne[ask], LOAD_EXPONENT)
@@ -178,7 +178,7 @@ def covered_banks(aircraft: Aircraft, conditions: Conditions) -> tuple[Floats, R
 
 def _read(aircraft: Aircraft, many: Conditions, vne: Floats, exponent: float) -> tuple[Floats, Reasons, search.Best]:
     """Indicated speed [m/s] at the equivalent level flight, its reasons, and the chart points; never above `vne`."""
-    reason = np.full(len(many), Reason.NONE, dtype=object)
+    reason = here.filled(len(many), Reason.NONE)
     if not aircraft.vne.temperatures and not aircraft.vne.covers_temperatures:
         reason[:] = Reason.NO_TEMPERATURES
         nothing = np.full(len(many), np.nan)

@@ -9,12 +9,17 @@ from briefkit import units
 from briefkit.aircraft.model import Aircraft
 from briefkit.envelope.condition import Conditions
 from briefkit.envelope.speeds import true_of
-from briefkit.errors import OutsideChart, OutsideLimits, Reason, Refusal
+from briefkit.errors import OutsideChart, OutsideLimits, Reason, Refusal, SetBy
 
 Floats = NDArray[np.float64]
 Reasons = NDArray[np.object_]
 
 _SLACK = 1e-9  # relative, so that a limit typed and a condition typed alike are equal
+
+
+def filled(count: int, member: Reason | SetBy) -> Reasons:
+    """An array of one enum member (batch,). `numpy.full` would turn it into plain text."""
+    return np.array([member] * count, dtype=object)
 
 
 def chart_mass(aircraft: Aircraft, many: Conditions) -> Floats:
@@ -34,7 +39,7 @@ def true_airspeed(aircraft: Aircraft, indicated: Floats, many: Conditions) -> Fl
 
 def reasons(aircraft: Aircraft, many: Conditions) -> Reasons:
     """Why each condition is not permitted here, (batch,); `Reason.NONE` where it is."""
-    found = np.full(len(many), Reason.NONE, dtype=object)
+    found = filled(len(many), Reason.NONE)
     for reason, outside in _checks(aircraft, many):
         found[outside & (found == Reason.NONE)] = reason
     return found

@@ -127,7 +127,7 @@ def solve_many(aircraft: Aircraft, conditions: Conditions | Iterable[Condition])
     many = conditions if isinstance(conditions, Conditions) else Conditions.of(conditions)
     rotor = rotor_of(aircraft)
     true = here.true_airspeed(aircraft, many.ias, many)
-    reason = np.full(len(many), Reason.NONE, dtype=object)
+    reason = here.filled(len(many), Reason.NONE)
     reason[np.isnan(true)] = Reason.OUTSIDE_CALIBRATION
     reason[many.mass > aircraft.limits.max_mass.value * (1.0 + 1e-9)] = Reason.OUTSIDE_LIMITS
     solved = trim(rotor, state_of(rotor, many, np.where(np.isnan(true), 0.0, true)))
