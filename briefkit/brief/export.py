@@ -78,19 +78,27 @@ class BriefExporter(Exporter):
         """The page of a notebook in memory; `resources` must say in which folder it lives."""
         metadata = (resources or {}).get("metadata", {})
         if not metadata.get("path") or not metadata.get("name"):
-            raise BuildError(f"a brief is exported from its file, {NOTEBOOK}, not from a stream")
+            return self.from_file(None)
         return self._page(Path(metadata["path"]).absolute() / f"{metadata['name']}.ipynb", nb, resources)
 
+    def from_file(  # type: ignore[override]
+        self, file_stream: Any, resources: dict[str, Any] | None = None, **kw: Any
+    ) -> tuple[str, dict[str, Any]]:
+        """Refused: a stream does not say which brief it is."""
+        return self._page(None, None, resources)
+
     def _page(
-        self, notebook: Path, node: NotebookNode | None, resources: dict[str, Any] | None
+        self, notebook: Path | None, node: NotebookNode | None, resources: dict[str, Any] | None
     ) -> tuple[str, dict[str, Any]]:
         ready = dict(self._init_resources(resources))  # type: ignore[no-untyped-call]
         try:
+            if notebook is None:
+                raise BuildError(f"a brief is exported from its file, {NOTEBOOK}, not from a stream")
             return export(notebook, node), ready
         except BriefkitError as error:
             if not _on_the_command_line():
                 raise
-            sys.stderr.write(f"{notebook.name}: {error}\n")
+            sys.stderr.write(f"{error}\n")
             raise SystemExit(1) from None
 
 

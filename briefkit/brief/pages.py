@@ -18,7 +18,9 @@ from markupsafe import Markup, escape
 from briefkit.errors import BuildError
 from briefkit.figures import theme
 
-_UNIT_GAP: Final = re.compile(r"(?<=\d) (?=(?:°C|%|kt|KIAS|KTAS|km/h|mph|lb|kg|ft|m|hPa|inHg|rpm|degrees?|deg)\b|°|%)")
+_UNIT_GAP: Final = re.compile(
+    r"(?<=±) |(?<=\d) (?=(?:°C|%|kt|KIAS|KTAS|km/h|mph|lb|kg|ft|m|hPa|inHg|rpm|degrees?|deg)\b|°|%)"
+)
 _MARKED: Final = re.compile(r"([\d,.\u2212+]+)([*\u2020\u2021])")
 
 
