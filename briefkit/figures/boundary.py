@@ -40,7 +40,8 @@ class Curves:
     """What the figure shows, in the units it is printed in; NaN marks a gap (refused), and a gap stays a gap.
 
     `x` (n,) rising; `manual` (n,) the manual's VNE; `turns` (bank in degrees, (n,) speeds) of the equivalent VNE;
-    `onset_lower`, `onset_central`, `onset_upper` (m,) the absolute onset band over `onset_x` (m,) rising.
+    `onset_lower`, `onset_central`, `onset_upper` (m,) the absolute onset band over `onset_x` (m,) rising; where only
+    its upper end has no value the band is drawn open, up to the top of the figure, and says so.
     """
 
     x: ArrayLike
@@ -134,8 +135,8 @@ class BoundaryFigure:
 
     def _draw_band(self, x: Floats, band: Sequence[Floats]) -> bool:
         lower, central, upper = band
-        whole = lower + upper  # finite where both are
-        runs = [run for run in canvas.finite_runs(x, whole) if run[0].size > 1]
+        upper = np.where(np.isfinite(upper), upper, self._area.y.max)
+        runs = [run for run in canvas.finite_runs(x, lower) if run[0].size > 1]
         missing = len(runs) - len(self._band)
         self._band += [canvas.patch(self._area, theme.BAND) for _ in range(missing)]
         for index, mark in enumerate(self._band):
@@ -200,8 +201,12 @@ class BoundaryFigure:
             if np.isfinite(speeds[-1]):
                 ends.append(_end(x, speeds, (_bank(bank),), theme.COMPUTED))
         lower, _, upper = band[1]
-        if np.any(np.isfinite(lower + upper)):
-            ends.append(_end(band[0], (lower + upper) / 2.0, ("onset band,", "softer than", "the chart"), theme.GREY))
+        if np.any(np.isfinite(lower)):
+            rows = ("onset band,", "softer than", "the chart")
+            if np.any(np.isfinite(lower) & ~np.isfinite(upper)):
+                rows = (*rows, "(open at the top)")
+            upper = np.where(np.isfinite(upper), upper, self._area.y.max)
+            ends.append(_end(band[0], (lower + upper) / 2.0, rows, theme.GREY))
         self._ends.update(ends)
 
     def _draw_here(self, here: Here | None) -> None:

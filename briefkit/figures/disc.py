@@ -243,6 +243,34 @@ def _stack(x: float, rows: Sequence[str]) -> list[tuple[float, float, str]]:
     return [(x, 0.05 * (len(rows) - 1) - 0.1 * index, row) for index, row in enumerate(rows)]
 
 
+def reversed_region(radii: ArrayLike, azimuths: ArrayLike, speed: ArrayLike, root: float) -> tuple[Floats, Floats]:
+    """Closed boundary (azimuths [rad], radii) of the region where `speed` (radii, azimuths) is negative; empty: none.
+
+    Between the root cut-out and the outermost change of sign on each azimuth, as the arrays of `DiscFigure.update`.
+    """
+    polar = refine(radii, azimuths, speed, root)
+    inside = polar.values[0] < 0.0
+    if not np.any(inside):
+        return np.empty(0), np.empty(0)
+    spokes = inside.size
+    start = int(np.flatnonzero(~inside)[0]) if not np.all(inside) else 0
+    members = [(start + step) % spokes for step in range(spokes) if inside[(start + step) % spokes]]
+    outer = [_edge(polar, member) for member in members]
+    psi = 2.0 * math.pi / spokes * np.array([member if member >= start else member + spokes for member in members])
+    return np.concatenate([psi, psi[::-1]]), np.concatenate([outer, np.full(len(members), polar.radii[0])])
+
+
+def _edge(polar: Polar, spoke: int) -> float:
+    """Radius of the outermost change from negative to positive on one spoke; the tip if it never changes."""
+    profile = polar.values[:, spoke]
+    changes = np.flatnonzero((profile[:-1] < 0.0) & (profile[1:] >= 0.0))
+    if changes.size == 0:
+        return 1.0
+    i = changes[-1]
+    share = profile[i] / (profile[i] - profile[i + 1])
+    return float(polar.radii[i] + share * (polar.radii[i + 1] - polar.radii[i]))
+
+
 def _spread_blades(blades: int) -> list[float]:
     """Where the blades are drawn: evenly, as far as possible from the written numbers and the reversed flow."""
     best = max(range(360), key=lambda start: _clearance(start, blades))
@@ -260,7 +288,7 @@ def _apart(angle_deg: float, azimuth: float) -> float:
 
 
 def levels_for(low: float, high: float, choices: Sequence[float] = (10.0, 20.0, 25.0, 50.0, 100.0)) -> Floats:
-    """Edges of six to ten even steps of a round size that cover low to high."""
-    step = next((choice for choice in choices if (high - low) / choice <= 10.0), choices[-1])
+    """Edges of at most twelve even steps of a round size that cover low to high."""
+    step = next((choice for choice in choices if (high - low) / choice <= 12.0), choices[-1])
     first, last = math.floor(low / step + 1e-9), math.ceil(high / step - 1e-9)
     return np.array([index * step for index in range(first, last + 1)], dtype=float)
