@@ -4,10 +4,11 @@ from __future__ import annotations
 
 from typing import Final
 
-from briefkit.brief import control, derivation, front, recognition
+from briefkit.aircraft.model import Aircraft
+from briefkit.brief import control, derivation, front, pictures, recognition
 from briefkit.brief.identity import Brief
-from briefkit.brief.pages import CrewPage
-from briefkit.envelope.reductions import reductions
+from briefkit.brief.pages import CrewPage, Section
+from briefkit.envelope.reductions import ReductionTable, reductions
 from briefkit.errors import BuildError
 
 DRAFT: Final = "DRAFT: not for crews"
@@ -40,8 +41,22 @@ def crew_page(brief: Brief, version: str) -> CrewPage:
         ),
         front=front.front(aircraft, fleet, area, table),
         recognition=recognition.recognition(aircraft),
-        analysis=derivation.derivation(aircraft, table),
+        analysis=_analysis(aircraft, table),
         control=control.control(brief, version),
         slip=control.slip(identity),
         invented=aircraft.invented,
+    )
+
+
+def _analysis(aircraft: Aircraft, table: ReductionTable) -> tuple[Section, ...]:
+    """Sheet 3 before the author's own analysis: the method, each row, the pictures, the chart, the assumptions."""
+    row = derivation.worked_row(table)
+    on_chart = (Section("One row on the chart", figure=pictures.row_on_chart(aircraft, row)),) if row else ()
+    return (
+        derivation.method(aircraft, table),
+        *on_chart,
+        derivation.rows_section(aircraft, table),
+        Section("The reduction as a picture", figure=pictures.stairs(aircraft, table)),
+        derivation.chart_section(aircraft),
+        derivation.assumptions(aircraft, table),
     )

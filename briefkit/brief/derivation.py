@@ -54,16 +54,6 @@ def work_by_hand(aircraft: Aircraft, at: Condition, answer: EquivalentVne) -> Ha
     return Hand(at.mass * at.load_factor**LOAD_EXPONENT, shown(true), shown(indicated), shown(vne_here), below)
 
 
-def derivation(aircraft: Aircraft, table: ReductionTable) -> tuple[Section, ...]:
-    """The sections of sheet 3 that stand before the author's own analysis."""
-    return (
-        method(aircraft, table),
-        rows_section(aircraft, table),
-        chart_section(aircraft),
-        assumptions(aircraft, table),
-    )
-
-
 def method(aircraft: Aircraft, table: ReductionTable) -> Section:
     """The idea in a paragraph, and one row worked."""
     bank = table.brief_bank_deg
