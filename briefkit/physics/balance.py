@@ -1,4 +1,4 @@
-"""The equations of steady flight: seven residuals of nine unknowns, and their slopes.
+"""The equations of steady flight: seven residuals, nine unknowns, and their slopes.
 
 Unknowns are the fields of `Motion` in order. Equations, in order: vertical and in-plane force over the weight, the
 three of flapping [rad], inflow, torque. A way of solving (`Way`) names which unknowns are free and which equations
@@ -23,12 +23,13 @@ from briefkit.physics.elements import (
     flow_at,
     flow_coefficients,
     forces_of,
+    make_grid,
     sums_of,
 )
 from briefkit.physics.flapping import flap_balance
-from briefkit.physics.inflow import Inflow, induced_balance
-from briefkit.physics.rotor import Case
-from briefkit.physics.section import Section
+from briefkit.physics.inflow import Inflow, induced_balance, inflow_named
+from briefkit.physics.rotor import Case, Rotor
+from briefkit.physics.section import Section, section_named
 
 Array = NDArray[np.float64]
 Members = NDArray[np.intp]
@@ -51,6 +52,9 @@ class Way:
 
 TRIMMED: Final = Way((T0, T1C, T1S, B0, INDUCED, TILT), (VERTICAL, IN_PLANE, FLAP_MEAN, FLAP_COSINE, FLAP_SINE, INFLOW))
 HELD: Final = Way((B0, B1C, B1S, INDUCED), (FLAP_MEAN, FLAP_COSINE, FLAP_SINE, INFLOW))
+# Torque-free: trimmed down a glide path that is found, or with the controls held at a shaft angle that is found.
+GLIDING: Final = Way((*TRIMMED.free, CLIMB), (*TRIMMED.equations, TORQUE))
+WINDMILLING: Final = Way((*HELD.free, TILT), (*HELD.equations, TORQUE))
 
 
 def thrust(case: Case, sums: Sums) -> Array:
@@ -77,6 +81,12 @@ def torque(case: Case, sums: Sums) -> Array:
     return 0.5 * case.solidity * sums.drag[:, 1]
 
 
+def coefficients(case: Case, motion: Motion, sums: Sums) -> Array:
+    """CT, CH, CY and CQ, (batch, 4)."""
+    parts = thrust(case, sums), rearward_force(case, motion, sums), side_force(case, motion, sums), torque(case, sums)
+    return np.stack(parts, axis=1)
+
+
 def residuals(case: Case, motion: Motion, sums: Sums) -> Array:
     """All seven equations, (batch, 7).
 
@@ -100,49 +110,75 @@ def residuals(case: Case, motion: Motion, sums: Sums) -> Array:
 
 
 @dataclass(frozen=True, eq=False)
+class Model:
+    """What the disc is summed with: mesh, section and shape of the inflow; `size` = (azimuths, radii)."""
+
+    grid: Grid
+    section: Section
+    inflow: Inflow
+    size: tuple[int, int]
+
+    @classmethod
+    def of(cls, rotor: Rotor, inflow: str, section: str | Section, size: tuple[int, int]) -> Model:
+        """By names; raises `OutsideLimits` for those that do not exist and for a grid that is too coarse."""
+        return cls(make_grid(rotor.planform, size), section_named(section), inflow_named(inflow), size)
+
+
+@dataclass(frozen=True, eq=False)
+class Disc:
+    """The disc in one motion: sums, and what they were made of."""
+
+    sums: Sums
+    terms: Coefficients
+    flow: Flow
+    forces: Forces
+
+
+def disc_of(case: Case, motion: Motion, model: Model) -> Disc:
+    """The disc of a batch in a motion, summed over the model's grid."""
+    terms = flow_coefficients(case, motion, model.inflow)
+    flow = flow_at(case, model.grid.points, terms)
+    forces = forces_of(case, flow, model.section, model.grid.lifting)
+    return Disc(sums_of(model.grid, forces.normal, forces.drag), terms, flow, forces)
+
+
+@dataclass(frozen=True, eq=False)
 class Balance:
     """The equations of a batch for one way of solving: `base` (batch, 9) holds the unknowns that are not free."""
 
     case: Case
-    grid: Grid
-    section: Section
-    inflow: Inflow
+    model: Model
     way: Way
     base: Array
 
-    def motion(self, x: Array, members: Members) -> Motion:
-        """The motion of members with the free unknowns x (member, free)."""
-        return Motion(*self._columns(x, members).T)
-
-    def sums(self, case: Case, motion: Motion) -> tuple[Sums, Flow, Forces, Coefficients]:
-        """Sums over the disc, with what they were made of."""
-        terms = flow_coefficients(case, motion, self.inflow)
-        flow = flow_at(case, self.grid.points, terms)
-        forces = forces_of(case, flow, self.section, self.grid.lifting)
-        return sums_of(self.grid, forces.normal, forces.drag), flow, forces, terms
-
     def left(self, x: Array, members: Members) -> Array:
-        """Residuals of the equations in force, (member, equation)."""
-        case, motion = self._members(members), self.motion(x, members)
-        return residuals(case, motion, self.sums(case, motion)[0])[:, self.way.equations]
+        """Residuals of the equations in force and then CT, CH, CY, CQ, (member, equations + 4)."""
+        case, motion = self._members(members), Motion(*self.columns(x, members).T)
+        return self._left(case, motion, disc_of(case, motion, self.model).sums)
+
+    def _left(self, case: Case, motion: Motion, sums: Sums) -> Array:
+        own = residuals(case, motion, sums)[:, self.way.equations]
+        return np.concatenate([own, coefficients(case, motion, sums)], axis=1)
 
     def slopes(self, x: Array, members: Members) -> tuple[Array, Array]:
-        """Residuals, and their slopes by the free unknowns (member, equation, free).
+        """What `left` gives, and the equations' slopes by the free unknowns (member, equation, free).
 
         Slopes of the element forces are analytic by angle and velocity, and go to the sums through the grid's
         shapes; Mach number is held meanwhile. What is in closed form is differenced.
         """
-        case, columns = self._members(members), self._columns(x, members)
+        case, columns = self._members(members), self.columns(x, members)
         motion = Motion(*columns.T)
-        sums, flow, forces, terms = self.sums(case, motion)
-        now = residuals(case, motion, sums)[:, self.way.equations]
+        disc = disc_of(case, motion, self.model)
+        sums, terms = disc.sums, disc.terms
+        left = self._left(case, motion, sums)
+        now = left[:, : len(self.way.equations)]
         # Every free unknown moved a little in turn, all in one batch: (free, member) run together.
         count, free = x.shape[0], len(self.way.free)
         many = case.take(np.tile(np.arange(count), free))
         moved = np.tile(columns, (free, 1, 1))
         moved[np.arange(free), :, self.way.free] += _UNKNOWN_STEP
         moved_motion = Motion(*moved.reshape(-1, 9).T)
-        moved_terms = flow_coefficients(many, moved_motion, self.inflow)
+        moved_terms = flow_coefficients(many, moved_motion, self.model.inflow)
         change = [
             (new.reshape(free, count, -1) - old.reshape(count, -1))
             for new, old in (
@@ -153,19 +189,20 @@ class Balance:
         ]
         normal, drag = (
             own + sum(np.einsum("fmk,mks->fms", part, by) for part, by in zip(change, slopes, strict=True))
-            for own, slopes in zip((sums.normal, sums.drag), self._sum_slopes(case, flow, forces), strict=True)
+            for own, slopes in zip((sums.normal, sums.drag), self._sum_slopes(case, disc), strict=True)
         )
         moved_sums = Sums(normal.reshape(free * count, -1), drag.reshape(free * count, -1))
         after = residuals(many, moved_motion, moved_sums)[:, self.way.equations].reshape(free, count, -1)
-        return now, ((after - now) / _UNKNOWN_STEP).transpose(1, 2, 0)
+        return left, ((after - now) / _UNKNOWN_STEP).transpose(1, 2, 0)
 
-    def _sum_slopes(self, case: Case, flow: Flow, forces: Forces) -> tuple[list[Array], list[Array]]:
+    def _sum_slopes(self, case: Case, disc: Disc) -> tuple[list[Array], list[Array]]:
         """Slopes of the normal and the drag sums by the coefficients of pitch, flow through and flow across.
 
         Each (member, coefficient, sum).
         """
-        grid, u, across, through = self.grid, flow.resultant, flow.across, flow.through
-        raised = self.section.coefficients(flow.angle + _ANGLE_STEP, flow.mach, case.lift_slope[:, None])
+        grid, flow, forces = self.model.grid, disc.flow, disc.forces
+        u, across, through = flow.resultant, flow.across, flow.through
+        raised = self.model.section.coefficients(flow.angle + _ANGLE_STEP, flow.mach, case.lift_slope[:, None])
         lift, drag = forces.lift_coefficient, forces.drag_coefficient
         lift_slope = (raised[0] * grid.lifting - lift) / _ANGLE_STEP
         drag_slope = (raised[1] - drag) / _ANGLE_STEP
@@ -192,9 +229,10 @@ class Balance:
             (along * cosine + by_angle * sine) / u + u * by_across,
         )
 
-    def _columns(self, x: Array, members: Members) -> Array:
+    def columns(self, x: Array, members: Members) -> Array:
+        """All nine columns of the members, with the free ones x."""
         columns = self.base[members]
-        columns[:, self.way.free] = x
+        columns[:, list(self.way.free)] = x
         return columns
 
     def _members(self, members: Members) -> Case:

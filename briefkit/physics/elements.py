@@ -16,7 +16,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from briefkit.errors import OutsideLimits, Reason
-from briefkit.physics.inflow import Inflow
+from briefkit.physics.inflow import Inflow, ground_share
 from briefkit.physics.rotor import REFERENCE_STATION, Case, Planform
 from briefkit.physics.section import Section
 
@@ -146,9 +146,9 @@ def _products(points: Points, weights: Array) -> tuple[Array, Array, Array]:
 class Motion:
     """What the blades do and the air they meet, dimensionless, each (batch,).
 
-    Pitch t0, t1c, t1s and flap b0, b1c, b1s [rad] from the shaft's plane, in wind axes; `induced`: mean induced inflow;
-    `tilt` [rad] of the shaft's plane, nose down positive, from the plane normal to the apparent weight; `climb` [rad]
-    of the flight path above that plane. The flow meets the shaft's plane at the sum of the two.
+    Pitch t0, t1c, t1s and flap b0, b1c, b1s [rad] from the shaft's plane, in wind axes; `induced`: mean induced inflow
+    that the wake has in free air; `tilt` [rad] of the shaft's plane, nose down positive, from the plane normal to the
+    apparent weight; `climb` [rad] of the flight path above that plane. The flow meets the shaft's plane at their sum.
     """
 
     t0: Array
@@ -162,12 +162,18 @@ class Motion:
     climb: Array
 
     def mu(self, case: Case) -> Array:
-        """Advance ratio: the speed in the plane of the shaft's disc."""
-        return case.speed * np.cos(self.tilt + self.climb)
+        """Advance ratio: the speed in the plane of the shaft's disc; a gust straight up adds what leans into it."""
+        return case.speed * np.cos(self.tilt + self.climb) + case.gust * np.sin(self.tilt)
 
     def axial(self, case: Case) -> Array:
         """mu_z: the free stream's part of the flow down through the disc."""
-        return case.speed * np.sin(self.tilt + self.climb)
+        return case.speed * np.sin(self.tilt + self.climb) - case.gust * np.cos(self.tilt)
+
+    def inflow(self, case: Case) -> Array:
+        """Mean induced inflow at the disc: the momentum value `induced`, less what the ground takes off."""
+        if not case.ground.any():
+            return self.induced
+        return self.induced * ground_share(case.ground, self.mu(case), self.induced)
 
 
 @dataclass(frozen=True, eq=False)
@@ -189,14 +195,14 @@ def flow_coefficients(case: Case, motion: Motion, inflow: Inflow) -> Coefficient
     Through the disc: mu_z + lambda_i (1 + kx r cos + ky r sin) + (r - e) beta' + mu beta cos(psi), with the flap's rate
     beta' = -b1c sin + b1s cos. Pitch falls by the pitch-flap coupling times the flap above precone.
     """
-    mu, axial = motion.mu(case), motion.axial(case)
-    kx, ky = inflow.gradients(mu, axial + motion.induced)
+    mu, axial, induced = motion.mu(case), motion.axial(case), motion.inflow(case)
+    kx, ky = inflow.gradients(mu, axial + induced)
     e = case.hinge_offset
     through = np.stack(
         [
-            axial + motion.induced,
-            kx * motion.induced + motion.b1s,
-            ky * motion.induced - motion.b1c,
+            axial + induced,
+            kx * induced + motion.b1s,
+            ky * induced - motion.b1c,
             mu * motion.b0 - e * motion.b1s,
             mu * motion.b1c,
             mu * motion.b1s,

@@ -46,9 +46,33 @@ def _white_blake(mu: Array, through: Array) -> tuple[Array, Array]:
     return np.sqrt(2.0) * mu / np.where(resultant > 0.0, resultant, 1.0), np.zeros_like(mu)
 
 
+def _tangent_half(mu: Array, through: Array) -> Array:
+    """tan(chi / 2) as mu / (lambda + resultant), 0 in still air."""
+    below = through + np.hypot(mu, through)
+    return mu / np.where(below > 0.0, below, np.where(mu > 0.0, np.finfo(float).tiny, 1.0))
+
+
+def _coleman(mu: Array, through: Array) -> tuple[Array, Array]:
+    return _tangent_half(mu, through), np.zeros_like(mu)
+
+
+def _drees(mu: Array, through: Array) -> tuple[Array, Array]:
+    # (1 - cos(chi)) / sin(chi) is tan(chi / 2); 1 / sin(chi) is the resultant over mu.
+    resultant = np.hypot(mu, through)
+    return 4.0 / 3.0 * (_tangent_half(mu, through) - 1.8 * mu * resultant), -2.0 * mu
+
+
+def _pitt_peters(mu: Array, through: Array) -> tuple[Array, Array]:
+    return 15.0 * np.pi / 32.0 * _tangent_half(mu, through), np.zeros_like(mu)
+
+
+# Only the default is offered to a pilot; the others are for tests and comparison. Gains as commonly printed.
 INFLOWS: Final[dict[str, Inflow]] = {
     "white-blake": Inflow(_white_blake, "White and Blake, 35th annual forum of the AHS, 1979", "any skew"),
     "uniform": Inflow(_uniform, "Glauert, ARC R&M 1111, 1926, without his gradient", "hover; tests elsewhere"),
+    "coleman": Inflow(_coleman, "Coleman, Feingold and Stempin, NACA WR L-126, 1945", "skew to about 120 degrees"),
+    "drees": Inflow(_drees, "Drees, J. Helicopter Association of Great Britain 3, 1949", "advance ratio to 0.4"),
+    "pitt-peters": Inflow(_pitt_peters, "Pitt and Peters, Vertica 5, 1981 (steady)", "skew to about 120 degrees"),
 }
 
 
@@ -57,6 +81,18 @@ def inflow_named(name: str) -> Inflow:
     if name not in INFLOWS:
         raise OutsideLimits("inflow", name, "", ", ".join(INFLOWS), "rotor model", Reason.OUTSIDE_MODEL)
     return INFLOWS[name]
+
+
+def ground_share(ground: Array, mu: Array, induced: Array) -> Array:
+    """What is left of the mean induced inflow near the ground, 1 far above it.
+
+    Cheeseman and Bennett, ARC R&M 3021 (1955): at constant power the thrust grows by
+    1 / (1 - (R / 4z)^2 / (1 + (mu / lambda_i)^2)), with `ground` = (R / 4z)^2 for a rotor z above it. At constant
+    thrust that leaves the factor's inverse to the power 3/2 of the inflow, since induced power goes with thrust^(3/2).
+    Valid from z = R / 2 up.
+    """
+    slow = induced * induced / np.maximum(induced * induced + mu * mu, np.finfo(float).tiny)
+    return np.asarray((1.0 - ground * slow) ** 1.5)
 
 
 def induced_balance(thrust: Array, mu: Array, axial: Array, induced: Array) -> Array:

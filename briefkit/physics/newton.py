@@ -23,10 +23,12 @@ SHORTER = 0.3
 
 @dataclass(frozen=True, eq=False)
 class Roots:
-    """`x` (batch, unknown), `left` (batch, equation) the residuals there, `evaluations` (batch,) of the function."""
+    """`x` (batch, unknown); `left` (batch, equation) the residuals there and `kept` what came with them; `evaluations`
+    (batch,) of the function."""
 
     x: Array
     left: Array
+    kept: Array
     evaluations: NDArray[np.intp]
 
 
@@ -45,11 +47,12 @@ class _Walk:
 def solve(function: Function, slopes: Slopes, start: Array, largest_step: Array, tolerance: float, most: int) -> Roots:
     """Roots of `function` near `start` (batch, unknown), until every |residual| is at most `tolerance`.
 
-    `function(x, members)` and `slopes(x, members)` take the rows of the members named and give (member, equation)
-    residuals, and (residuals, (member, equation, unknown) slopes). A member stops after `most` evaluations; its last
+    `function(x, members)` and `slopes(x, members)` take the rows of the members named and give (member, equation +)
+    residuals, and (the same, (member, equation, unknown) slopes). Columns past as many as there are unknowns are only
+    kept with the point they belong to. A member stops after `most` evaluations; its last
     residual tells how far it came. No unknown moves more than `largest_step` in one step.
     """
-    everyone = np.arange(start.shape[0])
+    everyone, unknowns = np.arange(start.shape[0]), start.shape[1]
     left, jacobian = slopes(start, everyone)
     walk = _Walk(
         start.copy(),
@@ -60,28 +63,30 @@ def solve(function: Function, slopes: Slopes, start: Array, largest_step: Array,
         np.ones(start.shape[0], dtype=np.intp),
     )
     while True:
-        size = np.abs(walk.left).max(axis=1)
+        size = np.abs(walk.left[:, :unknowns]).max(axis=1)
         open_members = np.flatnonzero((size > tolerance) & (walk.evaluations < most))
         if open_members.size == 0:
-            return Roots(walk.x, walk.left, walk.evaluations)
+            return Roots(walk.x, walk.left[:, :unknowns], walk.left[:, unknowns:], walk.evaluations)
         _refresh(walk, slopes, open_members[walk.stale[open_members]])
         _advance(walk, function, open_members, largest_step)
 
 
 def _advance(walk: _Walk, function: Function, members: Members, largest_step: Array) -> None:
     """One trial step of the members; kept where the residual does not grow too much."""
-    inverse, left = walk.inverse[members], walk.left[members]
+    unknowns = walk.x.shape[1]
+    inverse, left = walk.inverse[members], walk.left[members, :unknowns]
     step = -np.einsum("mij,mj->mi", inverse, left)
     reach = np.max(np.abs(step) / largest_step, axis=1)
     step *= (walk.fraction[members] / np.maximum(1.0, reach))[:, None]
     trial = walk.x[members] + step
-    new = function(trial, members)
+    all_new = function(trial, members)
+    new = all_new[:, :unknowns]
     walk.evaluations[members] += 1
     old_size, new_size = np.abs(left).max(axis=1), np.abs(new).max(axis=1)
     keep = new_size <= GROWTH * old_size
     kept = members[keep]
     walk.inverse[kept] = _broyden(inverse[keep], step[keep], new[keep] - left[keep])
-    walk.x[kept], walk.left[kept] = trial[keep], new[keep]
+    walk.x[kept], walk.left[kept] = trial[keep], all_new[keep]
     walk.fraction[kept] = np.minimum(1.0, walk.fraction[kept] / SHORTER)
     slow = keep & (new_size > 0.5 * old_size)
     walk.fraction[members[~keep]] *= SHORTER

@@ -154,6 +154,13 @@ class Rotor:
         """rho a c R^4 / I, with the chord at 0.75 R, the low-speed lift slope and this density [kg/m3]."""
         return density * self.lift_slope * self.chord * self.radius**4 / self.flap_inertia
 
+    def wind_azimuth(self, bearing: Values) -> Values:
+        """`State.wind_azimuth` [rad] of a relative wind from a bearing [rad] off the nose, to the right positive.
+
+        Seen from above azimuth grows from the tail to the right of an anticlockwise rotor, to the left of a clockwise.
+        """
+        return -self.rotation * bearing
+
     @property
     def planform(self) -> Planform:
         """What of the rotor is shape along the blade."""
@@ -167,7 +174,8 @@ class State:
     `density` [kg/m3], `sound_speed` [m/s], `tip_speed` [m/s] (rotor speed fraction times the rotor's at 100 %), `speed`
     [m/s] true along the flight path, `thrust_weight` [N] the load factor times weight, `climb_rate` [m/s] (not above
     `speed`), `wind_azimuth` [rad] by which the relative wind is turned from ahead, in the direction of rotation (wind
-    from ahead comes over psi = 180 degrees; with pi/2 it comes over 270).
+    from ahead comes over psi = 180 degrees; with pi/2 it comes over 270; `Rotor.wind_azimuth` makes it from a bearing),
+    `height` [m] of the rotor above the ground (infinite: out of ground effect; half the radius at least).
     """
 
     density: Values
@@ -177,6 +185,7 @@ class State:
     thrust_weight: Values
     climb_rate: Values = 0.0
     wind_azimuth: Values = 0.0
+    height: Values = np.inf
 
 
 @dataclass(frozen=True, eq=False)
@@ -202,6 +211,8 @@ class Case:
     climb: Array
     wind_azimuth: Array
     coning: Array  # 1 where the blade is free to cone, 0 on a teetering hub
+    ground: Array  # (R / 4z)^2 for a rotor z above the ground
+    gust: Array  # of air straight up, by the tip speed
 
     @property
     def size(self) -> int:
@@ -213,10 +224,11 @@ class Case:
         return Case(*(getattr(self, field.name)[members] for field in fields(self)))
 
 
-def case_of(rotor: Rotor, state: State) -> Case:
-    """The dimensionless numbers of a rotor in a state; every float is spread over the batch.
+def case_of(rotor: Rotor, state: State, gust: Values = 0.0) -> Case:
+    """The dimensionless numbers of a rotor in a state and an up-gust [m/s]; every float is spread over the batch.
 
-    A climb faster than the speed along the flight path has no angle: it gives NaN there, which no solver accepts.
+    A climb faster than the speed along the flight path has no angle, and a rotor nearer the ground than half its radius
+    no ground effect that is known: they give NaN there, which no solver accepts.
     Raises ValueError if two arrays have different lengths.
     """
     tip_speed = np.asarray(state.tip_speed, dtype=np.float64)
@@ -224,6 +236,7 @@ def case_of(rotor: Rotor, state: State) -> Case:
     speed = np.asarray(state.speed, dtype=np.float64)
     steepness = np.asarray(state.climb_rate) / np.where(speed > 0.0, speed, 1.0)
     climb = np.where(np.abs(steepness) <= 1.0, np.arcsin(np.clip(steepness, -1.0, 1.0)), np.nan)
+    height = np.asarray(state.height, dtype=np.float64) / rotor.radius
     values = (
         rotor.solidity,
         state.density * rotor.chord * rotor.radius**4 / (2.0 * rotor.flap_inertia),
@@ -240,6 +253,8 @@ def case_of(rotor: Rotor, state: State) -> Case:
         np.where((speed > 0.0) | (np.asarray(state.climb_rate) == 0.0), climb, np.nan),
         state.wind_azimuth,
         0.0 if rotor.hub == "teetering" else 1.0,
+        np.where(height >= 0.5, (0.25 / np.maximum(height, 0.5)) ** 2, np.nan),
+        gust / tip_speed,
     )
     arrays = np.broadcast_arrays(*(np.atleast_1d(np.asarray(value, dtype=np.float64)) for value in values))
     return Case(*(np.ascontiguousarray(array) for array in arrays))

@@ -9,11 +9,17 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from briefkit.errors import Reason
-from briefkit.physics.elements import Motion, flow_at, flow_coefficients, make_grid, points_at
-from briefkit.physics.inflow import Inflow
+from briefkit.physics.balance import Model
+from briefkit.physics.elements import Coefficients, Motion, flow_at, flow_coefficients, points_at
 from briefkit.physics.rotor import Case, Rotor, State
 
 Array = NDArray[np.float64]
+
+
+def tip_angle(rotor: Rotor, case: Case, terms: Coefficients) -> Array:
+    """Angle of attack [rad] at the tip where it retreats square to the wind, (batch,)."""
+    tip = points_at(rotor.planform, np.array([1.0]), np.array([1.5 * np.pi]))
+    return flow_at(case, tip, terms).angle[:, 0]
 
 
 @dataclass(frozen=True, eq=False)
@@ -30,6 +36,17 @@ class Elements:
     speed: Array
     mach: Array
     angle: Array
+    rotation: int
+
+    @property
+    def ahead(self) -> Array:
+        """Where the elements are, fractions of R ahead of the shaft, (radius, azimuth)."""
+        return -self.radii[:, None] * np.cos(self.azimuths)
+
+    @property
+    def right(self) -> Array:
+        """Fractions of R to the right of the shaft seen from above, (radius, azimuth): mirrored if clockwise."""
+        return self.rotation * self.radii[:, None] * np.sin(self.azimuths)
 
 
 @dataclass(frozen=True, eq=False)
@@ -40,7 +57,7 @@ class Trim:
     check `solved` first.
 
     - `t0`, `t1c`, `t1s`: pitch from the shaft's plane. `b0`: coning; `b1c`, `b1s`: flapping from the no-feathering
-      plane; `hub_b1c`, `hub_b1s`: flapping from the shaft's plane (zero when trimmed).
+      plane; `hub_b1c`, `hub_b1s`: flapping from the shaft's plane (zero when trimmed, since the shaft stands on it).
     - `inflow`: mean flow down through the disc by the tip speed; `induced_velocity` [m/s] its mean induced part;
       `kx`, `ky`: gradients of the induced part by r cos, r sin of azimuth from where the wind leaves the disc.
     - `mu`, `ct` (T / rho A (Omega R)^2), `ct_sigma`; `ch`, `cy`: in-plane force downwind, and 90 degrees of azimuth on;
@@ -48,7 +65,8 @@ class Trim:
     - `disc_tilt`: the disc's plane from the plane normal to the apparent weight, positive into the wind (nose down);
       `incidence`: the same from the flight path.
     - `advancing_mach` at the tip, (1 + mu) times `tip_mach`; `tip_angle`: angle of attack at r = 1 where the blade
-      retreats square to the wind (psi = 270 degrees in wind from ahead).
+      retreats square to the wind (psi = 270 degrees in wind from ahead). `climb_rate` [m/s] along the flight path.
+    - `case`, `motion`, `model`: the same in wind axes, dimensionless, for whatever sums over the disc again.
     - `residual`: largest of the force balances over n W, the flap equations [rad] and the inflow balance (over twice a
       typical resultant), at the solution. `iterations`: how often the disc was summed to find it.
     """
@@ -77,14 +95,14 @@ class Trim:
     incidence: Array
     tip_mach: Array
     advancing_mach: Array
+    climb_rate: Array
     tip_angle: Array
     residual: Array
     iterations: NDArray[np.intp]
     reason: NDArray[np.object_]
     case: Case = field(repr=False)
     motion: Motion = field(repr=False)
-    shape: Inflow = field(repr=False)
-    grid: tuple[int, int] = (24, 12)
+    model: Model = field(repr=False)
 
     @property
     def solved(self) -> NDArray[np.bool_]:
@@ -97,13 +115,13 @@ class Trim:
         `radii` (radius,) fractions of R from the root cut-out to 1, `azimuths` (azimuth,) [rad] from the tail in the
         direction of rotation. Refused members hold NaN.
         """
-        own = make_grid(self.rotor.planform, self.grid)
+        own = self.model.grid
         r = own.radii if radii is None else np.asarray(radii, dtype=np.float64)
         psi = own.azimuths if azimuths is None else np.asarray(azimuths, dtype=np.float64)
         shape = (r.size, psi.size)
         radius = np.broadcast_to(r[:, None], shape).ravel()
         speed, mach, angle = (np.empty((self.case.size, *shape)) for _ in range(3))
-        terms = flow_coefficients(self.case, self.motion, self.shape)
+        terms = flow_coefficients(self.case, self.motion, self.model.inflow)
         tip_speed = np.broadcast_to(np.asarray(self.state.tip_speed, dtype=np.float64), (self.case.size,))
         for turn in np.unique(self.case.wind_azimuth):
             members = np.flatnonzero(self.case.wind_azimuth == turn)
@@ -113,7 +131,7 @@ class Trim:
             mach[members] = flow.mach.reshape(-1, *shape)
             wrapped = flow.angle - 2.0 * np.pi * np.rint(flow.angle / (2.0 * np.pi))
             angle[members] = wrapped.reshape(-1, *shape)
-        return Elements(r, psi, speed, mach, angle)
+        return Elements(r, psi, speed, mach, angle, self.rotor.rotation)
 
     @cached_property
     def _own(self) -> Elements:

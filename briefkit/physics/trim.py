@@ -1,54 +1,58 @@
-"""Steady flight of a rotor: the ways to solve it over one set of equations, and the range the answers are offered for.
+"""Steady flight of a rotor: the ways to ask for it.
 
 Trimmed: the rotor carries the apparent weight and pulls the airframe's drag along a given flight path, with no net hub
-moment, so the shaft stands on the disc. Solved in the shaft's axes turned to the wind, where the wind's direction over
-the ground plays no part, and turned back.
+moment, so the shaft stands on the disc. Held: the controls stay where they are. Torque-free: no engine. All are batches
+over one set of equations (`balance`), in the shaft's axes turned to the wind, where the wind's direction over the
+ground plays no part; answers are turned back.
 """
 
 from __future__ import annotations
 
-from collections.abc import Iterator
-from dataclasses import dataclass, fields
-from typing import Final
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
 
-from briefkit.errors import Reason
 from briefkit.physics import balance as equations
-from briefkit.physics.balance import TRIMMED, Balance
-from briefkit.physics.elements import Motion, flow_at, flow_coefficients, make_grid, points_at
-from briefkit.physics.flapping import from_no_feathering_plane
-from briefkit.physics.inflow import Inflow, inflow_named
-from briefkit.physics.newton import solve
-from briefkit.physics.rotor import Case, Rotor, State, case_of
-from briefkit.physics.section import Section, section_named
-from briefkit.physics.start import trimmed_start
-from briefkit.physics.steady import Elements, Trim
+from briefkit.physics.balance import GLIDING, HELD, TRIMMED, WINDMILLING, Model
+from briefkit.physics.rotor import Case, Rotor, State, Values, case_of
+from briefkit.physics.section import Section
+from briefkit.physics.solving import solved, turned
+from briefkit.physics.steady import Elements, Trim, tip_angle
 
-__all__ = ["Elements", "Trim", "trim"]
+__all__ = ["Controls", "Elements", "Gust", "Trim", "held", "torque_free", "trim", "vertical_gust"]
 
 Array = NDArray[np.float64]
 
-# The range the model is offered for. Beyond it a member is refused, never extrapolated.
-LARGEST_ADVANCE_RATIO: Final = 0.5
-LARGEST_BLADE_LOADING: Final = 0.18
-LARGEST_ADVANCING_MACH: Final = 0.95
-# Descent through the disc, by the hover induced velocity, past which the wake is no longer a slipstream unless the
-# rotor flies on edgewise faster than EDGEWISE of the same. On the safe side of the vortex-ring region, which begins
-# near half the hover induced velocity (common practice, no source).
-LARGEST_DESCENT: Final = 0.35
-EDGEWISE: Final = 1.5
 
-TOLERANCE: Final = 1e-11  # where the iteration stops
-ACCEPTED: Final = 1e-8  # the residual that counts as solved
-CHUNK: Final = 64  # states at a time: their arrays stay in the processor's cache
-EVALUATIONS: Final = 60
+@dataclass(frozen=True, eq=False)
+class Controls:
+    """What a pilot holds: floats or arrays of one batch length [rad], in axes fixed to the shaft.
 
-_KINDS: Final = (Reason.NONE, Reason.OUTSIDE_MODEL, Reason.NO_TRIM)
+    `t0`, `t1c`, `t1s` pitch; `shaft_c`, `shaft_s`: the shaft's plane rises over azimuth by shaft_c cos(psi) +
+    shaft_s sin(psi) from the plane normal to the apparent weight, so shaft_c is its tilt nose down.
+    """
 
-# No unknown moves farther in one step [rad; inflow by the tip speed]: t0 t1c t1s b0 b1c b1s induced tilt climb.
-_LARGEST_STEP: Final = np.array([0.12, 0.12, 0.12, 0.12, 0.12, 0.12, 0.03, 0.12, 0.12])
+    t0: Values
+    t1c: Values
+    t1s: Values
+    shaft_c: Values = 0.0
+    shaft_s: Values = 0.0
+
+    @classmethod
+    def of(cls, flight: Trim) -> Controls:
+        """The controls of a flight that was solved."""
+        tilt, turn = flight.motion.tilt, flight.case.wind_azimuth
+        return cls(flight.t0, flight.t1c, flight.t1s, tilt * np.cos(turn), tilt * np.sin(turn))
+
+    def columns(self, case: Case) -> Array:
+        """(batch, 9) columns of `Motion` in wind axes: pitch, tilt into the wind, climb; the rest zero."""
+        values = (self.t0, self.t1c, self.t1s, self.shaft_c, self.shaft_s)
+        t0, t1c, t1s, shaft_c, shaft_s = (np.broadcast_to(np.asarray(v, float), (case.size,)) for v in values)
+        t1c, t1s = turned(t1c, t1s, -case.wind_azimuth)
+        tilt, _ = turned(shaft_c, shaft_s, -case.wind_azimuth)
+        zero = np.zeros(case.size)
+        return np.stack([t0, t1c, t1s, zero, zero, zero, zero, tilt, case.climb], axis=1)
 
 
 def trim(
@@ -65,161 +69,78 @@ def trim(
     reversed flow kept. `inflow` names an entry of `inflow.INFLOWS`, `section` one of `section.SECTIONS` or is a
     section; `grid` = (azimuths, radii).
 
-    A member outside the range of the model (advance ratio 0.5, blade loading CT/sigma 0.18, advancing-tip Mach 0.95,
-    descent into the rotor's own wake; a number that is not finite) gets `Reason.OUTSIDE_MODEL`; one for which no
-    steady flight was found, `Reason.NO_TRIM` with the last residual. Raises `OutsideLimits` for names or grids that do
-    not exist, ValueError for arrays of different lengths.
+    A member outside the range of the model (advance ratio 0.5, blade loading CT/sigma 0.18, advancing-tip Mach 0.95 or
+    the section's highest, descent into the rotor's own wake, nearer the ground than half the radius, a number that is
+    not finite) gets `Reason.OUTSIDE_MODEL`; one for which no steady flight was found, `Reason.NO_TRIM` with the last
+    residual. Raises `OutsideLimits` for names or grids that do not exist, ValueError for arrays of different lengths.
     """
-    case = case_of(rotor, state)
-    mesh, blade, model = make_grid(rotor.planform, grid), section_named(section), inflow_named(inflow)
-    found = _Found.nothing(case.size)
-    for members in _chunks(np.flatnonzero(within_range(case))):
-        part = case.take(members)
-        found.put(members, _solved(Balance(part, mesh, blade, model, TRIMMED, trimmed_start(part, model))))
-    return _report(rotor, state, case, found, model, grid)
+    return solved(rotor, state, TRIMMED, Model.of(rotor, inflow, section, grid), case_of(rotor, state))
+
+
+def held(
+    rotor: Rotor,
+    state: State,
+    controls: Controls,
+    *,
+    gust: Values = 0.0,
+    inflow: str = "white-blake",
+    section: str | Section = "attached",
+    grid: tuple[int, int] = (24, 12),
+) -> Trim:
+    """The rotor with its controls held: how the disc settles in a new state before the pilot answers.
+
+    `controls` are usually `Controls.of` a trimmed flight, `state` that flight with something changed; `gust` [m/s] of
+    air straight up. The weight in the state is not used: `ct` tells what thrust there is. Flapping from the shaft is in
+    `hub_b1c`, `hub_b1s`; `disc_tilt` is that of the disc. Members, refusals and errors as for `trim`.
+    """
+    case = case_of(rotor, state, gust)
+    return solved(rotor, state, HELD, Model.of(rotor, inflow, section, grid), case, controls.columns(case))
+
+
+def torque_free(
+    rotor: Rotor,
+    state: State,
+    controls: Controls | None = None,
+    *,
+    inflow: str = "white-blake",
+    section: str | Section = "attached",
+    grid: tuple[int, int] = (24, 12),
+) -> Trim:
+    """The rotor that needs no torque (autorotation).
+
+    Without `controls`: trimmed, down the glide path that is found; `climb_rate` of the answer tells it, that of the
+    state is not used. With controls: they are held, and the shaft's tilt to the wind is found; the weight is not used
+    and `ct` tells the thrust (an autogiro's rotor). Members, refusals and errors as for `trim`.
+    """
+    model, case = Model.of(rotor, inflow, section, grid), case_of(rotor, state)
+    if controls is None:
+        return solved(rotor, state, GLIDING, model, case)
+    return solved(rotor, state, WINDMILLING, model, case, controls.columns(case))
 
 
 @dataclass(frozen=True, eq=False)
-class _Found:
-    """Solver output by member: the columns of `Motion`, the coefficients CT CH CY CQ, last residual, evaluations."""
+class Gust:
+    """A flight met by air straight up, controls held: before, in the first instant, and when flapping has settled.
 
-    columns: Array
-    forces: Array
-    left: Array
-    evaluations: NDArray[np.intp]
-
-    def put(self, members: NDArray[np.intp], part: _Found) -> None:
-        """Write the answers of some members into the whole batch."""
-        self.columns[members], self.forces[members] = part.columns, part.forces
-        self.left[members], self.evaluations[members] = part.left, part.evaluations
-
-    @classmethod
-    def nothing(cls, size: int) -> _Found:
-        """A batch without any answer."""
-        blank = np.full((size, 9), np.nan), np.full((size, 4), np.nan), np.full(size, np.nan)
-        return cls(*blank, np.zeros(size, dtype=np.intp))
-
-
-def within_range(case: Case) -> NDArray[np.bool_]:
-    """Members worth solving: finite numbers, and not outside the model's range for certain.
-
-    The exact limits are held after solving, when advance ratio and blade loading are known.
+    `instant_tip_angle` [rad] and `instant_load` (thrust over that before), each (batch,): flapping and inflow as they
+    were. NaN where either flight has a reason.
     """
-    columns = np.stack([getattr(case, f.name) for f in fields(case)])
-    finite = np.isfinite(columns).all(axis=0)
-    with np.errstate(invalid="ignore", divide="ignore"):
-        hover = np.sqrt(np.maximum(case.weight, 0.0) / 2.0)
-        sinking = case.speed * np.sin(case.climb) < -LARGEST_DESCENT * hover
-        slow = case.speed * np.cos(case.climb) < EDGEWISE * hover
-        good = (
-            (case.weight > 0.0)
-            & (case.weight <= 1.1 * LARGEST_BLADE_LOADING * case.solidity)
-            & (case.speed >= 0.0)
-            & (case.speed <= 1.2 * LARGEST_ADVANCE_RATIO)
-            & (case.tip_mach > 0.0)
-            & (case.tip_mach <= LARGEST_ADVANCING_MACH)
-            & (case.flap_gain > 0.0)
-            & ~(sinking & slow)
-        )
-    return np.asarray(finite & good)
+
+    before: Trim
+    instant_tip_angle: Array
+    instant_load: Array
+    settled: Trim
 
 
-def _chunks(members: NDArray[np.intp]) -> Iterator[NDArray[np.intp]]:
-    for start in range(0, members.size, CHUNK):
-        yield members[start : start + CHUNK]
+def vertical_gust(before: Trim, gust: Values) -> Gust:
+    """What a gust of air straight up [m/s] does to a solved flight before the pilot answers; down is negative.
 
-
-def _solved(balance: Balance) -> _Found:
-    """The batch of a balance solved from where its base stands."""
-    free = list(balance.way.free)
-    base = balance.base.copy()
-    roots = solve(balance.left, balance.slopes, base[:, free], _LARGEST_STEP[free], TOLERANCE, EVALUATIONS)
-    base[:, free] = roots.x
-    motion, case = Motion(*base.T), balance.case
-    sums = balance.sums(case, motion)[0]
-    forces = np.stack(
-        [
-            equations.thrust(case, sums),
-            equations.rearward_force(case, motion, sums),
-            equations.side_force(case, motion, sums),
-            equations.torque(case, sums),
-        ],
-        axis=1,
-    )
-    return _Found(base, forces, np.abs(roots.left).max(axis=1), roots.evaluations)
-
-
-def _report(rotor: Rotor, state: State, case: Case, found: _Found, model: Inflow, grid: tuple[int, int]) -> Trim:
-    """The answers in the rotor's own axes, with a reason and no number where there is none."""
-    reason = _reasons(case, found)
-    gone = np.array([member is not Reason.NONE for member in reason])
-    columns, forces = np.where(gone[:, None], np.nan, found.columns), np.where(gone[:, None], np.nan, found.forces)
-    motion = Motion(*columns.T)
-    mu, axial = motion.mu(case), motion.axial(case)
-    kx, ky = model.gradients(mu, axial + motion.induced)
-    level_b1c, level_b1s = from_no_feathering_plane(motion)
-    t1c, t1s = _turned(motion.t1c, motion.t1s, case.wind_azimuth)
-    b1c, b1s = _turned(level_b1c, level_b1s, case.wind_azimuth)
-    hub_b1c, hub_b1s = _turned(motion.b1c, motion.b1s, case.wind_azimuth)
-    tip = points_at(rotor.planform, np.array([1.0]), np.array([1.5 * np.pi]))
-    blank = np.where(gone, np.nan, 1.0)
-    return Trim(
-        rotor=rotor,
-        state=state,
-        t0=motion.t0,
-        t1c=t1c,
-        t1s=t1s,
-        b0=motion.b0,
-        b1c=b1c,
-        b1s=b1s,
-        hub_b1c=hub_b1c,
-        hub_b1s=hub_b1s,
-        inflow=axial + motion.induced,
-        induced_velocity=motion.induced * np.asarray(state.tip_speed),
-        kx=kx,
-        ky=ky,
-        mu=mu,
-        ct=forces[:, 0],
-        ct_sigma=forces[:, 0] / case.solidity,
-        ch=forces[:, 1],
-        cy=forces[:, 2],
-        cq=forces[:, 3],
-        disc_tilt=motion.tilt,
-        incidence=motion.tilt + motion.climb,
-        tip_mach=case.tip_mach * blank,
-        advancing_mach=(1.0 + mu) * case.tip_mach,
-        tip_angle=flow_at(case, tip, flow_coefficients(case, motion, model)).angle[:, 0],
-        residual=found.left,
-        iterations=found.evaluations,
-        reason=reason,
-        case=case,
-        motion=motion,
-        shape=model,
-        grid=grid,
-    )
-
-
-def _reasons(case: Case, found: _Found) -> NDArray[np.object_]:
-    """Why a member has no number: not solved at all or outside the model's range, or no steady flight found."""
-    motion = Motion(*found.columns.T)
-    mu, loading = motion.mu(case), found.forces[:, 0] / case.solidity
-    hover = np.sqrt(np.maximum(found.forces[:, 0], 0.0) / 2.0)
-    in_wake = (motion.axial(case) < -LARGEST_DESCENT * hover) & (mu < EDGEWISE * hover)
-    inside = (
-        (mu <= LARGEST_ADVANCE_RATIO)
-        & (loading <= LARGEST_BLADE_LOADING)
-        & ((1.0 + mu) * case.tip_mach <= LARGEST_ADVANCING_MACH)
-        & ~in_wake
-    )
-    lost = (found.evaluations > 0) & ~(found.left <= ACCEPTED)
-    kinds = np.where(lost, 2, np.where(inside, 0, 1))
-    # Member by member: numpy would turn a text enumeration assigned to a whole array into plain text.
-    reason = np.empty(case.size, dtype=object)
-    for member, kind in enumerate(kinds):
-        reason[member] = _KINDS[kind]
-    return reason
-
-
-def _turned(cosine: Array, sine: Array, turn: Array) -> tuple[Array, Array]:
-    """A first harmonic in wind axes, in axes whose zero lies `turn` against the rotation from theirs."""
-    return cosine * np.cos(turn) - sine * np.sin(turn), cosine * np.sin(turn) + sine * np.cos(turn)
+    A sharp-edged gust over the whole disc, the aircraft not yet moving with it, steady aerodynamics.
+    """
+    case = case_of(before.rotor, before.state, gust)
+    columns = Controls.of(before).columns(case)
+    settled = solved(before.rotor, before.state, HELD, before.model, case, columns)
+    disc = equations.disc_of(case, before.motion, before.model)
+    gone = np.where(before.solved & settled.solved, 1.0, np.nan)
+    angle = tip_angle(before.rotor, case, disc.terms)
+    return Gust(before, angle * gone, equations.thrust(case, disc.sums) / before.ct * gone, settled)
