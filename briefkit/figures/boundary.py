@@ -202,7 +202,7 @@ class BoundaryFigure:
                 ends.append(_end(x, speeds, (_bank(bank),), theme.COMPUTED))
         lower, _, upper = band[1]
         if np.any(np.isfinite(lower)):
-            rows = ("onset band,", "softer than", "the chart")
+            rows: tuple[str, ...] = ("onset band,", "softer than", "the chart")
             if np.any(np.isfinite(lower) & ~np.isfinite(upper)):
                 rows = (*rows, "(open at the top)")
             upper = np.where(np.isfinite(upper), upper, self._area.y.max)

@@ -74,6 +74,11 @@ class DiscFigure:
         self._show_reversed(np.asarray(reversed_azimuths, dtype=float), np.asarray(reversed_radii, dtype=float))
         self._show_wind(wind_from_deg)
 
+    @property
+    def spare(self) -> tuple[ipywidgets.Image, ...]:
+        """The two image models that take turns: the one not shown is not reachable from the figure."""
+        return tuple(self._images)
+
     # --- construction ---
 
     def _make_marks(self) -> None:

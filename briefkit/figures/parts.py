@@ -45,6 +45,15 @@ class StillParts:
 
 
 @runtime_checkable
+class HasStillInputs(Protocol):
+    """A panel of controls: on paper only the numbers they stand at remain."""
+
+    def still_inputs(self) -> tuple[tuple[str, str], ...]:
+        """(name, value) pairs."""
+        ...
+
+
+@runtime_checkable
 class HasStillParts(Protocol):
     """Anything that can be put on paper."""
 

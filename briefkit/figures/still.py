@@ -14,10 +14,10 @@ import bqplot
 import ipywidgets as w
 
 from briefkit.figures.markup import element, finite_text, words
-from briefkit.figures.parts import Drawing, HasStillParts, StillParts, Table
+from briefkit.figures.parts import Drawing, HasStillInputs, HasStillParts, StillParts, Table
 from briefkit.figures.svg import svg
 
-__all__ = ["Drawing", "HasStillParts", "StillParts", "Table", "still", "svg"]
+__all__ = ["Drawing", "HasStillInputs", "HasStillParts", "StillParts", "Table", "still", "svg"]
 
 
 def still(thing: object, key: str = "") -> str:
@@ -30,6 +30,8 @@ def still(thing: object, key: str = "") -> str:
         return ""
     if isinstance(thing, HasStillParts):
         return _exhibit(thing.still_parts(), key)
+    if isinstance(thing, HasStillInputs):
+        return _inputs(thing.still_inputs())
     if isinstance(thing, bqplot.Figure):
         return element("figure", {"class": "exhibit"}, svg(_plain(thing), key))
     if isinstance(thing, w.Widget):
@@ -125,7 +127,7 @@ def _group(box: w.Box, key: str) -> str:
     parts: list[str] = []
     lines: list[tuple[str, str]] = []
     for index, child in enumerate(box.children):
-        line = None if isinstance(child, HasStillParts) or _hidden(child) else _input(child)
+        line = None if isinstance(child, (HasStillParts, HasStillInputs)) or _hidden(child) else _input(child)
         if line is not None:
             lines.append(line)
             continue

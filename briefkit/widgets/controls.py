@@ -1,0 +1,84 @@
+"""One number of the live condition: its name, a slider, and a box that takes the number as one would type it."""
+
+from __future__ import annotations
+
+import ipywidgets as w
+import numpy as np
+
+from briefkit import units
+from briefkit.aircraft.model import Aircraft
+from briefkit.envelope import search
+from briefkit.errors import ReadingError
+from briefkit.widgets.words import Dial, text_of
+
+
+class Control(w.HBox):  # type: ignore[misc]  # ipywidgets carries no types
+    """A slider over the permitted range and a box; both only ask, the live condition decides.
+
+    Neither clamps: the box takes any text, and the slider's ends are the permitted ones.
+    """
+
+    def __init__(self, aircraft: Aircraft, dial: Dial, low: float, high: float) -> None:
+        """`low` and `high` are the slider's ends in the dial's unit; they may be the same (the dial then stands)."""
+        self.dial, self._aircraft = dial, aircraft
+        self.low, self.high = low, high
+        self.slider = w.FloatSlider(
+            value=low, min=low, max=high, step=dial.step, readout=False, disabled=not low < high,
+            description=dial.name, style={"description_width": "170px"}, layout={"width": "440px"},
+        )  # fmt: skip
+        self.box = w.Text(continuous_update=False, layout={"width": "120px"})
+        self.box.tooltip = f"{dial.name}, {text_of(dial, low, aircraft)} to {text_of(dial, high, aircraft)}"
+        super().__init__([self.slider, self.box])
+
+    def show(self, number: float) -> None:
+        """Set both to a number in the dial's unit."""
+        # The slider keeps its ends around the number, so that it can never show another one than is used.
+        with self.slider.hold_sync():
+            self.slider.min, self.slider.max = min(self.low, number), max(self.high, number)
+            self.slider.value = number
+        self.box.value = text_of(self.dial, number, self._aircraft)
+
+    def read(self, text: str) -> float:
+        """Typed text to a number in the dial's unit: "2,006 lb", or "2,006" alone. Raises `ReadingError`."""
+        return read_number(self.dial, text)
+
+
+def read_number(dial: Dial, text: str) -> float:
+    """A number with one of its quantity's units, or bare in the dial's own; the speed's kind may stand behind it."""
+    typed = text.strip()
+    if dial.quantity == "speed":
+        typed = typed.replace("KIAS", "kt").removesuffix(" IAS")
+    try:
+        value = units.read(typed, dial.quantity)
+    except ReadingError:
+        if typed[-1:].isdigit():
+            value = units.read(f"{typed} {dial.unit}", dial.quantity)
+        else:
+            raise
+    return float(units.from_si(value, dial.quantity, dial.unit))
+
+
+def ranges(aircraft: Aircraft) -> dict[str, tuple[float, float]]:
+    """The ends of each slider in the dial's unit, by field: the manual's limits and the chart's axes."""
+    limits, chart, shown = aircraft.limits, aircraft.vne, aircraft.units
+    coldest, hottest = search.temperature_range(aircraft)
+    hottest = min(hottest, units.read("55 degC", "temperature"))  # the hottest a condition may state
+    low_k, high_k = limits.rotor_on
+    top = min(limits.max_altitude.value, chart.heights[-1])
+    fastest = float(np.nanmax(chart.speeds))
+    if aircraft.calibration.in_manual:
+        fastest = min(1.25 * fastest, aircraft.calibration.highest_indicated)
+    bank = limits.max_bank.value if limits.max_bank is not None else units.read("60 deg", "angle")
+
+    def ends(quantity: str, unit: str, low: float, high: float) -> tuple[float, float]:
+        first, last = (round(float(units.from_si(end, quantity, unit)), 6) for end in (low, high))
+        return first, last
+
+    return {
+        "mass": ends("mass", shown.mass, limits.min_mass.value, limits.max_mass.value),
+        "pressure_altitude": ends("height", shown.height, chart.heights[0], top),
+        "oat": ends("temperature", "°C", coldest, hottest),
+        "ias": ends("speed", shown.speed, aircraft.calibration.lowest_indicated, fastest),
+        "load_factor": ends("angle", "°", 0.0, bank),
+        "rotor_speed": ends("ratio", "%", low_k.value, high_k.value),
+    }
