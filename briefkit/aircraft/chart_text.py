@@ -70,6 +70,11 @@ def read_vne(document: Document, key: str, text: str) -> VneTable | None:
             key, f"{len(rows)} lines", r'a line like "ft \ degC  0  +20  kt indicated", then two rows or more'
         )
         return None
+    if not parted and len(re.findall(r"\d\s*,(?!\d{3}\b)", text)) > len(rows):
+        read = f"commas between cells: {quoted(' '.join(rows[0].cells))}"
+        permitted = "tabs, semicolons or spaces between cells; a comma groups digits"
+        document.fault(key, read, permitted, "write ; for the commas", rows[0].line)
+        return None
     head = _corner(document, key, rows[0], parted)
     if head is None:
         return None

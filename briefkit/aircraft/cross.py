@@ -36,8 +36,9 @@ def limit_faults(limits: LimitsTable) -> list[Fault]:
             faults.append(
                 _fault(f"limits.{key}", f"{pair[0].text} to {pair[1].text}", "the lower speed, then the higher")
             )
-    if limits.rotor_on and not _si(limits.rotor_on[0]) <= 1.0 <= _si(limits.rotor_on[1]):
-        read = f"{limits.rotor_on[0].text} to {limits.rotor_on[1].text}"
+    on = limits.rotor_on
+    if on and _si(on[0]) < _si(on[1]) and not _si(on[0]) <= 1.0 <= _si(on[1]):
+        read = f"{on[0].text} to {on[1].text}"
         faults.append(_fault("limits.rotor_on", read, "a range with 100 % in it", "is 100 % the speed of rotor.rpm?"))
     return faults
 

@@ -18,7 +18,15 @@ from briefkit.aircraft.cross import entry_findings
 from briefkit.aircraft.load import load_aircraft
 from briefkit.aircraft.model import Aircraft, Limits, RotorData, Stated
 from briefkit.aircraft.operation import OPERATION_FILE, Operation, cross_check, load_operation
-from briefkit.brief.identity import BRIEF_FILE, Identity, disagreements, load_identity, operator_folder, shown_path
+from briefkit.brief.identity import (
+    BRIEF_FILE,
+    Identity,
+    disagreements,
+    load_identity,
+    named_aircraft,
+    operator_folder,
+    shown_path,
+)
 from briefkit.errors import Fault, FaultyFile
 from briefkit.reading.document import EXAMPLE, Document
 
@@ -88,9 +96,10 @@ def _brief(folder: Path, today: dt.date) -> list[Finding]:
     except FaultyFile as error:
         found += [finding for fault in error.faults if (finding := _from_fault(fault)) not in found]
     found += _notebook(folder)
-    if identity is not None:
-        aircraft, more = _aircraft(shown_path(identity.aircraft_path))
+    if (named := named_aircraft(folder)) is not None:
+        aircraft, more = _aircraft(named)
         found += more
+    if identity is not None:
         found += _dates(identity, operation, folder, today)
         found += map(_from_fault, disagreements(identity, aircraft, operation))
         if operation is not None:

@@ -134,7 +134,11 @@ def load_identity(path: Path | str) -> Identity:
     path = Path(path)
     file = path / BRIEF_FILE if path.is_dir() else path
     document = Document(file)
-    operator = operator_folder(file.parent)
+    operator = None
+    try:
+        operator = operator_folder(file.parent)
+    except FaultyFile as error:
+        document.faults += error.faults
     document.tables("", ("document", "subject"), ("people", "changes"))
     head = document.table("document", _DocumentTable)
     subject = document.table("subject", _SubjectTable)
@@ -142,7 +146,7 @@ def load_identity(path: Path | str) -> Identity:
     changes = document.entries("changes", _ChangeEntry)
     if head:
         _check_head(document, head)
-    if subject:
+    if subject and operator:
         _check_subject(document, subject, operator)
     for role in _ROLES:
         _check_code(document, role, getattr(people, role))
@@ -165,7 +169,7 @@ def load_identity(path: Path | str) -> Identity:
         changes=tuple(Change(needed(entry.revision), needed(entry.text)) for _, entry in changes),
         basis=tuple(head.basis or ()),
         folder=file.parent,
-        operator=operator,
+        operator=needed(operator),
         file=file.name,
         data_hash=document.data_hash,
         unanswered=document.unanswered(),
@@ -189,9 +193,10 @@ def load_brief(path: Path | str) -> Brief:
         identity = load_identity(path)
     except FaultyFile as error:
         faults += error.faults
-    if identity is not None:
+    named = named_aircraft(path)
+    if named is not None:
         try:
-            aircraft = load_aircraft(shown_path(identity.aircraft_path))
+            aircraft = load_aircraft(named)
         except FaultyFile as error:
             faults += error.faults
     try:
@@ -206,6 +211,20 @@ def load_brief(path: Path | str) -> Brief:
     if faults:
         raise FaultyFile(faults)
     return Brief(needed(identity), needed(aircraft), needed(operation))
+
+
+def named_aircraft(path: Path | str) -> Path | None:
+    """The aircraft file a brief names, even where the rest of its `brief.toml` is faulty; None where it names none."""
+    path = Path(path)
+    file = path / BRIEF_FILE if path.is_dir() else path
+    try:
+        subject = Document(file).data.get("subject")
+        name = subject.get("aircraft") if isinstance(subject, dict) else None
+        target = (operator_folder(file.parent) / name).resolve() if isinstance(name, str) else None
+        inside = target is not None and target.is_relative_to(operator_folder(file.parent))
+        return shown_path(target) if target is not None and inside and target.is_file() else None
+    except (FaultyFile, OSError, ValueError):
+        return None
 
 
 def disagreements(identity: Identity, aircraft: Aircraft | None, operation: Operation | None) -> list[Fault]:

@@ -1,0 +1,211 @@
+"""The aircraft file: the invented 2T as typed, every fault at once, estimates for "unknown", entry findings."""
+
+from __future__ import annotations
+
+import math
+import subprocess
+import sys
+from pathlib import Path
+
+import numpy as np
+import pytest
+
+from briefkit.aircraft import estimates
+from briefkit.aircraft.chart import ReadingRule
+from briefkit.aircraft.cross import entry_findings
+from briefkit.aircraft.load import load_aircraft
+from briefkit.aircraft.model import Aircraft, Hub
+from briefkit.errors import FaultyFile
+from briefkit.units import FOOT, KNOT, POUND
+
+
+@pytest.fixture(scope="module")
+def typed(examples: Path) -> str:
+    return (examples / "aircraft" / "pelquill-2t.toml").read_text(encoding="utf-8")
+
+
+def load(folder: Path, text: str) -> Aircraft:
+    path = folder / "type.toml"
+    path.write_text(text, encoding="utf-8")
+    return load_aircraft(path)
+
+
+def changed(text: str, *pairs: tuple[str, str]) -> str:
+    """The text with each first word, which must be there, replaced by the second."""
+    for old, new in pairs:
+        assert old in text
+        text = text.replace(old, new, 1)
+    return text
+
+
+def test_the_2t_is_read_as_typed(two_t: Aircraft) -> None:
+    limits, rotor = two_t.limits, two_t.rotor
+    assert (two_t.name, two_t.serials, two_t.configuration) == ("Pelquill 2T", ("014", "022"), "doors on")
+    assert limits.max_mass.text == "2,006 lb"
+    assert limits.max_mass.value == 2006 * POUND
+    assert (limits.rotor_on[0].value, limits.rotor_off[1].value) == (0.97, 1.08)
+    assert limits.max_bank is None
+    assert limits.climb_speed.source != limits.source
+    assert (rotor.hub, rotor.blades, rotor.flap_frequency.value, rotor.hinge_offset.value) == (
+        Hub.TEETERING,
+        2,
+        1.0,
+        0.0,
+    )
+    assert rotor.tip_speed == pytest.approx(210.6, abs=0.05)
+    assert rotor.twist.value == pytest.approx(math.radians(-7.0))
+    assert rotor.drag_area.spread == pytest.approx(0.25 * 0.62)
+    assert not rotor.lift_slope.known
+    assert two_t.vne.reading is ReadingRule.INTERPOLATE
+    assert two_t.vne.rows[5] == ("8,000", "95", "87", "79", "70")
+    assert two_t.vne.speeds[4, 2, 0] == pytest.approx(79 * KNOT)
+    assert two_t.vne_off.constant.value == pytest.approx(85 * KNOT)
+    assert two_t.calibration.to_calibrated(np.array([40.0 * KNOT]))[0] == pytest.approx(44 * KNOT)
+    assert "Do not use for flight" in two_t.invented
+    assert two_t.file == "pelquill-2t.toml"
+    assert all(source for _, source in two_t.sources)
+    assert two_t.unanswered == ()
+
+
+def test_the_demo_file_says_on_its_first_line_that_it_is_invented(examples: Path) -> None:
+    for path in examples.rglob("*.toml"):
+        first = path.read_text(encoding="utf-8").split("\n")[0]
+        assert first.startswith("# Invented"), path
+        assert first.endswith("Do not use for flight."), path
+
+
+def test_six_planted_faults_are_all_listed(typed: str, tmp_path: Path) -> None:
+    text = changed(
+        typed,
+        ('hub = "teetering"', 'hub = "teetring"'),
+        ('max_mass = "2,006 lb"', 'max_mass = "2 006 lb"'),
+        ("climb_speed = {", "climb_sped = {"),
+        ("60              62", "60              6Z"),
+        ("8,000         95    87     79", "8,000         95    87     7 9"),
+        ('constant = "85 kt"', 'constant = "85"'),
+    )
+    with pytest.raises(FaultyFile, match=r"^6 faults:") as refused:
+        load(tmp_path, text)
+    assert [fault.key for fault in refused.value.faults] == [
+        "rotor.hub",
+        "limits.max_mass",
+        "limits.climb_sped",
+        "calibration.table, row 60, calibrated",
+        "vne.power_on.chart, row 8,000",
+        "vne.power_off.constant",
+    ]
+    lines = text.split("\n")
+    for fault, word in zip(refused.value.faults, ("teetring", "2 006", "climb_sped", "6Z", "7 9", '"85"'), strict=True):
+        assert word in lines[fault.line - 1]
+    assert all(fault.permitted for fault in refused.value.faults)
+
+
+def test_cross_checks_run_though_other_tables_are_faulty(typed: str, tmp_path: Path) -> None:
+    text = changed(typed, ('min_mass = "1,301 lb"', 'min_mass = "3,301 lb"'), ('name = "Pelquill 2T"', "name = 3"))
+    with pytest.raises(FaultyFile, match=r"(?s)type\.name.*limits\.min_mass: read 3,301 lb"):
+        load(tmp_path, text)
+
+
+def test_unknown_takes_the_class_range_and_says_its_basis(typed: str, tmp_path: Path) -> None:
+    text = typed
+    for key in ("twist", "flap_inertia", "drag_area"):
+        start = text.index(f"{key} = ")
+        text = text[:start] + f'{key} = "unknown"' + text[text.index("\n", start) :]
+    rotor = load(tmp_path, text).rotor
+    assert (math.degrees(rotor.twist.value), math.degrees(rotor.twist.spread)) == pytest.approx((-9.0, 3.0))
+    for stated in (rotor.twist, rotor.flap_inertia, rotor.drag_area):
+        assert not stated.known
+        assert stated.text == "unknown"
+        assert "common practice, no source" in stated.basis
+        assert stated.spread > 0.0
+    # the ranges hold what was measured for the invented 2T
+    assert abs(rotor.drag_area.value - 0.62) < rotor.drag_area.spread
+    assert abs(rotor.flap_inertia.value - 111.0) < rotor.flap_inertia.spread
+    assert abs(math.degrees(rotor.twist.value) + 7.0) < math.degrees(rotor.twist.spread)
+
+
+def test_an_own_spread_beside_unknown_is_kept(typed: str, tmp_path: Path) -> None:
+    text = changed(typed, ('lift_slope = "unknown"', 'lift_slope = { value = "unknown", spread = "0.4" }'))
+    assert load(tmp_path, text).rotor.lift_slope.spread == 0.4
+
+
+def test_flap_frequency_by_hub() -> None:
+    # rigid-blade dynamics, nu^2 = 1 + 1.5 e/(1 - e); practice of the invented 3F: e = 0.035 gives 1.027
+    assert estimates.flap_frequency(Hub.TEETERING, 0.0).value == 1.0
+    assert estimates.flap_frequency(Hub.ARTICULATED, 0.035).value == pytest.approx(1.027, abs=5e-4)
+    assert estimates.flap_frequency(Hub.HINGELESS, 0.0).value == 1.10
+    assert estimates.equivalent_hinge_offset(1.10) == pytest.approx(0.123, abs=5e-4)
+    frequency = estimates.flap_frequency(Hub.ARTICULATED, 0.07).value
+    assert estimates.equivalent_hinge_offset(frequency) == pytest.approx(0.07)
+
+
+def test_no_calibration_in_the_manual_takes_a_spread_once(typed: str, tmp_path: Path) -> None:
+    start, end = typed.index("table = '''"), typed.index("[vne.power_on]")
+    text = typed[:start] + 'table = "none in manual"\nspread = "4 kt"\n\n' + typed[end:]
+    calibration = load(tmp_path, text).calibration
+    assert not calibration.in_manual
+    assert calibration.spread == pytest.approx(4 * KNOT)
+    assert calibration.to_calibrated(30.0) == 30.0
+
+
+def test_a_chart_over_height_and_mass(typed: str, tmp_path: Path) -> None:
+    start, end = typed.index("ft \\ degC"), typed.index("'''\n\n[vne.power_off]")
+    rows = "ft \\ lb   ≤1,600   1,800   2,006   kt indicated\n0   112  112  105\n10,000   86  77  69\n"
+    vne = load(tmp_path, typed[:start] + rows + typed[end:]).vne
+    assert vne.temperatures == ()
+    assert vne.masses == pytest.approx((1600 * POUND, 1800 * POUND, 2006 * POUND))
+    assert vne.speeds.shape == (2, 1, 3)
+    assert vne.indicated(0.0, 288.15, 1500 * POUND) == pytest.approx(112 * KNOT)  # "or less" holds below its column
+    assert vne.indicated(5000 * FOOT, 288.15, 2006 * POUND) == pytest.approx(87 * KNOT)
+
+
+def test_a_chart_over_height_alone(typed: str, tmp_path: Path) -> None:
+    start, end = typed.index("ft \\ degC"), typed.index("'''\n\n[vne.power_off]")
+    vne = load(tmp_path, typed[:start] + "ft    kt indicated\n0   112\n10,000   69\n" + typed[end:]).vne
+    assert (vne.temperatures, vne.masses, vne.speeds.shape) == ((), (), (2, 1, 1))
+    assert vne.rows == (("ft", "VNE"), ("0", "112"), ("10,000", "69"))
+
+
+@pytest.mark.parametrize(
+    ("pair", "place", "words"),
+    [
+        (("4,000        112", "4,000        113"), "row 4,000, column -20", "does not rise with height"),
+        (
+            ("6,000        105    96     88     80", "6,000        105    96     98     80"),
+            "row 6,000, column +20",
+            "height",
+        ),
+        (
+            ("0            112   112    112    108", "0            112   112    112    113"),
+            "row 0, column +40",
+            "temperature",
+        ),
+        (
+            ("10,000        86    77     69     61", "10,000        86    77     69     32"),
+            "row 10,000, column +40",
+            "40 kt",
+        ),
+        (('constant = "85 kt"', 'constant = "115 kt"'), "vne.power_off.constant", "not above every power-on VNE"),
+    ],
+)
+def test_what_a_manual_rarely_prints_needs_a_reason(
+    typed: str, tmp_path: Path, pair: tuple[str, str], place: str, words: str
+) -> None:
+    found = entry_findings(load(tmp_path, changed(typed, pair)))
+    assert any(place in fault.key and words in fault.permitted for fault in found), found
+    answered = changed(typed, pair, ('reading = "interpolate"', 'reading = "interpolate"\nentry_reason = "as printed"'))
+    assert entry_findings(load(tmp_path, answered)) == []
+
+
+def test_the_2t_has_no_entry_findings(two_t: Aircraft) -> None:
+    assert entry_findings(two_t) == []
+
+
+def test_loading_imports_nothing_heavy(examples: Path) -> None:
+    program = (
+        "import sys; from briefkit import load_aircraft, load_operation; "
+        f"load_aircraft({str(examples / 'aircraft' / 'pelquill-2t.toml')!r}); load_operation({str(examples)!r}); "
+        "print([m for m in ('scipy', 'nbconvert', 'ipywidgets', 'bqplot') if m in sys.modules])"
+    )
+    done = subprocess.run([sys.executable, "-c", program], capture_output=True, text=True, check=True)
+    assert done.stdout.strip() == "[]"

@@ -1,0 +1,224 @@
+"""check: what blocks a release, what needs a reason, and nothing on a brief that is complete."""
+
+from __future__ import annotations
+
+import datetime as dt
+import json
+import shutil
+from pathlib import Path
+
+import pytest
+
+from briefkit.brief.check import Finding, Level, findings
+from briefkit.errors import FaultyFile
+
+TODAY = dt.date(2030, 6, 1)
+
+
+def edit(path: Path, *pairs: tuple[str, str]) -> None:
+    text = path.read_text(encoding="utf-8")
+    for old, new in pairs:
+        assert old in text
+        text = text.replace(old, new)
+    path.write_text(text, encoding="utf-8")
+
+
+@pytest.fixture
+def world(tmp_path: Path, examples: Path) -> Path:
+    """The demo operator folder as a complete one: signed, and no longer said to be invented."""
+    folder = Path(shutil.copytree(examples, tmp_path / "operator"))
+    for path in (folder / "operation.toml", folder / "aircraft" / "pelquill-2t.toml"):
+        lines = path.read_text(encoding="utf-8").split("\n")
+        path.write_text("\n".join(line for line in lines if not line.startswith("invented")), encoding="utf-8")
+    signatures = [(f'{role} = ""', f'{role} = "NRC-{i}"') for i, role in enumerate(("prepared", "checked", "approved"))]
+    edit(folder / "vellmark-2t" / "brief.toml", *signatures)
+    return folder
+
+
+def serious(world: Path, today: dt.date = TODAY) -> list[Finding]:
+    return [finding for finding in findings(world / "vellmark-2t", today) if finding.level is not Level.NOTE]
+
+
+def only(world: Path, today: dt.date = TODAY) -> Finding:
+    (finding,) = serious(world, today)
+    return finding
+
+
+def test_a_complete_brief_has_nothing_but_notes(world: Path) -> None:
+    assert serious(world) == []
+    notes = findings(world / "vellmark-2t", TODAY)
+    assert [note.place.rpartition(": ")[2] for note in notes] == ["rotor.lift_slope"]
+
+
+def test_the_demo_brief_is_blocked_because_it_is_invented_and_unsigned(examples: Path) -> None:
+    found = findings(examples / "vellmark-2t", TODAY)
+    blocking = [finding.place.rpartition(": ")[2] for finding in found if finding.level is Level.BLOCKS]
+    assert sorted(blocking) == ["invented", "invented", "people"]
+
+
+def test_faults_of_all_files_are_listed_with_their_lines(world: Path) -> None:
+    edit(world / "aircraft" / "pelquill-2t.toml", ('radius = "4.45 m"', 'radius = "4.45"'))
+    edit(world / "operation.toml", ('"8,000 ft"', '"8,000"'))
+    edit(world / "vellmark-2t" / "brief.toml", ("expires = 2032-02-29", 'expires = "2032-02-29"'))
+    found = serious(world)
+    assert {finding.level for finding in found} == {Level.BLOCKS}
+    assert [finding.place.rpartition("/")[2] for finding in found] == [
+        "brief.toml, line 9: document.expires",
+        "operation.toml, line 15: work_areas.vellmark.pressure_altitudes, value 2",
+        "pelquill-2t.toml, line 21: rotor.radius",
+    ]
+
+
+@pytest.mark.parametrize(
+    ("old", "new", "place"),
+    [
+        ('radius = "4.45 m"', 'radius = "?"', "rotor.radius"),
+        ('chord = { value = "225 mm"', 'chord = { value = "?"', "rotor.chord"),
+        ('source = "flight manual 2-2 rev 4"', 'source = "?"', "limits.source"),
+        ("70\n10,000", "?\n10,000", "vne.power_on.chart, row 8,000, column +40"),
+    ],
+)
+def test_what_is_still_to_be_typed_is_one_finding_at_its_place(world: Path, old: str, new: str, place: str) -> None:
+    edit(world / "aircraft" / "pelquill-2t.toml", (old, new))
+    finding = only(world)
+    assert (finding.level, finding.text) == (Level.BLOCKS, 'still "?"')
+    assert finding.place.endswith(place)
+    assert ", line " in finding.place
+
+
+def test_a_value_still_marked_example_blocks(world: Path) -> None:
+    edit(
+        world / "aircraft" / "pelquill-2t.toml", ('rpm = "452 rpm"', 'rpm = "452 rpm"   # EXAMPLE'), ("# at 100 %", "")
+    )
+    finding = only(world)
+    assert finding.place.endswith("rotor.rpm")
+    assert "example" in finding.text
+
+
+@pytest.mark.parametrize(
+    ("old", "new", "place", "text"),
+    [
+        ('source = "flight manual 5-2 rev 4"\n', "", "calibration", "no source"),
+        ('source = "maintenance manual 62-10 rev 7"\n', "", "rotor", "no source for radius, rpm, root_cutout"),
+        ('spread = "2 mm", ', "", "rotor.chord", "no spread"),
+    ],
+)
+def test_missing_sources_and_spreads_block(world: Path, old: str, new: str, place: str, text: str) -> None:
+    edit(world / "aircraft" / "pelquill-2t.toml", (old, new))
+    finding = only(world)
+    assert (finding.level, finding.place.rpartition(": ")[2]) == (Level.BLOCKS, place)
+    assert finding.text.startswith(text)
+
+
+def test_a_missing_source_in_the_operation_blocks(world: Path) -> None:
+    edit(world / "operation.toml", ('source = "OM-C 4.2 rev 9"\n', ""))
+    assert only(world).place.endswith("work_areas.vellmark")
+
+
+def test_a_chart_that_rises_needs_a_reason(world: Path) -> None:
+    edit(world / "aircraft" / "pelquill-2t.toml", ("6,000        105    96     88", "6,000        105    96     98"))
+    finding = serious(world)[0]
+    assert finding.level is Level.REASON
+    assert "row 6,000, column +20" in finding.place
+    edit(
+        world / "aircraft" / "pelquill-2t.toml",
+        ('reading = "interpolate"', 'reading = "interpolate"\nentry_reason = "so printed, asked the maker"'),
+    )
+    assert serious(world) == []
+    assert any("so printed" in finding.text for finding in findings(world / "vellmark-2t", TODAY))
+
+
+@pytest.mark.parametrize(
+    ("day", "expired"), [(dt.date(2032, 2, 28), False), (dt.date(2032, 2, 29), True), (dt.date(2040, 1, 1), True)]
+)
+def test_an_expired_brief_blocks_from_its_day_on(world: Path, day: dt.date, expired: bool) -> None:
+    assert bool(serious(world, day)) is expired
+    if expired:
+        assert only(world, day).text == "expired on 2032-02-29"
+
+
+@pytest.mark.parametrize(("expires", "blocks"), [("2032-04-01", False), ("2032-04-02", True)])
+def test_expiry_beyond_the_policy_blocks(world: Path, expires: str, blocks: bool) -> None:
+    edit(world / "vellmark-2t" / "brief.toml", ("expires = 2032-02-29", f"expires = {expires}"))
+    assert bool(serious(world)) is blocks
+    if blocks:
+        assert "2032-04-01 at the latest (operation.toml" in only(world).remedy
+
+
+def test_a_month_shorter_than_the_day_of_effect_ends_the_policy_on_its_last_day(world: Path) -> None:
+    edit(world / "operation.toml", ("validity_months = 24", "validity_months = 11"))
+    dates = (("effective = 2030-04-01", "effective = 2030-03-31"), ("expires = 2032-02-29", "expires = 2031-03-01"))
+    edit(world / "vellmark-2t" / "brief.toml", *dates)
+    assert "2031-02-28 at the latest" in only(world).remedy
+
+
+@pytest.mark.parametrize(
+    ("codes", "text"),
+    [
+        (("NRC-1", "", "NRC-3"), "nobody yet for checked"),
+        (("NRC-1", "NRC-2", "NRC-1"), "NRC-1 has prepared and approved"),
+        (("NRC-1", "NRC-1", "NRC-3"), "2 distinct people, the policy asks for 3"),
+    ],
+)
+def test_fewer_people_than_the_policy_asks_for_block(world: Path, codes: tuple[str, str, str], text: str) -> None:
+    pairs = [
+        (f'{role} = "NRC-{i}"', f'{role} = "{code}"')
+        for i, (role, code) in enumerate(zip(("prepared", "checked", "approved"), codes, strict=True))
+    ]
+    edit(world / "vellmark-2t" / "brief.toml", *pairs)
+    assert text in only(world).text
+
+
+def test_two_people_are_enough_where_the_policy_says_two(world: Path) -> None:
+    edit(world / "operation.toml", ("people = 3", "people = 2"))
+    edit(world / "vellmark-2t" / "brief.toml", ('checked = "NRC-1"', 'checked = "NRC-0"'))
+    assert serious(world) == []
+
+
+def test_a_revision_without_a_line_of_changes_blocks(world: Path) -> None:
+    edit(world / "vellmark-2t" / "brief.toml", ("revision = 0\nissued", "revision = 1\nissued"))
+    assert only(world).text == "no line for revision 1"
+
+
+def test_the_notebook_has_to_be_there_and_readable_and_outputs_are_noted(world: Path) -> None:
+    path = world / "vellmark-2t" / "brief.ipynb"
+    notebook = json.loads(path.read_text(encoding="utf-8"))
+    notebook["cells"][1]["outputs"] = [{"output_type": "stream", "name": "stdout", "text": "1"}]
+    path.write_text(json.dumps(notebook), encoding="utf-8")
+    assert serious(world) == []
+    assert any("outputs are stored" in finding.text for finding in findings(world / "vellmark-2t", TODAY))
+    for broken in ("{", "[]", '{"cells": 3}'):
+        path.write_text(broken, encoding="utf-8")
+        assert only(world).text == "not a notebook that can be read"
+    path.unlink()
+    assert only(world).text == "no notebook"
+
+
+def test_a_work_area_outside_the_manual_blocks(world: Path) -> None:
+    edit(world / "operation.toml", ('"+30 degC"', '"+36 degC"'))
+    found = serious(world)
+    assert found
+    assert all("work_areas.vellmark.temperatures" in finding.place for finding in found)
+
+
+def test_a_whole_operator_folder_lists_a_shared_finding_once(world: Path) -> None:
+    shutil.copytree(world / "vellmark-2t", world / "second")
+    edit(world / "aircraft" / "pelquill-2t.toml", ('radius = "4.45 m"', 'radius = "4.45"'))
+    found = [finding for finding in findings(world, TODAY) if finding.level is Level.BLOCKS]
+    assert len(found) == 1
+
+
+def test_an_aircraft_file_alone(world: Path) -> None:
+    path = world / "aircraft" / "pelquill-2t.toml"
+    assert [finding.level for finding in findings(path)] == [Level.NOTE]
+
+
+def test_a_path_with_nothing_to_check_is_refused(tmp_path: Path) -> None:
+    for path in (tmp_path, tmp_path / "none"):
+        with pytest.raises(FaultyFile, match="nothing to check"):
+            findings(path)
+
+
+def test_a_finding_prints_on_one_line() -> None:
+    finding = Finding(Level.BLOCKS, "brief.toml: people", "nobody yet", "sign it")
+    assert str(finding) == "blocks release: brief.toml: people: nobody yet; sign it"
