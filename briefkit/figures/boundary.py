@@ -135,15 +135,14 @@ class BoundaryFigure:
 
     def _draw_band(self, x: Floats, band: Sequence[Floats]) -> bool:
         lower, central, upper = band
-        upper = np.where(np.isfinite(upper), upper, self._area.y.max)
         runs = [run for run in canvas.finite_runs(x, lower) if run[0].size > 1]
         missing = len(runs) - len(self._band)
         self._band += [canvas.patch(self._area, theme.BAND) for _ in range(missing)]
         for index, mark in enumerate(self._band):
             if index < len(runs):
                 part = np.isin(x, runs[index][0])
-                there = np.concatenate([x[part], x[part][::-1]])
-                put(mark, there, np.concatenate([lower[part], upper[part][::-1]]))
+                top_x, top = _top(x[part], upper[part], float(self._area.y.max))
+                put(mark, np.concatenate([x[part], top_x[::-1]]), np.concatenate([lower[part], top[::-1]]))
             else:
                 put(mark, [], [])
         return self._middle.update(x, central) or missing > 0
@@ -166,21 +165,25 @@ class BoundaryFigure:
                 bars_x.append([end, end])
                 bars_y.append([area.y_at(down - 6.0), area.y_at(down + 6.0)])
         put(self._stops, bars_x, bars_y)
-        self._write_stops(ends, None if here is None else area.across(here.x))
+        rings = [] if here is None else [(area.across(here.x), area.down(speed)) for speed in _speeds(here)]
+        self._write_stops(ends, None if here is None else area.across(here.x), rings)
         return grown
 
-    def _write_stops(self, ends: Sequence[tuple[float, float, float]], here: float | None) -> None:
+    def _write_stops(
+        self, ends: Sequence[tuple[float, float, float]], here: float | None, rings: Sequence[tuple[float, float]]
+    ) -> None:
         """Words under the ends (bank, pixels across and down): heavier, higher or steeper only lowers a line."""
         area, width = self._area, canvas.text_width("chart ends")
         words: list[list[tuple[float, float, str]]] = [[], []]
-        taken: list[tuple[float, float]] = []
+        # Boxes (left, right, top, bottom) in pixels that words keep clear of.
+        taken = [(across - 9.0, across + 9.0, down - 9.0, down + 9.0) for across, down in rings]
         for bank, across, down in sorted(ends, key=lambda end: end[2]):
             left = across > 0.6 * area.width or (here is not None and -8.0 < here - across < width)
             edge = across - width if left else across
             top = down + 16.0
-            while any(abs(edge - other) < width and abs(top - row) < 30.0 for other, row in taken):
+            while any(a < edge + width and edge < b and c < top + 22.0 and top - 8.0 < d for a, b, c, d in taken):
                 top += 2.0
-            taken.append((edge, top))
+            taken.append((edge, edge + width, top - 8.0, top + 22.0))
             place = area.x_at(across + (2.0 if left else -2.0))
             rows = (_bank(bank) + ",", "chart ends")
             words[left] += [(place, area.y_at(top + 14.0 * row), text) for row, text in enumerate(rows)]
@@ -238,6 +241,14 @@ def _speeds(here: Here | None) -> list[float]:
 def _same(one: Floats, other: Floats) -> bool:
     gaps = np.array_equal(np.isfinite(one), np.isfinite(other))
     return gaps and bool(np.nanmax(np.abs(one - other), initial=0.0) < _SAME)
+
+
+def _top(x: Floats, upper: Floats, ceiling: float) -> tuple[Floats, Floats]:
+    """The band's top edge: straight between neighbours that both have an upper end, else open up to the ceiling."""
+    both = np.isfinite(upper[:-1]) & np.isfinite(upper[1:])
+    left, right = np.where(both, upper[:-1], ceiling), np.where(both, upper[1:], ceiling)
+    across = np.stack([x[:-1], x[1:]], axis=1).ravel()
+    return across, np.stack([left, right], axis=1).ravel()
 
 
 def _bank(bank: float) -> str:

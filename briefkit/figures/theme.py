@@ -36,8 +36,7 @@ _MAP_ENDS: Final = ((236, 243, 251), (8, 48, 107))
 _MAP_MIDDLE: Final = (107, 160, 212)
 
 WIDTH: Final = 440
-TEXT: Final = 13.0
-SMALL: Final = 12.0
+SMALL: Final = 13.0
 HEAVY: Final = 2.4
 LINE: Final = 1.8
 THIN: Final = 1.0

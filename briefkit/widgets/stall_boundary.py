@@ -14,7 +14,7 @@ from briefkit import units
 from briefkit.aircraft.model import Aircraft
 from briefkit.envelope.boundary import Against, Boundary, boundary
 from briefkit.envelope.condition import Condition
-from briefkit.errors import Refusal, SetBy
+from briefkit.errors import Reason, Refusal, SetBy
 from briefkit.figures.boundary import BoundaryFigure, Curves, Here
 from briefkit.figures.still import Drawing, StillParts, Table
 from briefkit.widgets import words
@@ -25,6 +25,12 @@ Floats = NDArray[np.float64]
 
 BANKS: Final = (0.0, 20.0, 30.0)
 _TABLE_ROWS: Final = 6
+_SHORT: Final = {
+    Reason.BEYOND_CHART: "beyond chart",
+    Reason.TOO_COLD: "too cold",
+    Reason.OUTSIDE_CALIBRATION: "no calibration",
+    Reason.OUTSIDE_LIMITS: "outside limits",
+}
 
 
 class StallBoundary(Exhibit):
@@ -119,9 +125,8 @@ class StallBoundary(Exhibit):
         here = replace(here, answer=answer.ias, answer_words=f"{turn}: {answer.text}")
         if answer.set_by is SetBy.MANUAL_VNE:
             return here, f"{vne} With {turn} nothing is taken off: VNE still limits."
-        point, shown = answer.chart_point, aircraft.units
-        mass, oat = units.show(point.mass, "mass", shown.mass), units.show(point.temperature, "temperature", "°C")
-        there = f"{mass} at {units.show(point.pressure_altitude, 'height', shown.height)}, {oat}"
+        point = answer.chart_point
+        there = words.level_point(aircraft, point.mass, point.pressure_altitude, point.temperature)
         below = units.show_number(units.round_up(answer.below_vne))
         return here, (
             f"{vne} With {turn} the rotor is as loaded as level at {there}, where the chart gives "
@@ -131,20 +136,28 @@ class StallBoundary(Exhibit):
     def _table(self, aircraft: Aircraft, curves: Boundary) -> Table:
         """A row at even steps of the axis; speeds floored to one unit, a refused cell says why."""
         label = aircraft.units.speed_label()
-        banks = tuple("Level" if c.bank_deg == 0.0 else f"{c.bank_deg:g}° bank" for c in curves.equivalent)
+        turns = [c for c in curves.equivalent if not np.array_equal(c.ias, curves.vne, equal_nan=True)]
+        banks = tuple("Level" if c.bank_deg == 0.0 else f"{c.bank_deg:g}° bank" for c in turns)
         header = (f"{curves.x_label}, {curves.x_unit}", f"VNE, {label}", *banks, "Onset band")
         rows = []
         for index in np.linspace(0, curves.x.size - 1, _TABLE_ROWS).round().astype(int).tolist():
             cells = [_floored(curves.vne[index], "off the chart")]
-            cells += [_floored(c.ias[index], str(c.reason[index])) for c in curves.equivalent]
+            cells += [_floored(c.ias[index], _SHORT.get(c.reason[index], str(c.reason[index]))) for c in turns]
             rows.append((units.show_number(curves.x[index]), *cells, _band(curves, float(curves.x[index]))))
         return Table(header, tuple(rows), f"{label}, power on, floored to 1 {curves.speed_unit}")
 
     def _notes(self, aircraft: Aircraft, curves: Boundary) -> tuple[str, ...]:
+        same = [
+            "level" if c.bank_deg == 0.0 else f"at {c.bank_deg:g}° bank"
+            for c in curves.equivalent
+            if np.array_equal(c.ias, curves.vne, equal_nan=True)
+        ]
         notes = [
             "Black is the manual's. Blue is the manual's own chart read at the equivalent level flight. The grey band "
             "is the rotor model's absolute onset, softer than the chart; it is no speed to fly."
         ]
+        if same:
+            notes.append(f"Nothing is taken off {' and '.join(same)}: the manual's VNE holds along the whole line.")
         if not np.all(np.isfinite(curves.onset_lower) & np.isfinite(curves.onset_upper)):
             notes.append(
                 "Where the band or its upper end is missing, that speed is outside the calibration or the model."
@@ -173,4 +186,4 @@ def _band(curves: Boundary, x: float) -> str:
     low, high = (units.show_number(units.round_down(end)) if math.isfinite(end) else "" for end in ends)
     if low and high:
         return f"{low} to {high}"
-    return f"from {low}" if low else "outside calibration or model"
+    return f"from {low}" if low else "no figure"

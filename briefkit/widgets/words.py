@@ -80,6 +80,17 @@ def sentence(aircraft: Aircraft, condition: Condition) -> str:
     return ", ".join(_SHORT.get(name, name.lower() + " ") + value for name, value in inputs(aircraft, condition))
 
 
+def level_point(aircraft: Aircraft, mass: float, pressure_altitude: float, temperature: float) -> str:
+    """A point on the manual's chart in words, to whole units: "2,006 lb, Hp 9,484 ft, +20 °C"."""
+    shown = aircraft.units
+    degrees = round(units.from_si(temperature, "temperature", "°C"))
+    sign = "+" if degrees > 0 else ""
+    return (
+        f"{units.show(mass, 'mass', shown.mass)}, Hp {units.show(pressure_altitude, 'height', shown.height)}, "
+        f"{sign}{units.show_number(degrees)} °C"
+    )
+
+
 def angle(degrees: float) -> str:
     """An angle to a tenth of a degree, with a true minus sign."""
     return f"{units.show_number(degrees, 1)}°"
