@@ -113,7 +113,7 @@ class _Cleaner(HTMLParser):
         style = "\n".join([self._style.rstrip("\n"), *rules]) + "\n"
         digest = base64.b64encode(hashlib.sha256(style.encode("utf-8")).digest()).decode("ascii")
         policy = f"default-src 'none'; style-src 'sha256-{digest}'; img-src data:; base-uri 'none'; form-action 'none'"
-        head = f'\n<meta http-equiv="Content-Security-Policy" content="{policy}">'
+        head = f'\n<meta http-equiv="Content-Security-Policy" content="{policy}">\n'
         body = "".join(head if part == self._HEAD_MARK else part for part in self._out)
         return "<!DOCTYPE html>\n" + body.replace("\0style", style).strip() + "\n"
 
@@ -173,6 +173,10 @@ class _Cleaner(HTMLParser):
             self._style = (self._style or "") + data
             return
         text = data.replace("\0", "")
+        if self._out and self._out[-1] == self._HEAD_MARK:
+            text = text.lstrip()  # the policy brings its own line, also when it is written again
+        if not text:
+            return
         in_cell = any(tag in _CELLS for tag in self._open)
         broken = (_BROKEN_CELL if in_cell else _BROKEN_TEXT).search(text)
         if broken:

@@ -10,7 +10,7 @@ from typing import Final
 from urllib.parse import unquote
 
 from bs4 import BeautifulSoup
-from nbconvert.filters.markdown_mistune import IPythonRenderer, MarkdownWithMath
+from nbconvert.filters.markdown_mistune import InvalidNotebook, IPythonRenderer, MarkdownWithMath
 
 from briefkit.brief.run import Words
 from briefkit.errors import BuildError
@@ -28,7 +28,11 @@ def set_words(words: Words, folder: Path) -> str:
             is not a file of `folder`; each names the cell.
     """
     renderer = _PageRenderer(words)
-    fragment = BeautifulSoup(MarkdownWithMath(renderer=renderer).render(words.text), "html.parser")
+    try:
+        html = MarkdownWithMath(renderer=renderer).render(words.text)
+    except InvalidNotebook as error:
+        raise BuildError(f"{words.place}: {error}; paste the picture again") from None
+    fragment = BeautifulSoup(html, "html.parser")
     for picture in fragment.find_all("img"):
         picture["src"] = _embedded(str(picture.get("src", "")), words, folder)
         if not str(picture.get("alt", "")).strip():
@@ -71,7 +75,9 @@ class _PageRenderer(IPythonRenderer):
 def _embedded(source: str, words: Words, folder: Path) -> str:
     """A picture as data in the page."""
     if source.startswith("data:"):
-        return source
+        if source.startswith(tuple(f"data:{kind};base64," for kind in _PICTURES)):
+            return source
+        raise BuildError(f"{words.place}: a pasted picture is not PNG, JPEG, GIF or WebP")
     if re.match(r"[A-Za-z][A-Za-z0-9+.\-]*:|//", source):
         raise BuildError(f"{words.place}: the picture {source[:60]!r} is elsewhere; keep it as a file beside the brief")
     file = (folder / unquote(source)).resolve()
