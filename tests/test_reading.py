@@ -151,6 +151,38 @@ def test_a_file_too_large_or_not_text_or_absent_is_one_fault(tmp_path: Path) -> 
         Document(tmp_path)
 
 
+def test_what_is_no_text_file_at_all_is_refused_and_not_waited_for() -> None:
+    with pytest.raises(FaultyFile, match="a device or a pipe"):
+        Document("/dev/zero")
+
+
+@pytest.mark.parametrize(
+    ("text", "words"),
+    [
+        ("a = " + "[" * 100_000, "lists within lists"),
+        ("a = " + "9" * 5000, "thousands of digits"),
+        ("[limits]\nday = 2032-02-30\n", "line 2: limits.day.*no such day"),
+        ("[limits]\n[limits]\n", "line 2: .*stands twice"),
+        ("[limits]\nx = 1\nx = 2\n", "line 3: .*stands twice"),
+    ],
+)
+def test_what_toml_itself_refuses_is_a_fault_like_any_other(tmp_path: Path, text: str, words: str) -> None:
+    with pytest.raises(FaultyFile, match=words):
+        document(tmp_path, text).raise_faults()
+
+
+def test_only_a_temperature_too_high_is_asked_for_fahrenheit(tmp_path: Path) -> None:
+    class Bounded(Table):
+        day: Annotated[Typed | None, quantity("temperature", 200.0, 330.0)] = None
+        mass: Annotated[Typed | None, quantity("mass", 100.0, 200.0)] = None
+
+    for text, asked in (('day = "95 degC"', True), ('day = "-95 degC"', False), ('mass = "300 kg"', False)):
+        read = document(tmp_path, f"[limits]\n{text}\n")
+        read.table("limits", Bounded)
+        assert len(read.faults) == 1
+        assert ("Fahrenheit" in read.faults[0].remedy) is asked
+
+
 def test_everything_still_to_be_typed_is_listed(tmp_path: Path) -> None:
     text = '[a]\nx = "?"\ny = ["1 kg", "?"]\nz = { value = "1 kg", source = "?" }\nw = "what?"\n'
     text += "[[b]]\nc = '''\n1 2\n3 ?\n'''\n"

@@ -11,7 +11,7 @@ from briefkit.reading.document import Table
 from briefkit.reading.quantity import Typed, quantity
 from briefkit.units import KNOT, ZERO_CELSIUS
 
-Text = Annotated[str, Field(min_length=1)]
+Text = Annotated[str, Field(pattern=r"^[^\x00-\x1f\x7f]*\S[^\x00-\x1f\x7f]*$")]
 Mass = Annotated[Typed | None, quantity("mass", 100.0, 20_000.0)]
 Temperature = Annotated[Typed | None, quantity("temperature", ZERO_CELSIUS - 80.0, ZERO_CELSIUS + 55.0)]
 Height = Annotated[Typed | None, quantity("height", -600.0, 11_000.0)]
@@ -95,14 +95,14 @@ class LimitsTable(Table):
 
 class CalibrationTable(Table):
     required: ClassVar[tuple[str, ...]] = ("table",)
-    table: Text | None = None
+    table: str | None = None
     spread: Annotated[Typed | None, quantity("speed", 0.0, 20.0 * KNOT)] = None
     source: str = ""
 
 
 class PowerOnTable(Table):
     required: ClassVar[tuple[str, ...]] = ("chart",)
-    chart: Text | None = None
+    chart: str | None = None
     reading: Literal["interpolate", "next lower VNE"] = "next lower VNE"
     reading_error: Annotated[Typed | None, quantity("speed", 0.0, 10.0 * KNOT)] = None
     covers_temperatures: str = ""

@@ -14,6 +14,8 @@ from enum import StrEnum
 from pathlib import Path
 from typing import Final, TypeVar
 
+import numpy as np
+
 from briefkit.aircraft.cross import entry_findings
 from briefkit.aircraft.load import load_aircraft
 from briefkit.aircraft.model import Aircraft, Limits, RotorData, Stated
@@ -163,6 +165,10 @@ def _aircraft(path: Path) -> tuple[Aircraft | None, list[Finding]]:
     if not aircraft.calibration.in_manual:
         text = "no calibration in the manual: indicated is taken as calibrated, give or take the spread"
         found.append(Finding(Level.NOTE, f"{place}: calibration", text))
+    outside = int(np.sum(np.isnan(aircraft.calibration.to_calibrated(aircraft.vne.speeds))))
+    if outside:
+        text = f"{outside} cells lie outside the airspeed calibration: no answer is computed from them"
+        found.append(Finding(Level.NOTE, f"{place}: vne.power_on.chart", text))
     for fault in entry_findings(aircraft):
         text = f"read {fault.read}; expected: {fault.permitted}"
         found.append(Finding(Level.REASON, f"{place}: {fault.key}", text, fault.remedy))

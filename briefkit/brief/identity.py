@@ -223,7 +223,7 @@ def named_aircraft(path: Path | str) -> Path | None:
         target = (operator_folder(file.parent) / name).resolve() if isinstance(name, str) else None
         inside = target is not None and target.is_relative_to(operator_folder(file.parent))
         return shown_path(target) if target is not None and inside and target.is_file() else None
-    except (FaultyFile, OSError, ValueError):
+    except (FaultyFile, OSError, RuntimeError, ValueError):  # RuntimeError: links in a circle
         return None
 
 
@@ -263,7 +263,10 @@ def _check_subject(document: Document, subject: _SubjectTable, operator: Path) -
         return
     key, inside = "subject.aircraft", PurePosixPath(subject.aircraft)
     permitted = 'a path inside the operator folder, like "aircraft/pelquill-2t.toml"'
-    target = (operator / inside).resolve()
+    try:
+        target = (operator / inside).resolve()
+    except (OSError, RuntimeError, ValueError):
+        target = operator
     if inside.is_absolute() or "\\" in subject.aircraft or not target.is_relative_to(operator):
         document.fault(key, quoted(subject.aircraft), permitted, "from the folder that holds operation.toml, with /")
     elif not target.is_file():

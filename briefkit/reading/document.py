@@ -148,6 +148,8 @@ class Document:
 
     def _content(self) -> bytes:
         try:
+            if self.path.exists() and not self.path.is_file() and not self.path.is_dir():
+                raise FaultyFile([Fault(self.file, "file", "a device or a pipe", "a readable TOML file")])
             if self.path.stat().st_size > SIZE_LIMIT:
                 raise FaultyFile(
                     [Fault(self.file, "file", f"{self.path.stat().st_size:,} bytes", f"at most {SIZE_LIMIT:,} bytes")]
@@ -219,10 +221,8 @@ def _in_words(detail: ErrorDetails) -> tuple[str, str]:
     if kind == "literal_error":
         choices = re.findall(r"'([^']*)'", str(context["expected"]))
         return ", ".join(f'"{choice}"' for choice in choices), did_you_mean(str(detail["input"]), choices)
-    if kind in ("string_type", "string_too_short"):
-        return "text between quotes", ""
-    if kind.startswith("string_pattern"):
-        return "text of the form " + str(context["pattern"]), ""
+    if kind in ("string_type", "string_pattern_mismatch"):
+        return "text between quotes, on one line", ""
     if kind.startswith("int"):
         return "a whole number without quotes", ""
     if kind.startswith("date"):

@@ -40,7 +40,9 @@ def parse(text: str) -> tuple[dict[str, Any], list[Slip]]:
     while len(slips) < _MOST_SLIPS:
         try:
             return tomllib.loads("\n".join(lines)), slips
-        except tomllib.TOMLDecodeError as error:
+        except RecursionError:
+            return {}, [Slip(0, "file", "lists within lists without end", "take the square brackets out")]
+        except ValueError as error:  # a TOMLDecodeError, or a whole number of thousands of digits
             at = _AT_LINE.fullmatch(str(error))
             said, number = (at[1], int(at[2])) if at else (str(error), 0)
             line = lines[number - 1] if number else ""
@@ -56,12 +58,16 @@ def parse(text: str) -> tuple[dict[str, Any], list[Slip]]:
 
 
 def _slip(line: str, number: int, key: str, said: str) -> Slip:
-    if not number:
+    if not number and "end of document" in said:
         return Slip(0, "file", "the end of the file", "a block opened with ''' has to be closed with '''")
+    if not number:
+        return Slip(0, "file", "a whole number of thousands of digits", "look for it")
     pair = _PAIR.fullmatch(line)
     if "Cannot overwrite" in said or "twice" in said:
         return Slip(number, key, f"`{line.strip()}`", "this name stands twice in the file; take one out")
-    if "\\" in line and "Unescaped" in said:
+    if "Invalid date" in said:
+        return Slip(number, key, f"`{line.strip()}`", "there is no such day or time")
+    if "Unescaped" in said:
         remedy = "open and close a block that has a \\ in it with ''', not with \"\"\""
         return Slip(number, key, f"`{line.strip()}`", remedy)
     if pair is not None and not pair[2].startswith(('"', "'", "[", "{")):

@@ -115,6 +115,13 @@ def test_a_missing_source_in_the_operation_blocks(world: Path) -> None:
     assert only(world).place.endswith("work_areas.vellmark")
 
 
+def test_cells_outside_the_calibration_are_noted(world: Path) -> None:
+    edit(world / "aircraft" / "pelquill-2t.toml", ("\n120             116", ""))
+    assert serious(world) == []
+    texts = [finding.text for finding in findings(world / "vellmark-2t", TODAY)]
+    assert "10 cells lie outside the airspeed calibration: no answer is computed from them" in texts
+
+
 def test_a_chart_that_rises_needs_a_reason(world: Path) -> None:
     edit(world / "aircraft" / "pelquill-2t.toml", ("6,000        105    96     88", "6,000        105    96     98"))
     finding = serious(world)[0]
