@@ -68,6 +68,13 @@ def test_rows_are_kept_as_typed(tmp_path: Path) -> None:
     assert table.rows == (CELLS[0][:-1], *CELLS[1:])
 
 
+def test_two_columns_and_two_rows_are_a_chart(tmp_path: Path) -> None:
+    table, document = read(tmp_path, "ft \\ degC  0  +40  kt indicated\n0  112  108\n10,000  77  61\n")
+    assert document.faults == []
+    assert table is not None
+    assert table.speeds.shape == (2, 2)
+
+
 def test_every_faulty_cell_is_named_with_its_line(tmp_path: Path) -> None:
     text = block("\t").replace("107", "1O7").replace("\t89", "\t").replace("106", "1,06")
     table, document = read(tmp_path, text)

@@ -124,6 +124,24 @@ def test_unknown_takes_the_class_range_and_says_its_basis(typed: str, tmp_path: 
     assert abs(math.degrees(rotor.twist.value) + 7.0) < math.degrees(rotor.twist.spread)
 
 
+def test_estimates_are_the_figures_their_basis_names() -> None:
+    light = estimates.drag_area(1000 * POUND)
+    assert light.value == pytest.approx(4.0 * FOOT**2)
+    assert light.spread == pytest.approx(1.0 * FOOT**2)
+    assert estimates.drag_area(8000 * POUND).value == pytest.approx(16.0 * FOOT**2)  # 8^(2/3) = 4
+    # Lock number rho a c R^4 / I, rho = 1.225 kg/m3: 4 and 8 at the two ends
+    inertia = estimates.flap_inertia(4.45, 0.225, 5.73)
+    locks = [1.225 * 5.73 * 0.225 * 4.45**4 / (inertia.value + side * inertia.spread) for side in (1, -1)]
+    assert locks == pytest.approx([4.0, 8.0], rel=1e-4)
+    assert estimates.lift_slope().value + estimates.lift_slope().spread > 5.90  # holds TN 2474's measured slope
+    assert estimates.precone(Hub.ARTICULATED).value == 0.0
+
+
+def test_a_rotor_speed_range_may_end_at_100_percent(typed: str, tmp_path: Path) -> None:
+    for pair in ('["100 %", "104 %"]', '["96 %", "100 %"]'):
+        assert load(tmp_path, changed(typed, ('["97 %", "102 %"]', pair))).limits.rotor_on[0].value <= 1.0
+
+
 def test_an_own_spread_beside_unknown_is_kept(typed: str, tmp_path: Path) -> None:
     text = changed(typed, ('lift_slope = "unknown"', 'lift_slope = { value = "unknown", spread = "0.4" }'))
     assert load(tmp_path, text).rotor.lift_slope.spread == 0.4
@@ -192,7 +210,9 @@ def test_what_a_manual_rarely_prints_needs_a_reason(
     typed: str, tmp_path: Path, pair: tuple[str, str], place: str, words: str
 ) -> None:
     found = entry_findings(load(tmp_path, changed(typed, pair)))
-    assert any(place in fault.key and words in fault.permitted for fault in found), found
+    named = [fault for fault in found if place in fault.key and words in fault.permitted]
+    assert len(named) == 1, found
+    assert named[0].read in pair[1]
     answered = changed(typed, pair, ('reading = "interpolate"', 'reading = "interpolate"\nentry_reason = "as printed"'))
     assert entry_findings(load(tmp_path, answered)) == []
 
