@@ -18,7 +18,7 @@ from briefkit.brief import lab
 from briefkit.cli import app
 
 COMMAND = [sys.executable, "-c", "from briefkit.cli import main; main()"]
-HEAVY = ("numpy", "scipy", "pydantic", "nbformat", "nbclient", "nbconvert", "jupyter_client", "ipywidgets", "bqplot")
+HEAVY = ("numpy", "scipy", "nbformat", "nbclient", "nbconvert", "jupyter_client", "ipywidgets", "bqplot")
 
 
 def briefkit(*arguments: object, **options: object) -> subprocess.CompletedProcess[str]:
