@@ -157,6 +157,58 @@ def test_flap_frequency_by_hub() -> None:
     assert estimates.equivalent_hinge_offset(frequency) == pytest.approx(0.07)
 
 
+def test_articulated_and_hingeless_hubs_take_what_is_left_out_from_what_is_typed(typed: str, tmp_path: Path) -> None:
+    articulated = changed(
+        typed, ('hub = "teetering"', 'hub = "articulated"\nhinge_offset = "3.5 %"'), ("blades = 2", "blades = 3")
+    )
+    rotor = load(tmp_path, changed(articulated, ('precone = "2.5 deg"\n', ""))).rotor
+    assert rotor.hinge_offset.value == pytest.approx(0.035)
+    assert rotor.flap_frequency.value == pytest.approx(1.027, abs=5e-4)
+    assert rotor.flap_frequency.text == "1.027 for the articulated hub"
+    assert "uniform blade" in rotor.flap_frequency.basis
+    assert rotor.precone.value == 0.0
+    hingeless = changed(typed, ('hub = "teetering"', 'hub = "hingeless"\nflap_frequency = "1.10"'))
+    rotor = load(tmp_path, hingeless).rotor
+    assert rotor.flap_frequency.known
+    assert rotor.hinge_offset.value == pytest.approx(0.123, abs=5e-4)
+    assert rotor.hinge_offset.text == "12.3 %"
+    assert math.degrees(rotor.precone.value) == pytest.approx(2.5)
+
+
+def test_what_the_manual_says_in_words_is_kept_word_for_word(typed: str, tmp_path: Path) -> None:
+    more = """
+[recovery]
+source = "flight manual 3-9 rev 4"
+text = "Lower the collective. Reduce speed."
+
+[[manual.speeds]]
+label = "Rough air"
+text = "100 KIAS, and VNE less 10 above 30 degrees"
+applies = "turbulence"
+source = "flight manual 2-5 rev 4"
+"""
+    aircraft = load(tmp_path, typed + more)
+    assert (aircraft.recovery, aircraft.recovery_source) == (
+        "Lower the collective. Reduce speed.",
+        "flight manual 3-9 rev 4",
+    )
+    (speed,) = aircraft.speeds
+    assert (speed.label, speed.applies) == ("Rough air", "turbulence")
+    assert speed.text == "100 KIAS, and VNE less 10 above 30 degrees"
+    assert aircraft.hover[0].text.startswith("7,250 ft standard day")
+    assert ("recovery", "flight manual 3-9 rev 4") in aircraft.sources
+    assert ("manual.speeds (entry 1)", "flight manual 2-5 rev 4") in aircraft.sources
+
+
+def test_a_value_has_its_own_source_or_that_of_its_table(two_t: Aircraft, typed: str, tmp_path: Path) -> None:
+    rotor = two_t.rotor
+    assert rotor.radius.source == rotor.source == "maintenance manual 62-10 rev 7"
+    assert rotor.chord.source.startswith("measured at 0.75 R")
+    assert rotor.lift_slope.source == rotor.source
+    own = changed(typed, ('lift_slope = "unknown"', 'lift_slope = { value = "unknown", source = "asked the maker" }'))
+    assert load(tmp_path, own).rotor.lift_slope.source == "asked the maker"
+
+
 def test_no_calibration_in_the_manual_takes_a_spread_once(typed: str, tmp_path: Path) -> None:
     start, end = typed.index("table = '''"), typed.index("[vne.power_on]")
     text = typed[:start] + 'table = "none in manual"\nspread = "4 kt"\n\n' + typed[end:]

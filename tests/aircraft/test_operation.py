@@ -114,6 +114,31 @@ def test_an_aircraft_that_is_not_in_the_fleet(operation: Operation, two_t: Aircr
     assert "[fleet.ormbrae-3f]" in fault.permitted
 
 
+def test_spreads_climb_and_speeds_of_a_fleet_entry(examples: Path, tmp_path: Path) -> None:
+    more = (
+        'mass_spread = "20 lb"\ntemperature_spread = "2 degC"\nclimb = "500 ft/min"\nimc_speed = "60 kt"\n'
+        'minimum_manoeuvring_speed = { value = "65 kt", source = "OM-B 2.4 rev 11" }\n'
+    )
+    text = (examples / "operation.toml").read_text(encoding="utf-8") + more
+    (tmp_path / "operation.toml").write_text(text, encoding="utf-8")
+    entry = load_operation(tmp_path).fleet["pelquill-2t"]
+    assert entry.mass_spread == 20 * POUND
+    assert entry.temperature_spread == 2.0
+    assert entry.climb is not None
+    assert entry.climb.value == pytest.approx(2.54)
+    assert entry.imc_speed is not None
+    assert entry.imc_speed.source == entry.source == "OM-B 2.3 rev 11"
+    assert entry.minimum_manoeuvring_speed is not None
+    assert entry.minimum_manoeuvring_speed.source == "OM-B 2.4 rev 11"
+
+
+def test_a_mass_given_twice_is_refused(examples: Path, tmp_path: Path) -> None:
+    text = (examples / "operation.toml").read_text(encoding="utf-8").replace('"1,900 lb"', '"2,006 lb"')
+    (tmp_path / "operation.toml").write_text(text, encoding="utf-8")
+    with pytest.raises(FaultyFile, match=r"masses, value 2: read 2,006 lb; permitted: less than the one before it"):
+        load_operation(tmp_path)
+
+
 def test_faults_of_several_tables_are_listed_together(examples: Path, tmp_path: Path) -> None:
     text = (examples / "operation.toml").read_text(encoding="utf-8")
     for old, new in (("people = 3", "people = 1"), ('"8,000 ft"', '"8000 feet"'), ('"1,900 lb"', '"1,900"')):

@@ -226,6 +226,13 @@ def test_a_path_with_nothing_to_check_is_refused(tmp_path: Path) -> None:
             findings(path)
 
 
+def test_a_brief_outside_any_operator_folder_is_one_finding(tmp_path: Path, examples: Path) -> None:
+    folder = Path(shutil.copytree(examples / "vellmark-2t", tmp_path / "alone"))
+    found = [finding for finding in findings(folder, TODAY) if "operation.toml" in finding.text]
+    assert len(found) == 1
+    assert found[0].level is Level.BLOCKS
+
+
 def test_a_finding_prints_on_one_line() -> None:
     finding = Finding(Level.BLOCKS, "brief.toml: people", "nobody yet", "sign it")
     assert str(finding) == "blocks release: brief.toml: people: nobody yet; sign it"

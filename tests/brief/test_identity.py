@@ -9,7 +9,7 @@ from pathlib import Path
 
 import pytest
 
-from briefkit.brief.identity import Identity, disagreements, load_brief, load_identity, operator_folder
+from briefkit.brief.identity import Identity, disagreements, load_brief, load_identity, named_aircraft, operator_folder
 from briefkit.errors import FaultyFile
 
 
@@ -36,6 +36,7 @@ def test_the_demo_brief_is_read_as_typed(identity: Identity, examples: Path) -> 
     assert (identity.work_area, identity.serials, identity.configuration) == ("vellmark", ("014", "022"), "doors on")
     assert identity.people == ()
     assert [change.text for change in identity.changes] == ["First issue"]
+    assert len(identity.basis) == 3
     assert identity.operator == examples.resolve()
     assert identity.aircraft_path.name == "pelquill-2t.toml"
     assert identity.notebook.is_file()
@@ -85,6 +86,29 @@ def test_a_link_that_leads_out_of_the_operator_folder_is_refused(world: Path, tm
     edit(world / "vellmark-2t" / "brief.toml", "aircraft/pelquill-2t.toml", "aircraft/linked.toml")
     with pytest.raises(FaultyFile, match="inside the operator folder"):
         load_identity(world / "vellmark-2t")
+
+
+def test_a_brief_expires_after_the_day_it_becomes_effective(world: Path) -> None:
+    edit(world / "vellmark-2t" / "brief.toml", "expires = 2032-02-29", "expires = 2030-04-01")
+    with pytest.raises(FaultyFile, match=r"document\.expires: read 2030-04-01; permitted: after 2030-04-01"):
+        load_identity(world / "vellmark-2t")
+
+
+def test_the_aircraft_is_found_though_the_rest_of_the_brief_is_faulty_but_never_outside(
+    world: Path, tmp_path: Path
+) -> None:
+    file = world / "vellmark-2t" / "brief.toml"
+    edit(file, "revision = 0", "revision = -1")
+    found = named_aircraft(file)
+    assert found is not None
+    assert found.resolve() == (world / "aircraft" / "pelquill-2t.toml").resolve()
+    shutil.copy(found, tmp_path / "outside.toml")
+    edit(file, '"aircraft/pelquill-2t.toml"', '"../outside.toml"')
+    assert (world / "../outside.toml").is_file()
+    assert named_aircraft(file) is None
+    edit(file, '"../outside.toml"', "7")
+    assert named_aircraft(file) is None
+    assert named_aircraft(world) is None
 
 
 def test_the_operator_folder_is_the_nearest_one_upwards(world: Path, tmp_path: Path) -> None:
