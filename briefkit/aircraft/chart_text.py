@@ -122,6 +122,10 @@ def read_calibration(document: Document, key: str, text: str) -> CalibrationRows
     for place, name in enumerate(("indicated", "calibrated")):
         cells = [(row.line, f"row {row.cells[0]}, {name}", row.cells[place]) for row in whole]
         columns.append(_axis(document, key, cells))
+        for (line, label, cell), value in zip(cells, columns[-1], strict=True):
+            if value is not None and not 0.0 < value <= _FASTEST[match[1]]:
+                permitted = f"above 0, up to {_FASTEST[match[1]]:g} {match[1]}"
+                document.fault(f"{key}, {label}", cell, permitted, "look again in the manual", line)
     if len(document.faults) > before:
         return None
     indicated, calibrated = (

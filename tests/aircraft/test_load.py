@@ -9,6 +9,8 @@ from pathlib import Path
 
 import numpy as np
 import pytest
+from hypothesis import HealthCheck, given, settings
+from hypothesis import strategies as st
 
 from briefkit.aircraft import estimates
 from briefkit.aircraft.chart import ReadingRule
@@ -271,6 +273,29 @@ def test_what_a_manual_rarely_prints_needs_a_reason(
 
 def test_the_2t_has_no_entry_findings(two_t: Aircraft) -> None:
     assert entry_findings(two_t) == []
+
+
+@settings(max_examples=150, deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture])
+@given(st.data())
+def test_a_spoilt_file_is_refused_in_words_or_still_a_whole_aircraft(
+    typed: str, tmp_path: Path, data: st.DataObject
+) -> None:
+    text = typed
+    for _ in range(data.draw(st.integers(1, 3))):
+        at = data.draw(st.integers(0, len(text) - 1))
+        put = data.draw(st.text(alphabet="0123456789.,-+ \"'[]{}=#\n\\?\tkgft%\u2212\x00", max_size=2))
+        text = text[:at] + put + text[at + data.draw(st.integers(0, 2)) :]
+    faults, aircraft = (), None
+    try:
+        aircraft = load(tmp_path, text)
+    except FaultyFile as refused:
+        faults = refused.faults
+    assert (aircraft is None) == bool(faults)
+    assert all(fault.read and fault.permitted for fault in faults)
+    if aircraft is not None:
+        assert np.all(np.isfinite(aircraft.vne.speeds))
+        assert 0.0 < aircraft.limits.min_mass.value < aircraft.limits.max_mass.value
+        assert 150.0 <= aircraft.rotor.tip_speed <= 260.0
 
 
 def test_loading_imports_nothing_heavy(examples: Path) -> None:
