@@ -127,13 +127,13 @@ class Calibration:
         """Indicated [m/s] to calibrated [m/s], by straight lines; NaN outside the table (callers give the reason)."""
         if not self.indicated:
             return np.asarray(indicated, dtype=float)
-        return np.interp(indicated, self.indicated, self.calibrated, left=np.nan, right=np.nan)
+        return np.asarray(np.interp(indicated, self.indicated, self.calibrated, left=np.nan, right=np.nan))
 
     def to_indicated(self, calibrated: Floats | float) -> Floats:
         """Calibrated [m/s] to indicated [m/s]; NaN outside the table (callers give the reason)."""
         if not self.indicated:
             return np.asarray(calibrated, dtype=float)
-        return np.interp(calibrated, self.calibrated, self.indicated, left=np.nan, right=np.nan)
+        return np.asarray(np.interp(calibrated, self.calibrated, self.indicated, left=np.nan, right=np.nan))
 
     def refuse(self, indicated: float, unit: str) -> OutsideCalibration:
         """The refusal for an indicated speed [m/s] outside the table, in the type's own unit."""
