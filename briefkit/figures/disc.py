@@ -19,8 +19,8 @@ from briefkit.units import show_number
 Floats = NDArray[np.float64]
 
 _ROOM = Margins(0, 0, 0, 0)
-_HEIGHT = 372
-_RADIUS = 146.0  # px; the sides keep room for words, so that they need not be turned
+_HEIGHT = 356
+_RADIUS = 138.0  # px; the sides keep room for words, so that they need not be turned
 _HALF_WIDTH = theme.WIDTH / 2.0 / _RADIUS
 _HALF_HEIGHT = _HEIGHT / 2.0 / _RADIUS
 _FINE = np.linspace(0.0, 2.0 * math.pi, 121)

@@ -122,7 +122,7 @@ class TipPathFigure:
     def _write(self, b1c: float, b1s: float, factor: float, below: Sequence[float]) -> None:
         sides = ("retreating", "advancing") if self._rotation > 0 else ("advancing", "retreating")
         foot = self._area.y.min + 0.08
-        size = "drawn true to angle" if factor == 1.0 else f"angles drawn {factor:g} times as large"
+        size = "disc tilt, " + ("true to angle" if factor == 1.0 else f"angles drawn {factor:g} times as large")
         names = [
             (-1.85, below[0], "nose"),
             (-0.35, below[1], "tail"),
@@ -133,10 +133,10 @@ class TipPathFigure:
             (0.0, foot, size),
         ]
         write(self._names, names)
-        back = f"disc {show_number(abs(b1c), 1)}° {'back' if b1c < 0.0 else 'forward'}"
+        back = f"{show_number(abs(b1c), 1)}° {'back' if b1c < 0.0 else 'forward'}"
         # Tilted towards the side whose blade is low: b1s > 0 lifts the advancing blade.
         low = "retreating" if b1s > 0.0 else "advancing"
-        aside = f"disc {show_number(abs(b1s), 1)}° to the {low} side"
+        aside = f"{show_number(abs(b1s), 1)}° to the {low} side"
         top = self._area.y.max - 0.08
         write(self._tilt, [(-1.1, top, back), (1.1, top, aside)])
 

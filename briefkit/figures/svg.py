@@ -129,7 +129,8 @@ def _axis(axis: Any, frame: Frame) -> str:
     places = pixels(np.asarray(axis.tick_values, dtype=float), axis.scale, length, flip=sideways)
     origin = {"left": (0.0, 0.0), "right": (frame.width, 0.0), "top": (0.0, 0.0), "bottom": (0.0, frame.height)}
     parts = [_tick(axis, float(place), reach, text) for place, text in zip(places, _tick_texts(axis), strict=True)]
-    line = f"M0,0V{number(length)}" if sideways else f"M0,0H{number(length)}"
+    end = number(-6.0 if axis.side in ("left", "top") else 6.0)  # the axis ends in a tick of its own, as d3 draws it
+    line = f"M{end},0H0V{number(length)}H{end}" if sideways else f"M0,{end}V0H{number(length)}V{end}"
     parts.append(element("path", {"d": line, **paint(stroke=axis.color or theme.GREY)}))
     parts.append(_axis_label(axis, length))
     x, y = origin[axis.side]

@@ -35,6 +35,9 @@ _ROLE_OF: Final = {light: role for role, (light, _) in _ROLES.items()}
 _MAP_ENDS: Final = ((236, 243, 251), (8, 48, 107))
 _MAP_MIDDLE: Final = (107, 160, 212)
 
+# One sans family with tabular numerals, of the usual narrow proportions, whatever the machine has.
+FONTS: Final = '"Helvetica Neue",Arial,"Liberation Sans",sans-serif'
+
 WIDTH: Final = 440
 SMALL: Final = 13.0
 HEAVY: Final = 2.4

@@ -21,13 +21,14 @@ STYLE = (
     "<style>"
     f".briefkit{{background:{theme.PAPER};color:{theme.INK};padding:8px 12px;font-size:14px;line-height:1.45;"
     "font-variant-numeric:tabular-nums}"
+    f".briefkit,.briefkit .bqplot text{{font-family:{theme.FONTS}}}"
     ".briefkit .widget-html-content,.briefkit .jupyter-widgets,.briefkit .widget-label"
     f"{{color:{theme.INK};font-size:14px;line-height:1.45}}"
     ".briefkit h4{margin:0;font-size:16px;font-weight:600}.briefkit p{margin:2px 0}"
     f".briefkit .for{{color:{theme.GREY}}}"
     f".briefkit .word{{border-left:4px solid {theme.INK};padding-left:8px;font-weight:600}}"
     ".briefkit-old{opacity:.35;filter:grayscale(1)}"
-    ".briefkit .bqplot svg,.briefkit .bqplot text{font-family:inherit;font-variant-numeric:tabular-nums}"
+    ".briefkit .bqplot text{font-variant-numeric:tabular-nums}.briefkit .bqplot>svg{overflow:visible}"
     "</style>"
 )
 
