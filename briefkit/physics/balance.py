@@ -19,6 +19,7 @@ from briefkit.physics.elements import (
     Forces,
     Grid,
     Motion,
+    Products,
     Sums,
     flow_at,
     flow_coefficients,
@@ -210,23 +211,18 @@ class Balance:
         # normal = u (lift across - drag through); in-plane drag = u (lift through + drag across)
         normal = self._by_flow(lift_slope * across - drag_slope * through, forces.normal, lift, -drag, u, sine, cosine)
         in_plane = self._by_flow(lift_slope * through + drag_slope * across, forces.drag, drag, lift, u, sine, cosine)
-        shape = (u.shape[0], -1)
-        return (
-            [(by @ product).reshape(*shape, 9) for by, product in zip(normal, grid.normal_products, strict=True)],
-            [(by @ product).reshape(*shape, 6) for by, product in zip(in_plane, grid.drag_products, strict=True)],
-        )
+        return _summed(normal, grid.normal_products), _summed(in_plane, grid.drag_products)
 
     @staticmethod
     def _by_flow(
         turned: Array, force: Array, by_across: Array, by_through: Array, u: Array, sine: Array, cosine: Array
     ) -> tuple[Array, Array, Array]:
         """Slopes of an element's force by pitch, flow through and flow across; the angle is pitch less inflow angle."""
-        by_angle = u * turned
         along = force / u
         return (
-            by_angle,
-            (along * sine - by_angle * cosine) / u + u * by_through,
-            (along * cosine + by_angle * sine) / u + u * by_across,
+            u * turned,
+            along * sine - turned * cosine + u * by_through,
+            along * cosine + turned * sine + u * by_across,
         )
 
     def columns(self, x: Array, members: Members) -> Array:
@@ -237,3 +233,12 @@ class Balance:
 
     def _members(self, members: Members) -> Case:
         return self.case if members.size == self.case.size else self.case.take(members)
+
+
+def _summed(fields: tuple[Array, Array, Array], products: Products) -> list[Array]:
+    """Fields over the disc summed with each of their products: (member, shape, sum).
+
+    One small matrix product each: those do not wake the threads of a linear-algebra library.
+    """
+    pairs = zip(fields, products, strict=True)
+    return [np.stack([field @ product for product in by_shape], axis=1) for field, by_shape in pairs]

@@ -22,6 +22,9 @@ from briefkit.physics.section import Section
 
 Array = NDArray[np.float64]
 
+# By what is changed (pitch, flow through, flow across), then by shape: (point, sum) each.
+Products = tuple[tuple[Array, ...], tuple[Array, ...], tuple[Array, ...]]
+
 OUTBOARD_NODES = 2  # between the tip-loss radius and the tip, where only a short piece of drag is summed
 
 
@@ -55,8 +58,8 @@ class Grid:
     points: Points
     weights: Array
     lifting: Array
-    normal_products: tuple[Array, Array, Array]
-    drag_products: tuple[Array, Array, Array]
+    normal_products: Products
+    drag_products: Products
 
 
 def points_at(planform: Planform, radius: Array, azimuth: Array) -> Points:
@@ -133,10 +136,10 @@ def make_grid(planform: Planform, grid: tuple[int, int]) -> Grid:
     )
 
 
-def _products(points: Points, weights: Array) -> tuple[Array, Array, Array]:
-    """Weights times each shape of the pitch, of the flow through and of the flow across: (point, shape * sum)."""
+def _products(points: Points, weights: Array) -> Products:
+    """Weights times each shape of the pitch, of the flow through and of the flow across."""
     pitch, through, across = (
-        np.ascontiguousarray((shapes[:, :, None] * weights).transpose(1, 0, 2).reshape(points.radius.size, -1))
+        tuple(np.ascontiguousarray(shape[:, None] * weights) for shape in shapes)
         for shapes in (points.pitch_shapes, points.shapes, points.sine[None])
     )
     return pitch, through, across

@@ -78,6 +78,9 @@ class Planform:
         return tuple(sorted(step for step in found if self.root_cutout < step < self.tip_loss))
 
 
+BARE: Final = Planform(0.0, 1.0, None, None)  # no cut-out, constant chord, linear twist only
+
+
 @dataclass(frozen=True)
 class Rotor:
     """A rotor in SI units. Numbers may be floats or arrays of one batch length, so a spread is one batch.

@@ -18,10 +18,10 @@ from briefkit.physics.balance import (
     Model,
     Way,
 )
-from briefkit.physics.elements import Motion, flow_coefficients
+from briefkit.physics.elements import Motion, flow_at, flow_coefficients, points_at
 from briefkit.physics.flapping import from_no_feathering_plane
 from briefkit.physics.newton import solve
-from briefkit.physics.rotor import Case, Rotor, State
+from briefkit.physics.rotor import BARE, REFERENCE_STATION, Case, Rotor, State
 from briefkit.physics.section import Attached, Section
 from briefkit.physics.start import gliding_start, held_start, trimmed_start
 from briefkit.physics.steady import Trim, tip_angle
@@ -41,8 +41,11 @@ EDGEWISE: Final = 1.5
 
 TOLERANCE: Final = 1e-10  # where the iteration stops
 ACCEPTED: Final = 1e-8  # the residual that counts as solved
-CHUNK: Final = 64  # states at a time: their arrays stay in the processor's cache
-EVALUATIONS: Final = 60
+# States at a time: their arrays stay in the processor's cache, and no matrix product is so large (rows x points x
+# sums) that a linear-algebra library splits it over threads, which costs more than it gives at this size.
+CHUNK: Final = 64
+LARGEST_PRODUCT: Final = 200_000
+EVALUATIONS: Final = 40
 
 # No unknown moves farther in one step [rad; inflow by the tip speed]: t0 t1c t1s b0 b1c b1s induced tilt climb.
 _LARGEST_STEP: Final = np.array([0.12, 0.12, 0.12, 0.12, 0.12, 0.12, 0.03, 0.12, 0.12])
@@ -63,10 +66,6 @@ class Found:
         """Write the answers of some members into the whole batch."""
         for name in ("columns", "forces", "left", "evaluations"):
             getattr(self, name)[members] = getattr(part, name)
-
-    def take(self, members: NDArray[np.bool_]) -> Found:
-        """The members given."""
-        return Found(self.columns[members], self.forces[members], self.left[members], self.evaluations[members])
 
     @classmethod
     def nothing(cls, size: int) -> Found:
@@ -95,36 +94,29 @@ class _Blend:
 
 def solved(rotor: Rotor, state: State, way: Way, model: Model, case: Case, controls: Array | None = None) -> Trim:
     """A batch solved one way and reported; `controls` (batch, 9) where they are held."""
+    asked = case
     if VERTICAL not in way.equations:  # the weight only scales residuals then
         case = replace(case, weight=0.1 * case.solidity)
     inside = _within_range(case, way)
     if controls is not None:
         inside &= np.isfinite(controls).all(axis=1)
+    start = np.full((case.size, 9), np.nan)
     found = Found.nothing(case.size)
-    for members in _chunks(np.flatnonzero(inside)):
+    for members in _chunks(np.flatnonzero(inside), model):
         part = case.take(members)
-        start = _start(part, model, way, None if controls is None else controls[members])
-        found.put(members, _found(part, model, way, start))
-    return _report(rotor, state, case, found, model)
+        start[members] = _start(part, model, way, None if controls is None else controls[members])
+        found.put(members, _attempt(part, model, way, start[members]))
+    for members in _chunks(np.flatnonzero(inside & ~(found.left <= ACCEPTED)), model):
+        again = _continued(case.take(members), model, way, start[members])
+        again.evaluations[:] += found.evaluations[members]
+        found.put(members, again)
+    return _report(rotor, state, asked, found, model)
 
 
 def _start(case: Case, model: Model, way: Way, controls: Array | None) -> Array:
     if controls is not None:
         return held_start(case, model.inflow, controls)
     return (gliding_start if way is GLIDING else trimmed_start)(case, model.inflow)
-
-
-def _found(case: Case, model: Model, way: Way, start: Array) -> Found:
-    """The batch solved from a start, with a second attempt at members that were not."""
-    found = _attempt(case, model, way, start)
-    lost = ~(found.left <= ACCEPTED)
-    if lost.any():
-        again = _continued(case.take(lost), model, way, start[lost])
-        again.evaluations[:] += found.evaluations[lost]
-        better = again.left < found.left[lost]
-        found.put(np.flatnonzero(lost)[better], again.take(better))
-        found.evaluations[lost] = again.evaluations
-    return found
 
 
 def _attempt(case: Case, model: Model, way: Way, start: Array) -> Found:
@@ -136,14 +128,26 @@ def _attempt(case: Case, model: Model, way: Way, start: Array) -> Found:
 
 
 def _continued(case: Case, model: Model, way: Way, start: Array) -> Found:
-    """From the solution with a section that never stalls, step by step to the section asked for."""
-    columns, evaluations = start, np.zeros(case.size, dtype=np.intp)
+    """From the solution with a section that never stalls, step by step to the section asked for.
+
+    A member that is lost on the way stays where it was lost: that is its last residual.
+    """
+    whole = Found.nothing(case.size)
+    whole.columns[:] = start
+    going = np.arange(case.size)
     for share in _SHARES:
         section = model.section if share == 1.0 else _Blend(model.section, share)
-        found = _attempt(case, replace(model, section=section), way, columns)
-        evaluations += found.evaluations
-        columns = np.where((found.left <= ACCEPTED)[:, None], found.columns, columns)
-    return replace(found, evaluations=evaluations)
+        found = _attempt(case.take(going), replace(model, section=section), way, whole.columns[going])
+        found.evaluations[:] += whole.evaluations[going]
+        whole.put(going, found)
+        going = going[found.left <= ACCEPTED]
+        if going.size == 0:
+            break
+    arrived = np.zeros(case.size, dtype=bool)
+    arrived[going] = True
+    # Solved with a section that is not the one asked for is not solved.
+    whole.left[~arrived] = np.maximum(whole.left[~arrived], 2.0 * ACCEPTED)
+    return whole
 
 
 def _within_range(case: Case, way: Way) -> NDArray[np.bool_]:
@@ -166,12 +170,16 @@ def _within_range(case: Case, way: Way) -> NDArray[np.bool_]:
     )
     if TORQUE not in way.equations:
         good &= ~(sinking & slow)
+    elif way is GLIDING:  # so slow a glide sinks faster than the wake allows, whatever its path
+        good &= ~slow
     return np.asarray(finite & good)
 
 
-def _chunks(members: NDArray[np.intp]) -> Iterator[NDArray[np.intp]]:
-    for start in range(0, members.size, CHUNK):
-        yield members[start : start + CHUNK]
+def _chunks(members: Members, model: Model) -> Iterator[Members]:
+    points, sums = model.grid.weights.shape
+    size = max(1, min(CHUNK, LARGEST_PRODUCT // (points * sums)))
+    for start in range(0, members.size, size):
+        yield members[start : start + size]
 
 
 def _report(rotor: Rotor, state: State, case: Case, found: Found, model: Model) -> Trim:
@@ -236,12 +244,28 @@ def _reasons(case: Case, found: Found, model: Model) -> NDArray[np.object_]:
         & ~in_wake
     )
     lost = (found.evaluations > 0) & ~(found.left <= ACCEPTED)
+    lost |= _deeply_stalled(case, motion, model)
     kinds = np.where(lost, 2, np.where(inside, 0, 1))
     # Member by member: numpy would turn a text enumeration assigned to a whole array into plain text.
     reason = np.empty(case.size, dtype=object)
     for member, kind in enumerate(kinds):
         reason[member] = _KINDS[kind]
     return reason
+
+
+def _deeply_stalled(case: Case, motion: Motion, model: Model) -> NDArray[np.bool_]:
+    """Members whose blades at 0.75 R stand, in the mean round the disc, past the section's angle of maximum lift.
+
+    Thrust against collective has a maximum; far beyond it a stalled disc can carry the weight again like a flat plate.
+    That is an answer to the equations, not a flight.
+    """
+    if not hasattr(model.section, "stall_angle"):
+        return np.zeros(case.size, dtype=bool)
+    azimuths = model.grid.azimuths
+    points = points_at(BARE, np.full_like(azimuths, REFERENCE_STATION), azimuths)
+    flow = flow_at(case, points, flow_coefficients(case, motion, model.inflow))
+    stall = model.section.stall_angle(flow.mach.mean(axis=1))
+    return np.asarray(flow.angle.mean(axis=1) > stall)
 
 
 def turned(cosine: Array, sine: Array, turn: Array) -> tuple[Array, Array]:

@@ -109,6 +109,17 @@ class Trim:
         """True for members that hold numbers."""
         return np.array([reason is Reason.NONE for reason in self.reason])
 
+    @property
+    def scale_of_thrust(self) -> Array:
+        """rho A (Omega R)^2 [N], (batch,): what CT, CH and CY are multiplied with."""
+        value = np.asarray(self.state.density) * self.rotor.disc_area * np.asarray(self.state.tip_speed) ** 2
+        return np.broadcast_to(value, self.t0.shape)
+
+    @property
+    def scale_of_power(self) -> Array:
+        """rho A (Omega R)^3 [W], (batch,): what CQ is multiplied with for power."""
+        return np.asarray(self.scale_of_thrust * self.state.tip_speed)
+
     def elements(self, radii: ArrayLike | None = None, azimuths: ArrayLike | None = None) -> Elements:
         """Speed, Mach number and angle over the disc, at the solver's own points or at those given.
 
