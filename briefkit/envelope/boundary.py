@@ -15,7 +15,7 @@ from briefkit.aircraft.model import Aircraft
 from briefkit.envelope import search
 from briefkit.envelope.condition import Condition, Conditions
 from briefkit.envelope.equivalent import equivalent_vnes
-from briefkit.envelope.spread import onset_bands
+from briefkit.envelope.spread import quick_onset_bands
 from briefkit.errors import OutsideLimits, Reason
 
 Floats = NDArray[np.float64]
@@ -82,7 +82,7 @@ def boundary(
         answers = equivalent_vnes(aircraft, turning)
         curves.append(EquivalentCurve(bank, answers.ias, answers.reason))
     sparse = _permitted(aircraft, condition, over, BAND_POINTS)
-    band = onset_bands(aircraft, _along(condition, over, sparse))
+    band = quick_onset_bands(aircraft, _along(condition, over, sparse))
     quantity, unit, label = _axis(aircraft, over)
     speed = aircraft.units.speed
     return Boundary(

@@ -11,9 +11,10 @@ import pytest
 from briefkit import units
 from briefkit.envelope.condition import Condition, Conditions
 from briefkit.envelope.onset import FIRST_SIGNS, onset_speed, tip_angle_at, tip_angles
+from briefkit.envelope.onset_table import INPUTS
 from briefkit.envelope.solution import rotor_of
 from briefkit.envelope.speeds import indicated_of
-from briefkit.envelope.spread import INPUTS, onset_band, onset_bands
+from briefkit.envelope.spread import onset_band, onset_bands
 from briefkit.errors import OutsideLimits
 
 HOT = Condition(mass="2,006 lb", pressure_altitude="5,210 ft", oat="36 degC")
