@@ -18,7 +18,7 @@ from briefkit.brief.harden import harden
 from briefkit.brief.identity import BRIEF_FILE, Brief, load_brief
 from briefkit.brief.pages import CrewPage, render_plain
 from briefkit.brief.readback import readback
-from briefkit.brief.run import read_notebook, run_async
+from briefkit.brief.run import complete, read_notebook, run_async
 from briefkit.brief.write import sweep, write_page
 from briefkit.errors import BriefkitError, BuildError
 
@@ -77,7 +77,7 @@ def build(paths: Iterable[Path], out: Path, tell: Callable[[Result], None] | Non
         BuildError: no brief found, or `out` cannot be written at all.
     """
     briefs = find_briefs(paths)
-    results = asyncio.run(_build_all(briefs, out, tell or (lambda _: None)))
+    results = complete(_build_all(briefs, out, tell or (lambda _: None)))
     write_page(out / INDEX, _index(results))
     return results
 

@@ -11,12 +11,12 @@ import os
 import re
 import sys
 import tempfile
-from collections.abc import AsyncIterator, Iterator
+from collections.abc import AsyncIterator, Coroutine, Iterator
 from concurrent.futures import ThreadPoolExecutor
 from contextlib import asynccontextmanager
 from dataclasses import dataclass
 from pathlib import Path
-from typing import Any
+from typing import Any, TypeVar
 
 import nbformat
 from jupyter_client.kernelspec import KernelSpec, KernelSpecManager
@@ -28,6 +28,8 @@ from nbformat import NotebookNode
 from briefkit import errors
 from briefkit.brief.stills import MIME, REQUEST
 from briefkit.errors import BuildError
+
+T = TypeVar("T")
 
 CELL_SECONDS = 120
 START_SECONDS = 60
@@ -88,10 +90,15 @@ def run(notebook: Path) -> Ran:
 
 def run_node(node: NotebookNode, notebook: Path) -> Ran:
     """`run` for a notebook already in memory; `notebook` says where it lives. Raises as `run`."""
+    return complete(run_async(node, notebook))
+
+
+def complete(work: Coroutine[Any, Any, T]) -> T:
+    """Wait for a coroutine, also from inside a running event loop (a live notebook, a notebook server's export)."""
     if not _in_a_loop():
-        return asyncio.run(run_async(node, notebook))
-    with ThreadPoolExecutor(1) as pool:  # a notebook server's "download as" calls from inside its own loop
-        return pool.submit(asyncio.run, run_async(node, notebook)).result()
+        return asyncio.run(work)
+    with ThreadPoolExecutor(1) as pool:
+        return pool.submit(asyncio.run, work).result()
 
 
 def _in_a_loop() -> bool:

@@ -1,0 +1,57 @@
+"""The example brief: built twice, the same bytes, small enough to send by telephone."""
+
+from __future__ import annotations
+
+import re
+
+import pytest
+
+from briefkit.brief.build import build
+from briefkit.brief.run import Picture, Words
+
+pytestmark = pytest.mark.slow
+
+
+def test_built_twice_the_same_bytes_and_under_300_kilobytes(examples, exported, tmp_path):
+    (result,) = build([examples], tmp_path)
+    assert not result.error
+    assert result.notes == ()
+    assert result.page is not None
+    assert result.page.read_text(encoding="utf-8") == exported.html
+    assert 20_000 < result.size < 300_000
+
+
+def test_every_exhibit_has_its_drawings_named_in_words_and_a_table(exported):
+    assert sum(isinstance(block, Picture) for block in exported.ran.blocks) == 5
+    assert sum(isinstance(block, Words) for block in exported.ran.blocks) > 3
+    assert exported.html.count("<svg") == exported.pictures >= 6
+    for drawing in re.findall(r"<svg.*?</svg>", exported.html, re.DOTALL):
+        assert re.search(r"<title[^>]*>[^<]{4,}</title>", drawing)
+        assert re.search(r"<desc[^>]*>[^<]{4,}</desc>", drawing)
+        assert 'role="img"' in drawing
+    figures = re.findall(r'<figure class="exhibit".*?</figure>', exported.html, re.DOTALL)
+    assert all("<table" in figure for figure in figures)
+    ids = re.findall(r'\bid="([^"]*)"', exported.html)
+    assert len(ids) == len(set(ids))
+
+
+def test_the_order_of_the_page(exported):
+    body = exported.html.split("<body>")[1]
+    order = ("1. VNE", "4. If it starts", "Which one is it?", "How the reduction was found", "Speed at the blades")
+    places = [body.index(words) for words in (*order, "Document control")]
+    assert places == sorted(places)
+
+
+def test_the_headline_number(exported):
+    """Page 1 of the worked example: 1,800 lb in the Vellmark block, 10 kt or more before a turn."""
+    body = exported.html.split("<body>")[1]
+    row = re.search(r'<th scope="row">1,800\u00a0lb</th><td>(.*?)</td>', body)
+    assert row is not None
+    assert row[1] == "10\u00a0kt or more"
+    assert "VNE here is 79: 5.1 below" in body or "VNE here 79: 5.1 below" in body
+
+
+def test_nothing_of_the_notebook_but_words_and_stills(exported):
+    assert "load_aircraft(" not in exported.html
+    assert "VBox(" not in exported.html
+    assert "widget" not in exported.html.lower()
