@@ -94,7 +94,19 @@ def worked_line(aircraft: Aircraft, row: ReductionRow) -> str:
     return (
         f"By hand: {counts} {words.mass(aircraft, hand.counts_as)}; {mass} is as loaded at {loaded}; the manual’s VNE "
         f"there, {there}, which is {words.number(hand.indicated)} {kind} at {here}; VNE here is "
-        f"{words.number(hand.vne_here)}: {words.number(row.exact)} below, so {words.knots(aircraft, row.reduction)}."
+        f"{words.number(hand.vne_here)}: {_below(aircraft, row, hand)}, so {words.knots(aircraft, row.reduction)}."
+    )
+
+
+def _below(aircraft: Aircraft, row: ReductionRow, hand: Hand) -> str:
+    """The difference, with what a stated climb adds to it by the rotor model."""
+    if row.at is None or row.at.climb <= 0.0:
+        return f"{words.number(row.exact)} below"
+    climb = units.show(row.at.climb, "vertical speed", "ft/min")
+    cost = f"{words.number(row.exact - hand.below)} {aircraft.units.speed}"
+    return (
+        f"{words.number(hand.below)} below, and a climb of {climb} costs another {cost} by the rotor model: "
+        f"{words.number(row.exact)} in all"
     )
 
 

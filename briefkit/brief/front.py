@@ -80,7 +80,7 @@ def turn_section(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea, table: R
     lead = "For awareness" if status == "for information" else f"{status[:1].upper()}{status[1:]}"
     heading = f"2. {lead}: before a turn of up to {bank} of bank, slow to VNE less"
     validity = (
-        f"Level turn, rotor at 100 %, Hp {_range(aircraft, area)}, "
+        f"{_turn(fleet)}, rotor at 100 %, Hp {_range(aircraft, area)}, "
         f"{words.temperature(area.low_temperature.value)} to {words.temperature(area.high_temperature.value)}. "
         f"Answer under {words.indicated(aircraft, table.floor.text)} ({table.floor.reason}): "
         f"no {table.brief_bank_deg:.0f}-degree turn. "
@@ -110,6 +110,10 @@ def turn_section(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea, table: R
         "not a flight-manual limit and not a speed to aim for."
     )
     return Section(heading, before=own, grid=grid, after=(method, validity))
+
+
+def _turn(fleet: FleetEntry) -> str:
+    return "Level turn" if fleet.climb is None else f"Turn, level or climbing at up to {fleet.climb.text}"
 
 
 def row_text(aircraft: Aircraft, table: ReductionTable, row: ReductionRow) -> str:

@@ -4,7 +4,7 @@ A rotor at load factor n, mass m, rotor speed k, density rho and temperature T h
 and tip Mach numbers as in level flight at 100 % with p' = p m'/(n m), T' = T/k^2 and true airspeed V' = V/k (the
 flight-test trade's referral). So the manual's own chart is read there, at every permitted point at least as loaded and
 no warmer; the largest speed found is the answer. The load factor enters as n^1.15, which guards limits that are set
-by loads in newtons and so do not follow the similarity. No rotor model takes part.
+by loads in newtons and so do not follow the similarity. No rotor model takes part, but for the cost of a stated climb.
 """
 
 from __future__ import annotations
@@ -20,6 +20,7 @@ from numpy.typing import NDArray
 from briefkit import units
 from briefkit.aircraft.model import Aircraft
 from briefkit.envelope import here, search
+from briefkit.envelope.climb import climb_cost
 from briefkit.envelope.condition import Condition, Conditions
 from briefkit.envelope.speeds import indicated_of
 from briefkit.errors import BeyondChart, NoTrim, OutsideCalibration, OutsideChart, Reason, SetBy
@@ -190,7 +191,8 @@ def _read(aircraft: Aircraft, many: Conditions, vne: Floats, exponent: float) ->
         warmest = day.oat / k**2
         best = search.fastest(aircraft, loading, warmest, day.oat)
         reason[np.isneginf(best.vne) & (reason == Reason.NONE)] = Reason.BEYOND_CHART
-        true = np.where(np.isneginf(best.vne), np.nan, best.vne * k)
+        true = np.where(np.isneginf(best.vne), np.nan, best.vne * k) - climb_cost(aircraft, best, day.climb, k)
+        reason[np.isnan(true) & (reason == Reason.NONE)] = Reason.NO_TRIM
         indicated = indicated_of(aircraft.calibration, true, day.pressure, day.oat)
         # Above the calibration's top is above VNE here in any case; below its foot there is no indicated speed.
         here_true = here.true_airspeed(aircraft, vne, day)
@@ -227,6 +229,9 @@ def _refusal(
         return OutsideChart(
             "outside air temperature", "not on the chart", "", "level flight at 100 %", aircraft.vne.source, reason
         )
+    if reason is Reason.NO_TRIM:
+        climb = units.from_si(condition.climb, "vertical speed", "ft/min")
+        return NoTrim("climb", climb, "ft/min", "a climb the rotor model can fly here", "rotor model", reason)
     percent = f"rotor {condition.rotor_speed * 100.0:.4g} %"
     if reason is Reason.TOO_COLD:
         coldest = search.temperature_range(aircraft)[0] - units.ZERO_CELSIUS

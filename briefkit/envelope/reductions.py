@@ -141,6 +141,7 @@ def _points(fleet: FleetEntry, mass: Stated, block: Block, bank: float) -> Condi
         pressure_altitude=height,
         oat=oat,
         load_factor=1.0 / math.cos(bank),
+        climb=0.0 if fleet.climb is None else fleet.climb.value,
         mass_spread=fleet.mass_spread,
         oat_spread=fleet.temperature_spread,
     )

@@ -11,8 +11,12 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from briefkit import units
+from briefkit.envelope.climb import climb_cost
 from briefkit.envelope.condition import Condition, Conditions
 from briefkit.envelope.equivalent import LOAD_EXPONENT, covered_bank, equivalent_vne, equivalent_vnes
+from briefkit.envelope.onset import tip_angle_at
+from briefkit.envelope.search import Best
+from briefkit.envelope.solution import rotor_of
 from briefkit.errors import BeyondChart, OutsideCalibration, OutsideChart, OutsideLimits, Reason, SetBy
 from briefkit.physics import airspeed, atmosphere
 
@@ -255,3 +259,28 @@ def permitted(aircraft, rng, count, load=(1.0, 1.0), rotor=(1.0, 1.0)):
         load_factor=rng.uniform(*load, count),
         rotor_speed=rng.uniform(*rotor, count),
     )
+
+
+def test_a_climb_can_only_lower_the_answer(two_t):
+    turn = Condition(mass="1,800 lb", pressure_altitude="8,000 ft", oat="20 degC", bank="30 deg")
+    level = equivalent_vne(two_t, turn).ias
+    speeds = [equivalent_vne(two_t, turn.with_(climb=f"{w} ft/min")).ias for w in (250, 500, 1000)]
+    assert level > speeds[0] > speeds[1] > speeds[2]
+    # An earlier, separate trial: about 5 kt for 500 ft/min at 30 degrees.
+    assert level - speeds[1] == pytest.approx(5.0, abs=1.0)
+    # A descent gives nothing back, and level flight at 100 % stays the manual's.
+    assert equivalent_vne(two_t, turn.with_(climb="-500 ft/min")).ias == level
+    assert equivalent_vne(two_t, turn.with_(bank="0 deg", climb="500 ft/min")).set_by is SetBy.MANUAL_VNE
+
+
+def test_climb_cost_keeps_the_tip_angle(two_t):
+    """The definition, solved again from the model: the same angle level at V' and climbing at V''."""
+    many = Conditions.si(mass=two_t.limits.max_mass.value, pressure_altitude=2890.0, oat=293.15)
+    best = Best(np.array([44.9]), many.pressure_altitude, many.oat, many.mass)
+    cost = climb_cost(two_t, best, np.array([2.54]), np.array([1.0]))
+    drag = two_t.rotor.drag_area
+    rotor = rotor_of(two_t, drag_area=drag.value + drag.spread)
+    level = tip_angle_at(rotor, many, best.vne)
+    climbing = tip_angle_at(rotor, replace(many, climb=np.array([2.54])), best.vne - cost)
+    assert cost[0] > 1.0
+    assert math.degrees(abs(float(level[0] - climbing[0]))) < 0.01
