@@ -1,0 +1,156 @@
+"""The live side in a real JupyterLab: the picture follows the hand, a refusal is seen, nothing leaks or calls out."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator
+from pathlib import Path
+from typing import Any
+
+import pytest
+
+pytestmark = [pytest.mark.browser, pytest.mark.slow]
+
+AIRCRAFT = Path(__file__).parents[2] / "example_briefs" / "aircraft" / "pelquill-2t.toml"
+CELLS = [
+    f"""
+from briefkit import Condition, DiscMap, Flapping, LiveCondition, StallBoundary, load_aircraft
+aircraft = load_aircraft({str(AIRCRAFT)!r})
+start = Condition(mass="1,800 lb", pressure_altitude="8,000 ft", oat="20 degC", ias="60 kt")
+live = LiveCondition(aircraft, start)
+live
+""",
+    "DiscMap(live)",
+    "Flapping(live)",
+    "StallBoundary(live)",
+    "from ipywidgets.widgets import widget; print('models', len(widget._instances))",
+]
+
+# The pixels the disc shows now: the image drawn to a canvas. A title that moves proves nothing about a picture.
+PICTURE = """async () => {
+  const shown = document.querySelector('.bqplot image');
+  const image = new Image();
+  image.src = shown.getAttribute('href');
+  await image.decode();
+  const canvas = document.createElement('canvas');
+  canvas.width = canvas.height = 64;
+  const context = canvas.getContext('2d');
+  context.drawImage(image, 0, 0, 64, 64);
+  return Array.from(context.getImageData(0, 0, 64, 64).data).join();
+}"""
+CURVES = "() => [...document.querySelectorAll('.bqplot .curve .line')].map(line => line.getAttribute('d')).join()"
+
+
+@pytest.fixture(scope="module")
+def seen(lab: Any) -> Iterator[Any]:
+    seen = lab.open(CELLS)
+    seen.page.wait_for_function("document.querySelectorAll('.bqplot').length === 4", timeout=90_000)
+    seen.page.wait_for_function("document.body.innerText.includes('models ')", timeout=60_000)
+    yield seen
+    seen.page.context.close()
+    lab.end_kernels()
+
+
+def control(page: Any, name: str) -> Any:
+    """The row of one number of the panel."""
+    return page.locator(".briefkit .widget-hbox", has_text=name).first
+
+
+def drag(page: Any, name: str, pixels: int) -> None:
+    handle = control(page, name).locator(".noUi-handle")
+    handle.scroll_into_view_if_needed()
+    box = handle.bounding_box()
+    x, y = box["x"] + box["width"] / 2, box["y"] + box["height"] / 2
+    page.mouse.move(x, y)
+    page.mouse.down()
+    for step in range(1, 11):
+        page.mouse.move(x + pixels * step / 10, y)
+    page.mouse.up()
+
+
+def changes(page: Any, script: str, act: Callable[[], None]) -> None:
+    """Wait until what `script` returns differs from before `act`; a picture that stays fails."""
+    before = page.evaluate(script)
+    act()
+    for _ in range(80):
+        if page.evaluate(script) != before:
+            return
+        page.wait_for_timeout(100)
+    pytest.fail("the picture did not change")
+
+
+def settled(page: Any) -> tuple[str, str]:
+    """Picture and curves once the kernel has caught up with the hand and nothing moves any more."""
+    last = ("", "")
+    for _ in range(60):
+        page.wait_for_timeout(400)
+        now = str(page.evaluate(PICTURE)), str(page.evaluate(CURVES))
+        if now == last and page.evaluate("window.bkPanel.sessionContext.session.kernel.status === 'idle'"):
+            return now
+        last = now
+    pytest.fail("the picture never came to rest")
+
+
+def words(page: Any) -> str:
+    return str(page.evaluate("() => document.querySelector('.jp-Notebook').innerText"))
+
+
+def test_every_exhibit_appears_with_its_condition(seen):
+    text = words(seen.page)
+    for heading in ("Pelquill 2T, doors on", "Speed at the blades", "Flapping", "VNE and the equivalent level flight"):
+        assert heading in text
+    assert text.count("1,800 lb, Hp 8,000 ft, +20 °C, 60 KIAS, bank 0°, rotor speed 100 %") == 4
+
+
+def test_the_disc_picture_follows_the_airspeed_slider(seen):
+    changes(seen.page, PICTURE, lambda: drag(seen.page, "Airspeed", 40))
+    box = control(seen.page, "Airspeed").locator("input[type=text]")
+    speed = box.input_value()
+    assert speed != "60 KIAS"
+    seen.page.wait_for_function(f"document.querySelector('.jp-Notebook').innerText.split('{speed}, bank').length === 5")
+
+
+def test_the_curves_follow_the_bank_slider(seen):
+    changes(seen.page, CURVES, lambda: drag(seen.page, "Bank", 60))
+
+
+def test_an_impossible_entry_is_refused_where_it_is_seen_and_the_picture_stays(seen):
+    box = control(seen.page, "Mass").locator("input[type=text]")
+    before = settled(seen.page)
+    box.fill("2,100 lb")
+    box.press("Enter")
+    word = seen.page.locator(".briefkit .word").first
+    word.wait_for(timeout=20_000)
+    assert "Refused" in word.inner_text()
+    assert "2,100 lb" in word.inner_text()
+    assert "Mass stays at 1,800 lb" in word.inner_text()
+    seen.page.wait_for_function("""() => [...document.querySelectorAll('.briefkit input[type=text]')]
+        .some(box => box.value === '1,800 lb')""")
+    assert settled(seen.page) == before
+
+
+def test_a_typed_number_is_taken(seen):
+    box = control(seen.page, "Mass").locator("input[type=text]")
+    box.fill("1,700")
+    box.press("Enter")
+    seen.page.wait_for_function("document.querySelector('.jp-Notebook').innerText.split('1,700 lb, Hp').length === 5")
+    assert box.input_value() == "1,700 lb"
+
+
+def test_running_the_cells_again_leaks_no_models(seen):
+    """ipywidgets frees nothing by itself: 26 models a panel were lost at each re-run in the trial."""
+
+    def models() -> int:
+        return int(words(seen.page).split("models ")[-1].split()[0])
+
+    counts = []
+    for again in range(3):
+        for index in range(5):
+            seen.run_cell_again(index)
+        settled(seen.page)
+        counts.append(models())
+        assert again == 0 or counts[-1] == counts[0]
+
+
+def test_nothing_was_said_to_the_console_and_nothing_left_the_machine(seen):
+    assert seen.outside == []
+    assert seen.console == []
