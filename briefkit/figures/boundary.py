@@ -62,7 +62,7 @@ class BoundaryFigure:
             raise ValueError(f"1 to {len(theme.DASHES)} banks can be told apart, not {banks}")
         area = self._area = canvas.plane((0.0, 1.0, 0.0, 1.0), theme.WIDTH, _HEIGHT, _ROOM)
         self._words = (x_words, speed_words)
-        self._band: list[bqplot.Lines] = []
+        self._band = [canvas.patch(area, theme.BAND)]
         self._middle = Curve(area, theme.GREY, theme.THIN, "dotted")
         self._manual = Curve(area, theme.INK, theme.HEAVY)
         self._turns = [Curve(area, theme.COMPUTED, theme.LINE, theme.DASHES[index]) for index in range(banks)]

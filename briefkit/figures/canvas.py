@@ -96,10 +96,10 @@ def figure(area: Plane, room: Margins, marks: Sequence[Any], axes: Sequence[bqpl
 
 
 def ticks(low: float, high: float, about: int = 5) -> Floats:
-    """Round numbers (1, 2, 2.5 or 5 times a power of ten apart) from `low` to `high`, about `about` of them."""
-    rough = (high - low) / max(about, 1)
+    """Round numbers (1, 2 or 5 times a power of ten apart) from `low` to `high`, about `about` of them."""
+    rough = 1.15 * (high - low) / max(about, 1)  # rather fewer than more
     power = 10.0 ** math.floor(math.log10(rough))
-    step = next(factor * power for factor in (1.0, 2.0, 2.5, 5.0, 10.0) if factor * power >= rough * (1.0 - 1e-9))
+    step = min((factor * power for factor in (1.0, 2.0, 5.0, 10.0)), key=lambda size: abs(math.log(size / rough)))
     first = math.ceil(low / step - 1e-9)
     last = math.floor(high / step + 1e-9)
     return np.round(np.arange(first, last + 1) * step, 10)

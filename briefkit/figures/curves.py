@@ -21,7 +21,7 @@ class Curve:
 
     def __init__(self, area: Plane, colour: str, width: float = theme.LINE, dash: str = "solid") -> None:
         self._area, self._colour, self._width, self._dash = area, colour, width, dash
-        self.marks: list[bqplot.Lines] = []
+        self.marks = [canvas.lines(area, colour, width, dash)]
 
     def update(self, x: ArrayLike, y: ArrayLike, dash: str | None = None) -> bool:
         """New data; True if a mark had to be added (the figure then needs its list of marks again)."""
