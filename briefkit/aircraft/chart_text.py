@@ -43,6 +43,7 @@ class VneTable:
     speed_unit: str
     height_unit: str
     rows: tuple[tuple[str, ...], ...]
+    or_less: bool = False  # the first column says so
 
 
 @dataclass(frozen=True)
@@ -98,6 +99,7 @@ def read_vne(document: Document, key: str, text: str) -> VneTable | None:
         speed_unit,
         height_unit,
         shown,
+        across == "mass" and labels[0].startswith(("<=", "≤")),
     )
 
 

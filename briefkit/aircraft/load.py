@@ -240,7 +240,8 @@ def _calibration(table: CalibrationTable, rows: chart_text.CalibrationRows | Non
 
 
 def _vne(table: PowerOnTable, chart: chart_text.VneTable) -> VneChart:
-    shape = (len(chart.heights), 1, len(chart.columns)) if chart.across == "mass" else (len(chart.heights), -1, 1)
+    down, across = len(chart.heights), len(chart.columns)
+    shape = (down, 1, across, 1) if chart.across == "mass" else (down, max(across, 1), 1, 1)
     return VneChart(
         heights=chart.heights,
         temperatures=chart.columns if chart.across == "temperature" else (),
@@ -253,4 +254,5 @@ def _vne(table: PowerOnTable, chart: chart_text.VneTable) -> VneChart:
         covers_temperatures=table.covers_temperatures,
         reason=table.reason,
         entry_reason=table.entry_reason,
+        or_less=chart.or_less,
     )

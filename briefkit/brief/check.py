@@ -165,7 +165,8 @@ def _aircraft(path: Path) -> tuple[Aircraft | None, list[Finding]]:
     if not aircraft.calibration.in_manual:
         text = "no calibration in the manual: indicated is taken as calibrated, give or take the spread"
         found.append(Finding(Level.NOTE, f"{place}: calibration", text))
-    outside = int(np.sum(np.isnan(aircraft.calibration.to_calibrated(aircraft.vne.speeds))))
+    cells = aircraft.vne.speeds[np.isfinite(aircraft.vne.speeds)]
+    outside = int(np.sum(np.isnan(aircraft.calibration.to_calibrated(cells))))
     if outside:
         text = f"{outside} cells lie outside the airspeed calibration: no answer is computed from them"
         found.append(Finding(Level.NOTE, f"{place}: vne.power_on.chart", text))

@@ -66,10 +66,10 @@ def row_on_chart(aircraft: Aircraft, row: ReductionRow) -> str:
     chart, shown, at, point = aircraft.vne, aircraft.units, row.at, row.answer.chart_point
     hand = work_by_hand(aircraft, at, row.answer)
     if chart.temperatures:
-        columns = chart.speeds[:, :, 0]
+        columns = chart.speeds[:, :, 0, 0]
         names = [words.temperature(oat) for oat in chart.temperatures]
     else:
-        columns = chart.speeds[:, 0, :]
+        columns = chart.speeds[:, 0, :, 0]
         names = [units.show(mass, "mass", shown.mass) for mass in chart.masses] or ["VNE"]
     kind = shown.speed_label()
     x_words = f"Pressure altitude, {shown.height}"

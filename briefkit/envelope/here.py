@@ -6,6 +6,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from briefkit import units
+from briefkit.aircraft.chart import density_altitude_of
 from briefkit.aircraft.model import Aircraft
 from briefkit.envelope.condition import Conditions
 from briefkit.envelope.speeds import true_of
@@ -29,7 +30,7 @@ def chart_mass(aircraft: Aircraft, many: Conditions) -> Floats:
 
 def indicated_vne(aircraft: Aircraft, many: Conditions) -> Floats:
     """The manual's power-on VNE here [m/s indicated], by the manual's reading rule; NaN off the chart."""
-    return aircraft.vne.indicated(many.pressure_altitude, many.oat, chart_mass(aircraft, many))
+    return aircraft.vne.indicated(many.pressure_altitude, many.oat, chart_mass(aircraft, many), many.rotor_speed)
 
 
 def true_airspeed(aircraft: Aircraft, indicated: Floats, many: Conditions) -> Floats:
@@ -52,6 +53,15 @@ def refuse(aircraft: Aircraft, one: Conditions) -> None:
     for refusal in _refusals(aircraft, one):
         raise refusal
     indicated = float(indicated_vne(aircraft, one)[0])
+    if np.isnan(indicated):
+        shown = aircraft.units
+        parts = (
+            units.show(float(one.pressure_altitude[0]), "height", shown.height),
+            units.show(float(one.oat[0]), "temperature", "°C"),
+            units.show(float(one.mass[0]), "mass", shown.mass),
+        )
+        permitted, source = "where the chart prints a VNE", aircraft.vne.source
+        raise OutsideChart("this part of the chart", ", ".join(parts), "", permitted, source, Reason.OUTSIDE_CHART)
     raise aircraft.calibration.refuse(indicated, aircraft.units.speed)
 
 
@@ -89,10 +99,14 @@ def _refusals(aircraft: Aircraft, one: Conditions) -> list[Refusal]:
     """Every axis and limit passed, the chart's first."""
     limits, chart, shown = aircraft.limits, aircraft.vne, aircraft.units
     height, oat, mass = float(one.pressure_altitude[0]), float(one.oat[0]), float(one.mass[0])
+    rows = ("pressure altitude", height)
+    if chart.density_altitude:
+        rows = ("density altitude", float(density_altitude_of(one.pressure_altitude, one.oat)[0]))
     axes = (
-        ("pressure altitude", height, "height", shown.height, chart.heights),
+        (*rows, "height", shown.height, chart.heights),
         ("outside air temperature", oat, "temperature", "°C", chart.temperatures),
-        ("mass", mass, "mass", shown.mass, chart.masses[-1:] and (-np.inf, chart.masses[-1])),
+        ("mass", mass, "mass", shown.mass, chart.masses[-1:] and (chart.lowest_mass, chart.masses[-1])),
+        ("rotor speed", float(one.rotor_speed[0]), "ratio", "%", chart.rotor_speeds),
     )
     found: list[Refusal] = []
     for name, value, quantity, unit, axis in axes:

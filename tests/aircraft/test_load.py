@@ -60,7 +60,7 @@ def test_the_2t_is_read_as_typed(two_t: Aircraft) -> None:
     assert not rotor.lift_slope.known
     assert two_t.vne.reading is ReadingRule.INTERPOLATE
     assert two_t.vne.rows[5] == ("8,000", "95", "87", "79", "70")
-    assert two_t.vne.speeds[4, 2, 0] == pytest.approx(79 * KNOT)
+    assert two_t.vne.speeds[4, 2, 0, 0] == pytest.approx(79 * KNOT)
     assert two_t.vne_off.constant.value == pytest.approx(85 * KNOT)
     assert two_t.calibration.to_calibrated(np.array([40.0 * KNOT]))[0] == pytest.approx(44 * KNOT)
     assert "Do not use for flight" in two_t.invented
@@ -226,7 +226,7 @@ def test_a_chart_over_height_and_mass(typed: str, tmp_path: Path) -> None:
     vne = load(tmp_path, typed[:start] + rows + typed[end:]).vne
     assert vne.temperatures == ()
     assert vne.masses == pytest.approx((1600 * POUND, 1800 * POUND, 2006 * POUND))
-    assert vne.speeds.shape == (2, 1, 3)
+    assert vne.speeds.shape == (2, 1, 3, 1)
     assert vne.indicated(0.0, 288.15, 1500 * POUND) == pytest.approx(112 * KNOT)  # "or less" holds below its column
     assert vne.indicated(5000 * FOOT, 288.15, 2006 * POUND) == pytest.approx(87 * KNOT)
 
@@ -234,7 +234,7 @@ def test_a_chart_over_height_and_mass(typed: str, tmp_path: Path) -> None:
 def test_a_chart_over_height_alone(typed: str, tmp_path: Path) -> None:
     start, end = typed.index("ft \\ degC"), typed.index("'''\n\n[vne.power_off]")
     vne = load(tmp_path, typed[:start] + "ft    kt indicated\n0   112\n10,000   69\n" + typed[end:]).vne
-    assert (vne.temperatures, vne.masses, vne.speeds.shape) == ((), (), (2, 1, 1))
+    assert (vne.temperatures, vne.masses, vne.speeds.shape) == ((), (), (2, 1, 1, 1))
     assert vne.rows == (("ft", "VNE"), ("0", "112"), ("10,000", "69"))
 
 
