@@ -14,6 +14,7 @@ from pathlib import Path
 from typing import Final
 
 from briefkit.brief.export import compose, contents
+from briefkit.brief.fit import complaint
 from briefkit.brief.harden import harden
 from briefkit.brief.identity import BRIEF_FILE, Brief, load_brief
 from briefkit.brief.pages import CrewPage, render_plain
@@ -29,7 +30,7 @@ INDEX: Final = "index.html"
 class Result:
     """What became of one brief: `brief` its folder, `page` the file written (or left), seconds, bytes, the error.
 
-    `title` is the page's own heading ("" where the typed files could not be read); `notes` what its cells said.
+    `title` is the page's own heading ("" where the typed files could not be read); `notes` what its author should hear.
     """
 
     brief: Path
@@ -118,7 +119,8 @@ async def _build_one(folder: Path, out: Path, taken: dict[str, Path]) -> Result:
         write_page(target.with_suffix(".readback.html"), sheet)
     except BriefkitError as error:
         return Result(folder, target, time.monotonic() - start, error=str(error), title=title, mark=mark)
-    return Result(folder, target, time.monotonic() - start, size, title=title, mark=mark, notes=ran.notes)
+    notes = tuple(note for note in (complaint(page), *ran.notes) if note)
+    return Result(folder, target, time.monotonic() - start, size, title=title, mark=mark, notes=notes)
 
 
 def _target(brief: Brief, folder: Path, out: Path, taken: dict[str, Path]) -> Path:

@@ -7,7 +7,7 @@ import re
 import warnings
 from collections import Counter
 from collections.abc import Callable, Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Any
 
@@ -15,7 +15,10 @@ import html5lib
 import pypdf
 import pytest
 
+from briefkit.brief import fit
 from briefkit.brief.build import build
+from briefkit.brief.harden import harden
+from briefkit.brief.pages import Section, render
 
 pytestmark = [pytest.mark.browser, pytest.mark.slow]
 
@@ -190,6 +193,45 @@ def test_the_crews_sheet_is_one_a5_sheet_in_type_that_can_be_read(show, exported
     assert found[9.0] == pytest.approx(
         len("DRAFT: not for crews | NB-2T-001 rev 0 | expires 29 Feb 2032page 1 of 14"), abs=12
     )
+
+
+FULLER = {
+    "as it is": lambda front: front,
+    "more masses": lambda front: (front[0], with_rows(front[1], 4), *front[2:]),
+    "a larger block": lambda front: (with_rows(front[0], 2), *front[1:]),
+    "long sentences": lambda front: (*front[:3], replace(front[3], after=("Say it again, and more slowly. " * 12,))),
+    "long cells": lambda front: (front[0], with_words(front[1]), *front[2:]),
+    "far too much": lambda front: (with_rows(front[0], 6), with_rows(front[1], 8), *front[2:]),
+}
+
+
+def with_rows(part: Section, more: int) -> Section:
+    return replace(part, grid=replace(part.grid, rows=(*part.grid.rows, *(part.grid.rows[0],) * more)))
+
+
+def with_words(part: Section) -> Section:
+    rows = tuple((*row[:-1], row[-1] + ", and in any case no more than that") for row in part.grid.rows)
+    return replace(part, grid=replace(part.grid, rows=rows))
+
+
+@pytest.mark.parametrize("case", FULLER, ids=str)
+def test_the_author_hears_when_sheet_1_is_more_than_one_sheet(chromium, exported, tmp_path, case):
+    """The estimate needs no browser; here a browser says how good it is: a line and a half too long at most."""
+    crew = replace(exported.crew, front=FULLER[case](exported.crew.front))
+    file = tmp_path / "page.html"
+    file.write_text(harden(render(crew, ())), encoding="utf-8")
+    context = chromium.new_context(viewport={"width": round(fit.WIDTH / 72 * 96), "height": 844}, offline=True)
+    page = context.new_page()
+    page.goto(file.as_uri())
+    sheets = pypdf.PdfReader(io.BytesIO(page.pdf(format="A5"))).pages
+    page.emulate_media(media="print")
+    measured = 0.75 * page.evaluate("document.querySelector('.front').getBoundingClientRect().height")
+    context.close()
+    assert -4.0 <= fit.height(crew) - measured <= 20.0
+    one_sheet = "Which one is it?" in sheets[1].extract_text()
+    assert one_sheet == (measured <= fit.HEIGHT)
+    if not one_sheet:
+        assert "longer than one A5 sheet" in fit.complaint(crew)
 
 
 @pytest.mark.parametrize("paper", PAPERS)
