@@ -222,6 +222,11 @@ class Case:
         """Batch length."""
         return int(self.speed.size)
 
+    def spread(self, *others: Values) -> Case:
+        """The same with one member spread over the batch length of others; ValueError if lengths differ."""
+        size = np.broadcast_shapes((self.size,), *(np.shape(other) for other in others))
+        return Case(*(np.broadcast_to(getattr(self, field.name), size).copy() for field in fields(self)))
+
     def take(self, members: NDArray[np.intp] | NDArray[np.bool_]) -> Case:
         """The members given, in that order."""
         return Case(*(getattr(self, field.name)[members] for field in fields(self)))

@@ -19,9 +19,8 @@ Array = NDArray[np.float64]
 
 FIRST_SIGNS: Final = np.radians(12.0)  # retreating-tip angle, NACA WR L-110 and TR 840
 LIMIT_OF_CONTROL: Final = np.radians(16.0)  # the same; figure from memory
-LEAST_SPEED: Final = (
-    0.2  # of the tip speed: slower, by the reversed flow, angles run to 90 degrees and forces to nothing
-)
+# By the tip speed. Slower, near reversed flow, angles run to 90 degrees and forces to nothing.
+LEAST_SPEED: Final = 0.2
 
 
 @dataclass(frozen=True, eq=False)

@@ -45,14 +45,18 @@ class Controls:
         tilt, turn = flight.motion.tilt, flight.case.wind_azimuth
         return cls(flight.t0, flight.t1c, flight.t1s, tilt * np.cos(turn), tilt * np.sin(turn))
 
-    def columns(self, case: Case) -> Array:
-        """(batch, 9) columns of `Motion` in wind axes: pitch, tilt into the wind, climb; the rest zero."""
+    def spread(self, case: Case) -> tuple[Case, Array]:
+        """The case over the batch length of the controls, and (batch, 9) columns of `Motion` in wind axes.
+
+        Of the columns pitch, tilt into the wind and climb are set, the rest are zero.
+        """
         values = (self.t0, self.t1c, self.t1s, self.shaft_c, self.shaft_s)
+        case = case.spread(*values)
         t0, t1c, t1s, shaft_c, shaft_s = (np.broadcast_to(np.asarray(v, float), (case.size,)) for v in values)
         t1c, t1s = turned(t1c, t1s, -case.wind_azimuth)
         tilt, _ = turned(shaft_c, shaft_s, -case.wind_azimuth)
         zero = np.zeros(case.size)
-        return np.stack([t0, t1c, t1s, zero, zero, zero, zero, tilt, case.climb], axis=1)
+        return case, np.stack([t0, t1c, t1s, zero, zero, zero, zero, tilt, case.climb], axis=1)
 
 
 def trim(
@@ -93,8 +97,8 @@ def held(
     air straight up. The weight in the state is not used: `ct` tells what thrust there is. Flapping from the shaft is in
     `hub_b1c`, `hub_b1s`; `disc_tilt` is that of the disc. Members, refusals and errors as for `trim`.
     """
-    case = case_of(rotor, state, gust)
-    return solved(rotor, state, HELD, Model.of(rotor, inflow, section, grid), case, controls.columns(case))
+    case, columns = controls.spread(case_of(rotor, state, gust))
+    return solved(rotor, state, HELD, Model.of(rotor, inflow, section, grid), case, columns)
 
 
 def torque_free(
@@ -115,7 +119,8 @@ def torque_free(
     model, case = Model.of(rotor, inflow, section, grid), case_of(rotor, state)
     if controls is None:
         return solved(rotor, state, GLIDING, model, case)
-    return solved(rotor, state, WINDMILLING, model, case, controls.columns(case))
+    case, columns = controls.spread(case)
+    return solved(rotor, state, WINDMILLING, model, case, columns)
 
 
 @dataclass(frozen=True, eq=False)
@@ -137,8 +142,7 @@ def vertical_gust(before: Trim, gust: Values) -> Gust:
 
     A sharp-edged gust over the whole disc, the aircraft not yet moving with it, steady aerodynamics.
     """
-    case = case_of(before.rotor, before.state, gust)
-    columns = Controls.of(before).columns(case)
+    case, columns = Controls.of(before).spread(case_of(before.rotor, before.state, gust))
     settled = solved(before.rotor, before.state, HELD, before.model, case, columns)
     disc = equations.disc_of(case, before.motion, before.model)
     gone = np.where(before.solved & settled.solved, 1.0, np.nan)

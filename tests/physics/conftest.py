@@ -59,18 +59,35 @@ MASS = {"2T": (590.0, 910.0), "3F": (1290.0, 2380.0), "4H": (2010.0, 3350.0)}  #
 StateOf = Callable[..., State]
 
 
-@pytest.fixture(params=list(ROTORS))
+@pytest.fixture(scope="session")
+def rotors() -> dict[str, Rotor]:
+    return ROTORS
+
+
+@pytest.fixture(scope="session")
+def masses() -> dict[str, tuple[float, float]]:
+    """Least and most mass [kg] by rotor."""
+    return MASS
+
+
+@pytest.fixture(scope="session", params=list(ROTORS))
 def name(request: pytest.FixtureRequest) -> str:
     """Each of the three rotors in turn."""
     return str(request.param)
 
 
-@pytest.fixture
+@pytest.fixture(scope="session")
 def rotor(name: str) -> Rotor:
     return ROTORS[name]
 
 
-@pytest.fixture
+@pytest.fixture(scope="session")
+def mass(name: str) -> tuple[float, float]:
+    """Least and most mass [kg] of the rotor in turn."""
+    return MASS[name]
+
+
+@pytest.fixture(scope="session")
 def state_of() -> StateOf:
     """A state at full rotor speed, sea level standard unless told otherwise."""
 
@@ -98,6 +115,6 @@ def read_reference(file: str) -> list[dict[str, str]]:
     return list(csv.DictReader(lines))
 
 
-@pytest.fixture
+@pytest.fixture(scope="session")
 def table() -> Callable[[str], list[dict[str, str]]]:
     return read_reference
