@@ -36,16 +36,21 @@ class Control(w.HBox):  # type: ignore[misc]  # ipywidgets carries no types
         with self.slider.hold_sync():
             self.slider.min, self.slider.max = min(self.low, number), max(self.high, number)
             self.slider.value = number
-        self.box.value = text_of(self.dial, number, self._aircraft)
+        self.box.value = typed_text(self.dial, number, self._aircraft)
 
     def read(self, text: str) -> float:
         """Typed text to a number in the dial's unit: "2,006 lb", or "2,006" alone. Raises `ReadingError`."""
         return read_number(self.dial, text)
 
 
+def typed_text(dial: Dial, number: float, aircraft: Aircraft) -> str:
+    """The number as one would type it: plain spaces."""
+    return text_of(dial, number, aircraft).replace("\u00a0", " ")
+
+
 def read_number(dial: Dial, text: str) -> float:
     """A number with one of its quantity's units, or bare in the dial's own; the speed's kind may stand behind it."""
-    typed = text.strip()
+    typed = text.replace("\u00a0", " ").strip()
     if dial.quantity == "speed":
         typed = typed.replace("KIAS", "kt").removesuffix(" IAS")
     try:

@@ -142,6 +142,8 @@ class Exhibit(w.VBox):  # type: ignore[misc]  # ipywidgets carries no types
 
     def close(self) -> None:
         """Close every model of this exhibit and stop following."""
+        if self.comm is None:  # never opened, or closed before: there is nothing to give back
+            return
         self._source.leave(self)
         closing.forget(self)
         closing.close_tree(self, *self._spare())

@@ -90,6 +90,8 @@ class LiveCondition(w.VBox):  # type: ignore[misc]  # ipywidgets carries no type
 
     def close(self) -> None:
         """Close every model of the panel; exhibits that followed say that they are no longer live."""
+        if self.comm is None:  # never opened, or closed before: there is nothing to give back
+            return
         for exhibit in list(self._followers):
             exhibit.mark_old("The live condition it followed was closed; run its cell again.")
         self._followers = []
@@ -131,7 +133,7 @@ class LiveCondition(w.VBox):  # type: ignore[misc]  # ipywidgets carries no type
         typed = control.box.value.strip()
         number = words.number_of(control.dial, self.condition)
         shown = words.text_of(control.dial, number, self.aircraft)
-        entered = "" if typed == shown else f" Entered: {typed}."
+        entered = "" if typed == shown.replace("\u00a0", " ") else f" Entered: {typed}."
         self._show(f"Refused: {why}.{entered} {control.dial.name} stays at {shown}.")
 
     def _show(self, refusal: str = "") -> None:

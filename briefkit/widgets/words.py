@@ -11,6 +11,9 @@ from briefkit.aircraft.model import Aircraft
 from briefkit.envelope.condition import Condition
 
 
+_TIE: Final = "\u00a0"  # a number and its unit stay on one line
+
+
 @dataclass(frozen=True)
 class Dial:
     """One number of a condition an instructor can turn: the SI field, what it is called, its quantity and unit."""
@@ -52,8 +55,8 @@ def text_of(dial: Dial, number: float, aircraft: Aircraft) -> str:
     if dial.quantity == "temperature" and number > 0.0 and not text.startswith("0"):
         text = "+" + text
     if dial.quantity == "speed":
-        return f"{text} {aircraft.units.speed_label()}"
-    return f"{text}°" if dial.unit == "°" else f"{text} {dial.unit}"
+        return f"{text}{_TIE}{aircraft.units.speed_label()}"
+    return f"{text}°" if dial.unit == "°" else f"{text}{_TIE}{dial.unit}"
 
 
 def inputs(aircraft: Aircraft, condition: Condition) -> tuple[tuple[str, str], ...]:
@@ -72,7 +75,7 @@ def inputs(aircraft: Aircraft, condition: Condition) -> tuple[tuple[str, str], .
     return tuple(pairs)
 
 
-_SHORT: Final = {"Mass": "", "Pressure altitude": "Hp ", "Outside air temperature": "", "Airspeed": ""}
+_SHORT: Final = {"Mass": "", "Pressure altitude": f"Hp{_TIE}", "Outside air temperature": "", "Airspeed": ""}
 
 
 def sentence(aircraft: Aircraft, condition: Condition) -> str:
@@ -86,8 +89,8 @@ def level_point(aircraft: Aircraft, mass: float, pressure_altitude: float, tempe
     degrees = round(units.from_si(temperature, "temperature", "°C"))
     sign = "+" if degrees > 0 else ""
     return (
-        f"{units.show(mass, 'mass', shown.mass)}, Hp {units.show(pressure_altitude, 'height', shown.height)}, "
-        f"{sign}{units.show_number(degrees)} °C"
+        f"{units.show(mass, 'mass', shown.mass)}, Hp{_TIE}{units.show(pressure_altitude, 'height', shown.height)}, "
+        f"{sign}{units.show_number(degrees)}{_TIE}°C"
     )
 
 
