@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 
 from briefkit import units
 from briefkit.aircraft.model import Aircraft
-from briefkit.envelope import search
+from briefkit.envelope import region
 from briefkit.envelope.condition import Condition, Conditions
 from briefkit.envelope.equivalent import equivalent_vnes
 from briefkit.envelope.spread import quick_onset_bands
@@ -110,9 +110,9 @@ def _permitted(aircraft: Aircraft, condition: Condition, over: Against, count: i
     """Evenly spaced permitted values [m or kg], ends included."""
     if over is Against.MASS:
         return np.linspace(aircraft.limits.min_mass.value, aircraft.limits.max_mass.value, count)
-    top = float(search.top_of(aircraft, condition.oat))
+    top = float(region.top_of(aircraft, condition.oat))
     if not math.isfinite(top):
-        low, high = (units.show(t, "temperature", "°C") for t in search.temperature_range(aircraft))
+        low, high = (units.show(t, "temperature", "°C") for t in region.temperature_range(aircraft))
         oat = condition.oat - units.ZERO_CELSIUS
         raise OutsideLimits(
             "outside air temperature", oat, "°C", f"{low} to {high}", aircraft.limits.source, Reason.OUTSIDE_LIMITS

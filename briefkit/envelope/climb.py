@@ -37,9 +37,16 @@ def climb_cost(aircraft: Aircraft, best: Best, climb: Floats, rotor_speed: Float
         return cost
     drag = aircraft.rotor.drag_area
     rotor = rotor_of(aircraft, drag_area=drag.value + drag.spread)
-    level = Conditions.si(mass=best.mass[asked], pressure_altitude=best.height[asked], oat=best.temperature[asked])
-    climbing = replace(level, climb=climb[asked] / rotor_speed[asked])
-    fast = best.vne[asked]
+    there = best.rotor_speed[asked]
+    level = Conditions.si(
+        mass=best.mass[asked],
+        pressure_altitude=best.height[asked],
+        oat=best.temperature[asked],
+        rotor_speed=there,
+    )
+    scale = rotor_speed[asked] / there
+    climbing = replace(level, climb=climb[asked] / scale)
+    fast = best.vne[asked] * there
     angle = tip_angle_at(rotor, level, fast)
     past, slow = fast, fast - _STEP
     miss_past = tip_angle_at(rotor, climbing, past) - angle
@@ -49,5 +56,5 @@ def climb_cost(aircraft: Aircraft, best: Best, climb: Floats, rotor_speed: Float
         slope = np.where(moved == 0.0, np.inf, (miss - miss_past) / np.where(moved == 0.0, 1.0, moved))
         past, miss_past, slow = slow, miss, slow - miss / slope
     reached = np.abs(tip_angle_at(rotor, climbing, slow) - angle) < _CLOSE
-    cost[asked] = np.where(reached, np.maximum(fast - slow, 0.0) * rotor_speed[asked], np.nan)
+    cost[asked] = np.where(reached, np.maximum(fast - slow, 0.0) * scale, np.nan)
     return cost

@@ -19,11 +19,12 @@ from numpy.typing import NDArray
 
 from briefkit import units
 from briefkit.aircraft.model import Aircraft
-from briefkit.envelope import here, search
+from briefkit.envelope import here, region, search
 from briefkit.envelope.climb import climb_cost
 from briefkit.envelope.condition import Condition, Conditions
 from briefkit.envelope.speeds import indicated_of
 from briefkit.errors import BeyondChart, NoTrim, OutsideCalibration, OutsideChart, Reason, SetBy
+from briefkit.physics import atmosphere
 
 Floats = NDArray[np.float64]
 Reasons = NDArray[np.object_]
@@ -38,6 +39,7 @@ class ChartPoint:
     pressure_altitude: float
     temperature: float
     mass: float
+    rotor_speed: float
     vne: float
 
 
@@ -72,6 +74,7 @@ class EquivalentVnes:
     point_altitude: Floats
     point_temperature: Floats
     point_mass: Floats
+    point_rotor_speed: Floats
 
 
 def equivalent_vne(aircraft: Aircraft, condition: Condition) -> EquivalentVne:
@@ -83,18 +86,17 @@ def equivalent_vne(aircraft: Aircraft, condition: Condition) -> EquivalentVne:
     """
     conditions = Conditions.of(condition)
     here.refuse(aircraft, conditions)
-    answers = equivalent_vnes(aircraft, conditions)
+    answers = _answers(aircraft, conditions, report=True)
     reason = answers.reason[0]
     if reason:
         raise _refusal(aircraft, condition, reason)
     ias = float(answers.ias[0])
-    point = ChartPoint(
-        float(answers.point_altitude[0]),
-        float(answers.point_temperature[0]),
-        float(answers.point_mass[0]),
-        _in_unit(aircraft, aircraft.vne.indicated(
-            answers.point_altitude[0], answers.point_temperature[0], answers.point_mass[0])),
-    )  # fmt: skip
+    height, oat, mass, k = (
+        float(array[0])
+        for array in (answers.point_altitude, answers.point_temperature, answers.point_mass, answers.point_rotor_speed)
+    )
+    there = units.from_si(float(aircraft.vne.indicated(height, oat, mass, k)), "speed", aircraft.units.speed)
+    point = ChartPoint(height, oat, mass, k, round(there, 2))
     text = f"{units.show_number(units.round_down(ias))} {aircraft.units.speed_label()}"
     return EquivalentVne(
         ias, answers.unit, text, float(answers.below_vne[0]), float(answers.upper[0]), answers.set_by[0], point
@@ -102,23 +104,31 @@ def equivalent_vne(aircraft: Aircraft, condition: Condition) -> EquivalentVne:
 
 
 def equivalent_vnes(aircraft: Aircraft, conditions: Conditions | Iterable[Condition]) -> EquivalentVnes:
-    """The same for a batch; a refused member has NaN and a `Reason`, and disturbs no other."""
+    """The same for a batch; a refused member has NaN and a `Reason`, and disturbs no other.
+
+    The chart point of each is the fastest one, not the one nearest the day's temperature that a single call reports.
+    """
     many = conditions if isinstance(conditions, Conditions) else Conditions.of(conditions)
+    return _answers(aircraft, many, report=False)
+
+
+def _answers(aircraft: Aircraft, many: Conditions, report: bool) -> EquivalentVnes:
     reason = here.reasons(aircraft, many)
     vne = np.where(reason == Reason.NONE, here.indicated_vne(aircraft, many), np.nan)
     level = (many.load_factor <= 1.0 + 1e-12) & (np.abs(many.rotor_speed - 1.0) <= 1e-12)
     ask = np.nonzero((reason == Reason.NONE) & ~level)[0]
     ias, upper = vne.copy(), vne.copy()
-    point = [many.pressure_altitude.copy(), many.oat.copy(), here.chart_mass(aircraft, many)]
+    rotor = many.rotor_speed.copy() if aircraft.vne.rotor_speeds else np.ones(len(many))
+    point = [many.pressure_altitude.copy(), many.oat.copy(), here.chart_mass(aircraft, many), rotor]
     set_by = here.filled(len(many), SetBy.MANUAL_VNE)
     if len(ask):
         asked = many.take(ask)
-        found, why, best = _read(aircraft, asked, vne[ask], LOAD_EXPONENT)
+        found, why, best = _read(aircraft, asked, vne[ask], LOAD_EXPONENT, report)
         lower = (why == Reason.NONE) & (found < vne[ask])
         ias[ask], reason[ask] = found, why
-        upper[ask] = _read(aircraft, asked, vne[ask], 1.0)[0]
+        upper[ask] = _read(aircraft, asked, vne[ask], 1.0, False)[0]
         set_by[ask[lower]] = SetBy.EQUIVALENT
-        for array, value in zip(point, (best.height, best.temperature, best.mass), strict=True):
+        for array, value in zip(point, (best.height, best.temperature, best.mass, best.rotor_speed), strict=True):
             array[ask[lower]] = value[lower]
     refused = reason != Reason.NONE
     ias, upper = (np.where(refused, np.nan, array) for array in (ias, upper))
@@ -138,6 +148,7 @@ def equivalent_vnes(aircraft: Aircraft, conditions: Conditions | Iterable[Condit
         point_altitude=point[0],
         point_temperature=point[1],
         point_mass=point[2],
+        point_rotor_speed=point[3],
     )
 
 
@@ -159,8 +170,7 @@ def covered_banks(aircraft: Aircraft, conditions: Conditions) -> tuple[Floats, R
     """Covered banks of a batch [rad] with their reasons; the load factor of each condition is left out."""
     level = replace(conditions, load_factor=np.ones(len(conditions)))
     reason = here.reasons(aircraft, level)
-    if not aircraft.vne.temperatures and not aircraft.vne.covers_temperatures:
-        reason[reason == Reason.NONE] = Reason.NO_TEMPERATURES
+    reason[_colder_than_standard(aircraft, level) & (reason == Reason.NONE)] = Reason.NO_TEMPERATURES
     load = np.full(len(level), np.inf)
     for day in _days(level):
         warmest = day.oat / day.rotor_speed**2
@@ -177,19 +187,18 @@ def covered_banks(aircraft: Aircraft, conditions: Conditions) -> tuple[Floats, R
     return np.where(reason == Reason.NONE, bank, np.nan), reason
 
 
-def _read(aircraft: Aircraft, many: Conditions, vne: Floats, exponent: float) -> tuple[Floats, Reasons, search.Best]:
+def _read(
+    aircraft: Aircraft, many: Conditions, vne: Floats, exponent: float, report: bool
+) -> tuple[Floats, Reasons, search.Best]:
     """Indicated speed [m/s] at the equivalent level flight, its reasons, and the chart points; never above `vne`."""
     reason = here.filled(len(many), Reason.NONE)
-    if not aircraft.vne.temperatures and not aircraft.vne.covers_temperatures:
-        reason[:] = Reason.NO_TEMPERATURES
-        nothing = np.full(len(many), np.nan)
-        return nothing, reason, search.Best(nothing, nothing, nothing, nothing)
+    reason[_colder_than_standard(aircraft, many)] = Reason.NO_TEMPERATURES
     answer, kept = vne.copy(), None
     for day in _days(many):
         k = day.rotor_speed
         loading = day.load_factor**exponent * (day.mass + day.mass_spread) / (day.density * k**2)
         warmest = day.oat / k**2
-        best = search.fastest(aircraft, loading, warmest, day.oat)
+        best = search.fastest(aircraft, loading, warmest, day.oat, report)
         reason[np.isneginf(best.vne) & (reason == Reason.NONE)] = Reason.BEYOND_CHART
         true = np.where(np.isneginf(best.vne), np.nan, best.vne * k) - climb_cost(aircraft, best, day.climb, k)
         reason[np.isnan(true) & (reason == Reason.NONE)] = Reason.NO_TRIM
@@ -208,15 +217,19 @@ def _read(aircraft: Aircraft, many: Conditions, vne: Floats, exponent: float) ->
     return np.where(reason == Reason.NONE, answer, np.nan), reason, kept
 
 
+def _colder_than_standard(aircraft: Aircraft, many: Conditions) -> NDArray[np.bool_]:
+    """Where a chart that does not say its temperatures cannot be used: its points lie on the standard day."""
+    if not region.standard_day_only(aircraft):
+        return np.zeros(len(many), dtype=bool)
+    standard = np.asarray(atmosphere.temperature_at(many.pressure_altitude))
+    return many.oat - many.oat_spread < standard - 1e-6
+
+
 def _days(many: Conditions) -> list[Conditions]:
     """The temperature as read, and both ends of its spread where one is stated."""
     if not np.any(many.oat_spread):
         return [many]
     return [replace(many, oat=many.oat + side * many.oat_spread) for side in (0.0, -1.0, 1.0)]
-
-
-def _in_unit(aircraft: Aircraft, speed: Floats) -> float:
-    return round(float(units.from_si(float(speed), "speed", aircraft.units.speed)), 2)
 
 
 def _refusal(
@@ -234,7 +247,7 @@ def _refusal(
         return NoTrim("climb", climb, "ft/min", "a climb the rotor model can fly here", "rotor model", reason)
     percent = f"rotor {condition.rotor_speed * 100.0:.4g} %"
     if reason is Reason.TOO_COLD:
-        coldest = search.temperature_range(aircraft)[0] - units.ZERO_CELSIUS
+        coldest = region.temperature_range(aircraft)[0] - units.ZERO_CELSIUS
         needs = condition.oat / condition.rotor_speed**2 - units.ZERO_CELSIUS
         permitted = (
             f"the chart ends at {units.show_number(coldest)} °C; at {percent} this needs {units.show_number(needs)} °C"

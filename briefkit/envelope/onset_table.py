@@ -17,7 +17,7 @@ from numpy.typing import NDArray
 
 from briefkit import units
 from briefkit.aircraft.model import Aircraft
-from briefkit.envelope import search
+from briefkit.envelope import region
 from briefkit.envelope.condition import Conditions
 from briefkit.envelope.onset import FIRST_SIGNS, LIMIT_OF_CONTROL, repeat_rotor
 from briefkit.envelope.solution import rotor_of
@@ -96,7 +96,7 @@ def onset_table(aircraft: Aircraft) -> OnsetTable:
 
 
 def _make(aircraft: Aircraft) -> OnsetTable:
-    low, high = search.temperature_range(aircraft)
+    low, high = region.temperature_range(aircraft)
     slow, fast = (end.value for end in aircraft.limits.rotor_on)
     temperatures = _nodes(low / max(fast, 1.0) ** 2 - 2.0, high / min(slow, 1.0) ** 2 + 2.0, _TEMPERATURE_NODES)
     fields, changes = _variants(aircraft)

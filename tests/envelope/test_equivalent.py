@@ -276,7 +276,7 @@ def test_a_climb_can_only_lower_the_answer(two_t):
 def test_climb_cost_keeps_the_tip_angle(two_t):
     """The definition, solved again from the model: the same angle level at V' and climbing at V''."""
     many = Conditions.si(mass=two_t.limits.max_mass.value, pressure_altitude=2890.0, oat=293.15)
-    best = Best(np.array([44.9]), many.pressure_altitude, many.oat, many.mass)
+    best = Best(np.array([44.9]), many.pressure_altitude, many.oat, many.mass, np.array([1.0]))
     cost = climb_cost(two_t, best, np.array([2.54]), np.array([1.0]))
     drag = two_t.rotor.drag_area
     rotor = rotor_of(two_t, drag_area=drag.value + drag.spread)
