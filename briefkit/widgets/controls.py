@@ -7,7 +7,7 @@ import numpy as np
 
 from briefkit import units
 from briefkit.aircraft.model import Aircraft
-from briefkit.envelope import search
+from briefkit.envelope import region
 from briefkit.errors import ReadingError
 from briefkit.widgets.words import Dial, text_of
 
@@ -66,7 +66,7 @@ def read_number(dial: Dial, text: str) -> float:
 def ranges(aircraft: Aircraft) -> dict[str, tuple[float, float]]:
     """The ends of each slider in the dial's unit, by field: the manual's limits and the chart's axes."""
     limits, chart, shown = aircraft.limits, aircraft.vne, aircraft.units
-    coldest, hottest = search.temperature_range(aircraft)
+    coldest, hottest = region.temperature_range(aircraft)
     hottest = min(hottest, units.read("55 degC", "temperature"))  # the hottest a condition may state
     low_k, high_k = limits.rotor_on
     top = min(limits.max_altitude.value, chart.heights[-1])
