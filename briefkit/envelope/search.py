@@ -173,9 +173,9 @@ def _own_row(
     k: Floats,
 ) -> _Points:
     """Points of one row a member; a member without a temperature (NaN) has none."""
-    top = region.top_of(aircraft, oat)
-    with np.errstate(invalid="ignore"):
-        allowed = np.isfinite(top) & (oat / k**2 <= warmest * (1.0 + SLACK))
+    stated = np.isfinite(oat)
+    top = np.where(stated, region.top_of(aircraft, np.where(stated, oat, units.SEA_LEVEL_TEMPERATURE)), -np.inf)
+    allowed = np.isfinite(top) & (np.where(stated, oat, np.inf) / k**2 <= warmest * (1.0 + SLACK))
     query = query[allowed]
     loading, oat, mass, k = (values[allowed] for values in (loading, oat, mass, k))
     pressure = mass / (loading * k**2) * units.GAS_CONSTANT * oat
