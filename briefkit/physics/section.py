@@ -105,9 +105,10 @@ class Naca0012:
 
     Lift is the larger of the closed form above and a flat plate's 1.15 sin(2 alpha); with the air from the trailing
     edge it grows by .1 a degree to .7 at most. Drag is the closed form to 18 degrees and the plate's
-    1.03 - 1.02 cos(2 alpha) from 26, with a smooth change between. Three things differ from the forms as printed, for
-    continuity and sense: lift is held above Mach 0.85, the smaller drag-rise coefficient above Mach 0.725 (a step
-    down) is not used, and the drag rise stops at the plate's drag at 26 degrees. Against a smooth section at rotor
+    1.03 - 1.02 cos(2 alpha) from 26, with a smooth change between. Four things differ from the forms as printed, for
+    continuity and sense: above Mach 0.725 the slope falls by .744 from where it stood (printed .677 - .744 M: a step of
+    .0003), lift is held above Mach 0.85, drag starts to rise at 17 - 23.4 M degrees or 0 with one coefficient at any
+    Mach number (printed: a smaller one, a step down, above 0.725), and stops at the plate's drag at 26 degrees. Against a smooth section at rotor
     Reynolds numbers the maximum lift is low and the drag high, which is the safe side.
     """
 
@@ -135,7 +136,7 @@ def _attached_and_stalling(size: Array, mach: Array) -> tuple[Array, Array]:
     slope, departure, loss, power = _lift_constants(mach)
     lift = slope * size - loss * np.maximum(size - departure, 0.0) ** power
     drag = 0.0081 + size * (-350.0 + size * (396.0 + size * (-63.3 + size * 3.66))) * 1e-6
-    divergence = np.where(mach < CRITICAL, 17.0 - 23.4 * mach, 0.0)
+    divergence = np.maximum(17.0 - 23.4 * mach, 0.0)
     drag += 0.00066 * np.maximum(size - divergence, 0.0) ** 2.54
     most = 1.03 - 1.02 * np.cos(np.radians(2.0 * DEEP_AT))
     return lift, np.minimum(drag, most) + 21.0 * np.maximum(mach - CRITICAL, 0.0) ** 3.2
@@ -146,7 +147,7 @@ def _lift_constants(mach: Array) -> tuple[Array, Array, Array, Array]:
     held = np.minimum(mach, LAST_LIFT_MACH)
     below = np.minimum(held, CRITICAL)
     subsonic = 0.1 / np.sqrt(1.0 - below * below) - 0.01 * below
-    slope = np.where(held < CRITICAL, subsonic, 0.677 - 0.744 * held)
+    slope = subsonic - 0.744 * np.maximum(held - CRITICAL, 0.0)
     return slope, 15.0 - 16.0 * below, 0.0233 + 0.342 * below**7.15, 2.05 - 0.95 * below
 
 

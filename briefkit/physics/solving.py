@@ -157,8 +157,8 @@ def _within_range(case: Case, way: Way) -> NDArray[np.bool_]:
     """
     finite = np.isfinite(np.stack([getattr(case, part.name) for part in fields(case)])).all(axis=0)
     hover = np.sqrt(np.where(case.weight > 0.0, case.weight, np.nan) / 2.0)
-    sinking = case.speed * np.sin(case.climb) < -LARGEST_DESCENT * hover
-    slow = case.speed * np.cos(case.climb) < EDGEWISE * hover
+    sinking = case.speed * np.sin(case.climb) < -1.3 * LARGEST_DESCENT * hover
+    slow = case.speed * np.cos(case.climb) < 0.8 * EDGEWISE * hover
     good = (
         (case.weight > 0.0)
         & (case.weight <= 1.1 * LARGEST_BLADE_LOADING * case.solidity)
@@ -208,8 +208,8 @@ def _report(rotor: Rotor, state: State, case: Case, found: Found, model: Model) 
         hub_b1s=hub_b1s,
         inflow=axial + induced,
         induced_velocity=induced * np.asarray(state.tip_speed),
-        kx=kx,
-        ky=ky,
+        kx=kx * blank,
+        ky=ky * blank,
         mu=mu,
         ct=forces[:, 0],
         ct_sigma=forces[:, 0] / case.solidity,

@@ -14,7 +14,7 @@ from briefkit.physics.rotor import Rotor, State
 from briefkit.physics.trim import Controls, Trim, held, trim
 
 Array = NDArray[np.float64]
-REVOLUTIONS = 9  # flapping settles by a factor of ten in each
+REVOLUTIONS = 7  # flapping settles by a factor of ten in each
 
 
 class Blade:
@@ -67,7 +67,7 @@ def first_harmonics(rotor: Rotor, flight: Trim) -> tuple[float, float, float]:
 
     last = 2.0 * np.pi * (REVOLUTIONS - 1) + 2.0 * np.pi * np.arange(72) / 72.0
     end = 2.0 * np.pi * REVOLUTIONS
-    path = solve_ivp(rates, (0.0, end), [0.0, 0.0], t_eval=last, rtol=1e-7, atol=1e-9, method="DOP853")
+    path = solve_ivp(rates, (0.0, end), [0.0, 0.0], t_eval=last, rtol=1e-6, atol=1e-8, method="DOP853")
     flap = np.degrees(path.y[0]) + (np.degrees(precone) if teetering else 0.0)
     return float(flap.mean()), float(2.0 * (flap * np.cos(last)).mean()), float(2.0 * (flap * np.sin(last)).mean())
 
