@@ -128,9 +128,7 @@ async def run_async(node: NotebookNode, notebook: Path) -> Ran:
     names = list(_places(cells))
     bare = _node({"nbformat": 4, "nbformat_minor": 4, "metadata": {}, "cells": cells})
     async with _kernel(notebook.parent) as (manager, client, complaints):
-        runner = NotebookClient(
-            bare, km=manager, timeout=CELL_SECONDS, force_raise_errors=True, skip_cells_with_tag="\0none"
-        )
+        runner = NotebookClient(bare, km=manager, timeout=CELL_SECONDS)
         runner.kc = client
         for index, cell in enumerate(cells):
             await _run_cell(runner, cell, index, names[index], complaints)
@@ -141,7 +139,7 @@ async def run_async(node: NotebookNode, notebook: Path) -> Ran:
 
 
 def _clean(cell: NotebookNode) -> NotebookNode:
-    """The cell without anything a former run left in it."""
+    """The cell without anything a former run left in it, and without tags that would skip it or excuse its error."""
     if cell.cell_type == "code":
         return _node(_code(cell.source))
     kept = {"cell_type": cell.cell_type, "metadata": {}, "source": cell.source}

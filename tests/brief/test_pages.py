@@ -21,7 +21,7 @@ def crew(**changes: object) -> CrewPage:
     content = {
         "number": "NB-1",
         "revision": "rev 0",
-        "title": 'A "title" & more',
+        "title": 'A "title" & </title><b>more',
         "expires": "expires 29 Feb 2032",
         "mark": "DRAFT: not for crews",
         "heading": "Type <9>, doors on",
@@ -50,7 +50,7 @@ def test_the_page_is_valid_html_and_keeps_its_order():
     order += ["Control", "Slip"]
     places = [page.index(words, page.index("<body>")) for words in order]
     assert places == sorted(places)
-    assert "A &quot;title&quot; &amp; more" not in page.split("</title>")[0] or "<title>NB-1 rev 0: A" in page
+    assert '<title>NB-1 rev 0: A "title" &amp; &lt;/title&gt;&lt;b&gt;more</title>' in page
     assert "Between: &lt;interpolate&gt;" in page
 
 

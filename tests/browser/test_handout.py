@@ -169,6 +169,7 @@ def test_every_sheet_carries_its_marks(show, paper):
     width, height = PAPERS[paper]
     assert float(reader.pages[0].mediabox.width) == pytest.approx(width * MILLIMETRE, abs=1)
     assert float(reader.pages[0].mediabox.height) == pytest.approx(height * MILLIMETRE, abs=1)
+    assert "Which one is it?" not in plain(reader.pages[0].extract_text())
     total = len(reader.pages)
     for at, sheet in enumerate(reader.pages, start=1):
         text = plain(sheet.extract_text())
