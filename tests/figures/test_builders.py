@@ -60,7 +60,9 @@ def test_the_reversed_region_is_the_circle_of_the_theory():
     outer = radii > 0.12 + 1e-9
     assert radii.max() == pytest.approx(0.25, abs=1e-3)
     assert radii[outer] == pytest.approx(-0.25 * np.sin(azimuths[outer]), abs=2e-3)
-    assert np.all(np.sin(azimuths) < 0.0)
+    # It begins and ends where the circle meets the root cut-out: sin(psi) = -0.12 / 0.25.
+    widest = np.degrees([azimuths.min(), azimuths.max()])
+    assert widest == pytest.approx([180.0 + 28.7, 360.0 - 28.7], abs=2.0)
 
 
 def test_without_reversed_flow_there_is_no_region():

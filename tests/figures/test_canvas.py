@@ -80,8 +80,10 @@ def test_hatching_of_a_square_has_the_square_s_area():
     assert length * 0.01 == pytest.approx(6.0, rel=2e-3)
 
 
-def test_hatching_leaves_the_notch_of_a_concave_polygon_free():
-    x, y = hatch([0, 4, 4, 3, 3, 1, 1, 0], [0, 0, 3, 3, 1, 1, 3, 3], 0.05, 0.0)
+@pytest.mark.parametrize("first", range(8))
+def test_hatching_leaves_the_notch_of_a_concave_polygon_free(first):
+    """Whatever corner the polygon starts from."""
+    x, y = hatch(np.roll([0, 4, 4, 3, 3, 1, 1, 0], first), np.roll([0, 0, 3, 3, 1, 1, 3, 3], first), 0.05, 0.0)
     for (a, b), (height, _) in zip(x, y, strict=True):
         assert not (1.0 + 1e-9 < (a + b) / 2 < 3.0 - 1e-9 and height > 1.0 + 1e-9)
 

@@ -12,7 +12,7 @@ import pytest
 import traitlets
 
 from briefkit.figures import theme
-from briefkit.figures.markup import refuse_unhandled
+from briefkit.figures.markup import number, refuse_unhandled
 from briefkit.figures.still import Drawing, svg
 
 SVG = "{http://www.w3.org/2000/svg}"
@@ -157,6 +157,13 @@ def test_numbers_that_are_not_finite_never_reach_a_page(figure, scales, bad):
         draw(figure(line(scales, y=[0.0, bad])))
     with pytest.raises(ValueError, match="not finite"):
         draw(figure(bqplot.Label(x=[1.0], y=[1.0], text=[f"{bad} kt"], scales=scales)))
+
+
+@pytest.mark.parametrize("bad", [np.nan, np.inf])
+def test_the_last_door_before_the_page_is_closed_too(bad):
+    with pytest.raises(ValueError, match="not finite"):
+        number(bad)
+    assert [number(value) for value in (-0.001, 2.0, 1.005, 12.3456)] == ["0", "2", "1", "12.35"]
 
 
 def test_an_unknown_mark_is_refused_by_name(figure, scales):
