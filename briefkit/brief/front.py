@@ -106,8 +106,8 @@ def turn_section(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea, table: R
         ("Mass", "Slow to VNE less"), rows, f"Reduction before a turn of up to {bank}", Ink.COMPUTED, numbers=False
     )
     method = (
-        "In between: the heavier line. Read from the manual’s own VNE chart at the equivalent level flight (page 3); "
-        "not a flight-manual limit and not a speed to aim for."
+        "In between: the heavier line. Read from the manual’s own VNE chart at the equivalent level flight (“How the "
+        "reduction was found”); not a flight-manual limit and not a speed to aim for."
     )
     return Section(heading, before=own, grid=grid, after=(method, validity))
 
