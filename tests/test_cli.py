@@ -4,11 +4,14 @@ from __future__ import annotations
 
 import json
 import os
+import re
 import shutil
 import signal
 import subprocess
 import sys
 import time
+import urllib.error
+import urllib.request
 from pathlib import Path
 
 import pytest
@@ -184,6 +187,41 @@ def test_live_serves_this_machine_only_behind_a_token(operator, monkeypatch, cap
     assert overrides[0] == {
         "@jupyterlab/apputils-extension:notification": {"fetchNews": "false", "checkForUpdates": False}
     }
+
+
+@pytest.mark.slow
+@pytest.mark.skipif(os.name == "nt", reason="POSIX signals")
+def test_live_in_earnest(operator, tmp_path):
+    """A real server: an address once it answers, nothing without the token, our interpreter, gone at one interrupt."""
+    private = {name: str(tmp_path / name) for name in ("JUPYTER_CONFIG_DIR", "JUPYTER_DATA_DIR", "JUPYTER_RUNTIME_DIR")}
+    command = [*COMMAND, "live", str(operator / "vellmark-2t"), "--no-browser"]
+    options = {"stdout": subprocess.PIPE, "stderr": subprocess.PIPE, "text": True, "env": os.environ | private}
+    with subprocess.Popen(command, **options) as process:  # type: ignore[call-overload]
+        try:
+            address = process.stdout.readline().strip()
+            found = re.fullmatch(
+                r"(http://127\.0\.0\.1:\d+)/lab/tree/vellmark-2t/brief\.ipynb\?token=(\S{32,})", address
+            )
+            assert found is not None, address
+            base, token = found.groups()
+            assert ask(f"{base}/api/contents") == 403
+            assert ask(f"{base}/api/contents?token={token}") == 200
+            opener = urllib.request.build_opener(urllib.request.ProxyHandler({}))
+            with opener.open(f"{base}/api/kernelspecs?token={token}", timeout=10) as answer:
+                specs = json.load(answer)["kernelspecs"]
+            assert [spec["spec"]["argv"][0] for spec in specs.values()] == [sys.executable]
+        finally:
+            process.send_signal(signal.SIGINT)
+            process.communicate(timeout=30)
+
+
+def ask(url: str) -> int:
+    try:
+        with urllib.request.build_opener(urllib.request.ProxyHandler({})).open(url, timeout=10) as answer:
+            return int(answer.status)
+    except urllib.error.HTTPError as error:
+        error.close()
+        return error.code
 
 
 def test_live_needs_a_notebook_and_says_when_jupyterlab_is_missing(operator, tmp_path, monkeypatch):
