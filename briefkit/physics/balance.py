@@ -85,7 +85,7 @@ def torque(case: Case, sums: Sums) -> Array:
 def coefficients(case: Case, motion: Motion, sums: Sums) -> Array:
     """CT, CH, CY and CQ, (batch, 4)."""
     parts = thrust(case, sums), rearward_force(case, motion, sums), side_force(case, motion, sums), torque(case, sums)
-    return np.stack(parts, axis=1)
+    return np.array(parts).T
 
 
 def residuals(case: Case, motion: Motion, sums: Sums) -> Array:
@@ -98,16 +98,15 @@ def residuals(case: Case, motion: Motion, sums: Sums) -> Array:
     cosine, sine = np.cos(motion.tilt), np.sin(motion.tilt)
     mu = motion.mu(case)
     scale = 2.0 * np.sqrt(mu * mu + 0.5 * _REFERENCE_LOADING * case.solidity)
-    return np.stack(
+    return np.array(
         [
             (lift * cosine + rearward * sine - case.drag * np.sin(motion.climb)) / case.weight - 1.0,
             (lift * sine - rearward * cosine - case.drag * np.cos(motion.climb)) / case.weight,
             *flap_balance(case, motion, sums),
             induced_balance(lift, mu, motion.axial(case), motion.induced) / scale,
             torque(case, sums) / case.weight,
-        ],
-        axis=1,
-    )
+        ]
+    ).T
 
 
 @dataclass(frozen=True, eq=False)

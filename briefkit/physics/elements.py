@@ -33,6 +33,7 @@ class Points:
     """Points on the disc and what does not change there: radius fraction, azimuth [rad], shapes of the velocities.
 
     `shapes` rows: 1, r cos, r sin, cos, cos^2, sin cos, sin; `pitch_shapes` rows: 1, cos, sin, r - 0.75; (row, point).
+    Where the azimuths differ by member everything has the batch before the points: (row, batch, point).
     """
 
     radius: Array
@@ -63,9 +64,10 @@ class Grid:
 
 
 def points_at(planform: Planform, radius: Array, azimuth: Array) -> Points:
-    """The points (radius[i], azimuth[i]), both flat and of equal length."""
+    """The points with `radius` (point,) and `azimuth` (point,), or (batch, point) where they differ by member."""
     cosine, sine = np.cos(azimuth), np.sin(azimuth)
-    one = np.ones_like(radius)
+    radius = np.broadcast_to(radius, azimuth.shape)
+    one = np.ones_like(cosine)
     shapes = np.stack([one, radius * cosine, radius * sine, cosine, cosine * cosine, sine * cosine, sine])
     pitch_shapes = np.stack([one, cosine, sine, radius - REFERENCE_STATION])
     return Points(radius, azimuth, sine, shapes, pitch_shapes, planform.twist_offset(radius))
@@ -201,7 +203,7 @@ def flow_coefficients(case: Case, motion: Motion, inflow: Inflow) -> Coefficient
     mu, axial, induced = motion.mu(case), motion.axial(case), motion.inflow(case)
     kx, ky = inflow.gradients(mu, axial + induced)
     e = case.hinge_offset
-    through = np.stack(
+    through = np.array(
         [
             axial + induced,
             kx * induced + motion.b1s,
@@ -210,19 +212,17 @@ def flow_coefficients(case: Case, motion: Motion, inflow: Inflow) -> Coefficient
             mu * motion.b1c,
             mu * motion.b1s,
             e * motion.b1c,
-        ],
-        axis=1,
-    )
+        ]
+    ).T
     feather = case.pitch_flap
-    pitch = np.stack(
+    pitch = np.array(
         [
             motion.t0 - feather * (motion.b0 - case.precone),
             motion.t1c - feather * motion.b1c,
             motion.t1s - feather * motion.b1s,
             case.twist,
-        ],
-        axis=1,
-    )
+        ]
+    ).T
     return Coefficients(mu, through, pitch)
 
 
@@ -242,15 +242,22 @@ def flow_at(case: Case, points: Points, terms: Coefficients) -> Flow:
     """The flow at the points of the disc."""
     across = terms.across[:, None] * points.sine
     across += points.radius
-    through = terms.through @ points.shapes
+    through = _combined(terms.through, points.shapes)
     resultant = across * across
     scratch = through * through
     resultant += scratch
     np.sqrt(resultant, out=resultant)
-    angle = terms.pitch @ points.pitch_shapes
+    angle = _combined(terms.pitch, points.pitch_shapes)
     angle += points.twist
     angle -= np.arctan2(through, across, out=scratch)
     return Flow(across, through, resultant, angle, resultant * case.tip_mach[:, None])
+
+
+def _combined(terms: Array, shapes: Array) -> Array:
+    """Shapes weighed by each member's coefficients, (batch, point)."""
+    if shapes.ndim == 2:
+        return terms @ shapes
+    return np.asarray(np.einsum("mk,kmp->mp", terms, shapes))
 
 
 @dataclass(frozen=True, eq=False)

@@ -108,8 +108,8 @@ class Naca0012:
     1.03 - 1.02 cos(2 alpha) from 26, with a smooth change between. Four things differ from the forms as printed, for
     continuity and sense: above Mach 0.725 the slope falls by .744 from where it stood (printed .677 - .744 M: a step of
     .0003), lift is held above Mach 0.85, drag starts to rise at 17 - 23.4 M degrees or 0 with one coefficient at any
-    Mach number (printed: a smaller one, a step down, above 0.725), and stops at the plate's drag at 26 degrees. Against a smooth section at rotor
-    Reynolds numbers the maximum lift is low and the drag high, which is the safe side.
+    Mach number (printed: a smaller one, a step down, above 0.725), and stops at the plate's drag at 26 degrees. Against
+    a smooth section at rotor Reynolds numbers the maximum lift is low and the drag high, which is the safe side.
     """
 
     highest_mach: float = 1.0

@@ -15,6 +15,8 @@ from briefkit.physics.rotor import Case, Rotor, State
 
 Array = NDArray[np.float64]
 
+ELEMENT_CHUNK = 64  # members at a time, so that a large batch needs little beyond its answer
+
 
 def tip_angle(rotor: Rotor, case: Case, terms: Coefficients) -> Array:
     """Angle of attack [rad] at the tip where it retreats square to the wind, (batch,)."""
@@ -130,19 +132,19 @@ class Trim:
         r = own.radii if radii is None else np.asarray(radii, dtype=np.float64)
         psi = own.azimuths if azimuths is None else np.asarray(azimuths, dtype=np.float64)
         shape = (r.size, psi.size)
-        radius = np.broadcast_to(r[:, None], shape).ravel()
-        speed, mach, angle = (np.empty((self.case.size, *shape)) for _ in range(3))
+        radius, azimuth = (np.broadcast_to(axis, shape).ravel() for axis in (r[:, None], psi))
+        speed, mach, angle = (np.empty((self.case.size, radius.size)) for _ in range(3))
         terms = flow_coefficients(self.case, self.motion, self.model.inflow)
         tip_speed = np.broadcast_to(np.asarray(self.state.tip_speed, dtype=np.float64), (self.case.size,))
-        for turn in np.unique(self.case.wind_azimuth):
-            members = np.flatnonzero(self.case.wind_azimuth == turn)
-            points = points_at(self.rotor.planform, radius, np.broadcast_to(psi - turn, shape).ravel())
+        for start in range(0, self.case.size, ELEMENT_CHUNK):
+            members = np.arange(start, min(start + ELEMENT_CHUNK, self.case.size))
+            points = points_at(self.rotor.planform, radius, azimuth - self.case.wind_azimuth[members, None])
             flow = flow_at(self.case.take(members), points, terms.take(members))
-            speed[members] = (flow.across * tip_speed[members, None]).reshape(-1, *shape)
-            mach[members] = flow.mach.reshape(-1, *shape)
-            wrapped = flow.angle - 2.0 * np.pi * np.rint(flow.angle / (2.0 * np.pi))
-            angle[members] = wrapped.reshape(-1, *shape)
-        return Elements(r, psi, speed, mach, angle, self.rotor.rotation)
+            speed[members] = flow.across * tip_speed[members, None]
+            mach[members] = flow.mach
+            angle[members] = flow.angle - 2.0 * np.pi * np.rint(flow.angle / (2.0 * np.pi))
+        speeds, machs, angles = (values.reshape(-1, *shape) for values in (speed, mach, angle))
+        return Elements(r, psi, speeds, machs, angles, self.rotor.rotation)
 
     @cached_property
     def _own(self) -> Elements:
