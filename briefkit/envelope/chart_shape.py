@@ -1,0 +1,119 @@
+"""What the manual's chart says of itself: which cells are flat, which lie on a cold edge, which fall with loading.
+
+Rotor limits collapse: VNE over tip speed depends on the loading m'/rho' alone, as far as tip Mach number plays no part.
+So the falling cells of a sound chart lie on one curve. A cell more than 2 kt off it is a slip of the pen, or another
+limit that took over there; either way somebody should look.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from enum import StrEnum
+from typing import Final
+
+import numpy as np
+from numpy.typing import NDArray
+
+from briefkit import units
+from briefkit.aircraft.model import Aircraft
+from briefkit.envelope import region
+from briefkit.envelope.speeds import true_of
+from briefkit.physics import atmosphere
+
+Floats = NDArray[np.float64]
+Flags = NDArray[np.bool_]
+
+LARGEST_RESIDUAL: Final = 2.0 * units.KNOT
+_DEGREE: Final = 2
+_LEAST: Final = 6  # falling cells; fewer make no curve
+_ROUNDS: Final = 30
+_ROBUST: Final = 0.7 * units.KNOT  # residuals beyond this weigh less and less (Huber's weights)
+
+
+class Shape(StrEnum):
+    """What a cell of the chart looks like."""
+
+    FLAT = "flat at the chart's highest value"
+    COLD = "cold edge: falls or stays level towards the cold"
+    FALLING = "falls with loading"
+
+
+@dataclass(frozen=True, eq=False)
+class ChartShape:
+    """Cells of the chart with a speed (cell,), SI; `residual` [m/s true] from the common curve, NaN where not falling.
+
+    `row`, `column` place a cell in the chart as typed: heights down; temperatures, masses or rotor speeds across.
+    """
+
+    row: NDArray[np.intp]
+    column: NDArray[np.intp]
+    shape: NDArray[np.object_]
+    loading: Floats
+    vne: Floats
+    advancing_mach: Floats
+    residual: Floats
+
+    @property
+    def findings(self) -> NDArray[np.intp]:
+        """Cells off the common curve by more than 2 kt, the farthest first."""
+        far = np.where(np.isfinite(self.residual), np.abs(self.residual), 0.0)
+        order = np.argsort(-far, kind="stable")
+        return order[far[order] > LARGEST_RESIDUAL]
+
+
+def chart_shape(aircraft: Aircraft) -> ChartShape:
+    """The shape of the aircraft's power-on chart.
+
+    A chart without temperatures is taken on the standard day, one without masses at the maximum mass, one without
+    rotor speeds at 100 %.
+    """
+    chart = aircraft.vne
+    row, t, m, k = np.nonzero(np.isfinite(chart.speeds))
+    height = np.array(chart.heights)[row]
+    # A height beyond the atmosphere (a node that only says "or less") has no air to be loaded in.
+    known = height >= atmosphere.LOWEST
+    row, t, m, k, height = row[known], t[known], m[known], k[known], height[known]
+    standard = np.asarray(atmosphere.temperature_at(height))
+    oat = np.array(chart.temperatures)[t] if chart.temperatures else standard
+    mass = np.array(chart.masses)[m] if chart.masses else np.full(len(row), region.heaviest(aircraft))
+    rotor = np.array(chart.rotor_speeds)[k] if chart.rotor_speeds else np.ones(len(row))
+    # On a density-altitude chart the standard day stands for every day of that density.
+    pressure = np.asarray(atmosphere.pressure_at(height))
+    density = np.asarray(atmosphere.density(pressure, standard if chart.density_altitude else oat))
+    indicated = chart.speeds[row, t, m, k]
+    vne = true_of(aircraft.calibration, indicated, pressure, oat) / rotor
+    loading = mass / (density * rotor**2)
+    shape = _shapes(chart.speeds)[row, t, m, k]
+    residual = np.full(len(row), np.nan)
+    falling = np.nonzero((shape == Shape.FALLING) & np.isfinite(vne))[0]
+    if len(falling) >= _LEAST:
+        residual[falling] = _residuals(loading[falling], vne[falling])
+    mach = (vne + aircraft.rotor.tip_speed) * rotor / np.asarray(atmosphere.speed_of_sound(oat))
+    return ChartShape(row, t + m + k, shape, loading, vne, mach, residual)
+
+
+def _shapes(speeds: Floats) -> NDArray[np.object_]:
+    """The shape of every cell: (heights, temperatures, masses, rotor speeds)."""
+    known = np.where(np.isfinite(speeds), speeds, -np.inf)
+    highest = known.max()
+    flat = (known == highest) & ((known == highest).sum() > 1)
+    warmer = np.concatenate([known[:, 1:], np.full_like(known[:, :1], -np.inf)], axis=1)
+    cold = ~flat & (known <= warmer)
+    shape = np.array([Shape.FALLING] * speeds.size, dtype=object).reshape(speeds.shape)
+    shape[cold] = Shape.COLD
+    shape[flat] = Shape.FLAT
+    return shape
+
+
+def _residuals(loading: Floats, vne: Floats) -> Floats:
+    """Distance from a smooth curve fitted so that a few cells off it do not pull it (iterated Huber weights)."""
+    x = (loading - loading.mean()) / max(float(np.ptp(loading)), 1e-9)
+    powers = np.stack([x**n for n in range(_DEGREE + 1)], axis=1)
+    weight = np.ones_like(x)
+    residual = np.zeros_like(x)
+    for _ in range(_ROUNDS):
+        root = np.sqrt(weight)[:, None]
+        curve, *_ = np.linalg.lstsq(powers * root, vne * root[:, 0], rcond=None)
+        residual = np.asarray(vne - powers @ curve)
+        weight = _ROBUST / np.maximum(np.abs(residual), _ROBUST)
+    return residual
