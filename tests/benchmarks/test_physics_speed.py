@@ -170,7 +170,5 @@ def test_beside_plain_scipy() -> None:
     fast = processor_time(lambda: trim(ROTOR, states(1000))) / 1000.0
     flight = trim(ROTOR, state)
     apart = np.degrees(np.abs(controls - np.array([flight.t0[0], flight.t1c[0], flight.t1s[0]]))).max()
-    print(
-        f"\nplain scipy {slow:.2f} s a state, batch {fast * 1e3:.3f} ms: {slow / fast:,.0f} times; {apart:.3f} deg apart"
-    )
+    print(f"\nplain {slow:.2f} s a state, batch {fast * 1e3:.3f} ms: {slow / fast:,.0f} times; apart {apart:.3f} deg")
     assert apart < 0.1  # the same problem: the plain one leaves out the H-force and the drag of the outermost blade

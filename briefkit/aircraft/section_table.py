@@ -1,0 +1,119 @@
+"""An operator's own blade section from a plain CSV: `mach, alpha_deg, cl, cd`, one line a point, on a whole grid.
+
+Lines that begin with # are notes. Rows go by Mach number, within it by rising angle, and every Mach number has the same
+angles: a table with holes would have to be guessed at, so it is refused with the row named.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from itertools import pairwise
+from pathlib import Path
+from typing import Final
+
+import numpy as np
+
+from briefkit.errors import Fault, FaultyFile, OutsideLimits, ReadingError
+from briefkit.physics.section import TableSection
+from briefkit.units import read
+
+COLUMNS: Final = ("mach", "alpha_deg", "cl", "cd")
+_RANGES: Final = {"mach": (0.0, 1.0), "alpha_deg": (-180.0, 180.0), "cl": (-4.0, 4.0), "cd": (0.0001, 3.0)}
+
+
+@dataclass(frozen=True)
+class _Row:
+    line: int
+    mach: float
+    alpha: float
+    lift: float
+    drag: float
+
+
+def read_section_table(path: Path) -> TableSection:
+    """The section in a file; raises `FaultyFile` with every fault, each by its line.
+
+    Angles in degrees from the chord, at least from -5 to +15; Mach numbers from 0 to 1, at most the last of which the
+    rotor's advancing tip may reach.
+    """
+    faults: list[Fault] = []
+    rows = _rows(path, faults)
+    if not faults:
+        _check_grid(path, rows, faults)
+    if faults:
+        raise FaultyFile(faults)
+    machs = np.unique([row.mach for row in rows])
+    shape = (machs.size, len(rows) // machs.size)
+    angles = np.radians([row.alpha for row in rows[: shape[1]]])
+    lift, drag = np.array([row.lift for row in rows]), np.array([row.drag for row in rows])
+    try:
+        return TableSection(machs, angles, lift.reshape(shape), drag.reshape(shape))
+    except OutsideLimits as refusal:
+        ends = f"angles from {rows[0].alpha:g} to {rows[shape[1] - 1].alpha:g}"
+        raise FaultyFile([Fault(path.name, "alpha_deg", ends, refusal.permitted)]) from refusal
+
+
+def _rows(path: Path, faults: list[Fault]) -> list[_Row]:
+    try:
+        text = path.read_text(encoding="utf-8-sig")
+    except (OSError, UnicodeDecodeError) as error:
+        reason = error.strerror if isinstance(error, OSError) else "not UTF-8 text"
+        faults.append(Fault(path.name, "file", str(reason), "a plain text file"))
+        return []
+    lines = [
+        (number, [cell.strip() for cell in line.split(",")])
+        for number, line in enumerate(text.splitlines(), start=1)
+        if line.strip() and not line.lstrip().startswith("#")
+    ]
+    if not lines or tuple(cell.lower() for cell in lines[0][1]) != COLUMNS:
+        first = ", ".join(lines[0][1]) if lines else "nothing"
+        faults.append(Fault(path.name, "line 1" if not lines else f"line {lines[0][0]}", first, ", ".join(COLUMNS)))
+        return []
+    rows = [_row(path, number, cells, faults) for number, cells in lines[1:]]
+    if not rows:
+        faults.append(Fault(path.name, "rows", "none", "one line a point under the header"))
+    return [row for row in rows if row is not None]
+
+
+def _row(path: Path, line: int, cells: list[str], faults: list[Fault]) -> _Row | None:
+    if len(cells) != len(COLUMNS):
+        faults.append(Fault(path.name, f"line {line}", f"{len(cells)} cells", "four: " + ", ".join(COLUMNS)))
+        return None
+    values = []
+    for column, cell in zip(COLUMNS, cells, strict=True):
+        least, most = _RANGES[column]
+        try:
+            value = read(cell, "number")
+        except ReadingError as error:
+            faults.append(Fault(path.name, f"line {line}, {column}", cell, error.permitted, error.remedy))
+            continue
+        if least <= value <= most:
+            values.append(value)
+        else:
+            faults.append(Fault(path.name, f"line {line}, {column}", cell, f"{least:g} to {most:g}"))
+    return _Row(line, *values) if len(values) == len(COLUMNS) else None
+
+
+def _check_grid(path: Path, rows: list[_Row], faults: list[Fault]) -> None:
+    """Mach numbers in rising blocks, each with the angles of the first, rising."""
+    first = [row.alpha for row in rows if row.mach == rows[0].mach]
+    for before, row in pairwise(rows):
+        if row.mach < before.mach:
+            permitted = f"{before.mach:g} or more: rows go by rising Mach number"
+            faults.append(Fault(path.name, f"line {row.line}, mach", f"{row.mach:g}", permitted))
+            return
+        if row.mach == before.mach and row.alpha <= before.alpha:
+            permitted = f"above {before.alpha:g}: angles rise within a Mach number"
+            faults.append(Fault(path.name, f"line {row.line}, alpha_deg", f"{row.alpha:g}", permitted))
+            return
+    for start in range(0, len(rows), len(first)):
+        block = rows[start : start + len(first)]
+        for place, row in enumerate(block):
+            if row.mach != block[0].mach or row.alpha != first[place]:
+                wanted = f"{first[place]:g} at Mach {block[0].mach:g}: every Mach number has the angles of the first"
+                read_as = f"{row.alpha:g} at Mach {row.mach:g}"
+                faults.append(Fault(path.name, f"line {row.line}, alpha_deg", read_as, wanted))
+                return
+        if len(block) < len(first):
+            wanted = f"a row for {first[len(block)]:g} at Mach {block[0].mach:g}"
+            faults.append(Fault(path.name, f"after line {block[-1].line}", "the end of the file", wanted))
