@@ -98,7 +98,9 @@ def _shapes(speeds: Floats) -> NDArray[np.object_]:
     highest = known.max()
     flat = (known == highest) & ((known == highest).sum() > 1)
     warmer = np.concatenate([known[:, 1:], np.full_like(known[:, :1], -np.inf)], axis=1)
-    cold = ~flat & (known <= warmer)
+    # An edge runs in from the coldest column; a low cell with a higher one on its cold side is no edge.
+    level = flat | (known <= warmer)
+    cold = ~flat & np.logical_and.accumulate(level, axis=1)
     shape = np.array([Shape.FALLING] * speeds.size, dtype=object).reshape(speeds.shape)
     shape[cold] = Shape.COLD
     shape[flat] = Shape.FLAT
@@ -110,10 +112,10 @@ def _residuals(loading: Floats, vne: Floats) -> Floats:
     x = (loading - loading.mean()) / max(float(np.ptp(loading)), 1e-9)
     powers = np.stack([x**n for n in range(_DEGREE + 1)], axis=1)
     weight = np.ones_like(x)
-    residual = np.zeros_like(x)
+    residual: Floats = np.zeros_like(x)
     for _ in range(_ROUNDS):
         root = np.sqrt(weight)[:, None]
         curve, *_ = np.linalg.lstsq(powers * root, vne * root[:, 0], rcond=None)
-        residual = np.asarray(vne - powers @ curve)
+        residual = vne - powers @ curve
         weight = _ROBUST / np.maximum(np.abs(residual), _ROBUST)
     return residual
