@@ -49,8 +49,8 @@ def set_by_table(aircraft: Aircraft, fleet: FleetEntry, areas: tuple[WorkArea, .
 def masses_by_hour(take_off: float, fuel: float, burn: float, reserve: float = 0.0) -> tuple[tuple[float, float], ...]:
     """Hours from take-off and the mass [kg] at each, down to the reserve.
 
-    `take_off`, `fuel` and `reserve` in kg, `burn` in kg/h. The last point is when the reserve is reached. Raises ValueError for a burn that is not above zero, or more reserve
-    than fuel.
+    `take_off`, `fuel` and `reserve` in kg, `burn` in kg/h. The last point is when the reserve is reached. Raises
+    ValueError for a burn that is not above zero, or more reserve than fuel.
     """
     if not (burn > 0.0 and 0.0 <= reserve <= fuel < take_off):
         raise ValueError("burn must be above zero, and the reserve within the fuel, and the fuel within the mass")
