@@ -1,8 +1,9 @@
-"""The equations of steady flight: seven residuals, nine unknowns, and their slopes.
+"""The equations of steady flight: nine residuals, nine unknowns, and their slopes.
 
 Unknowns are the fields of `Motion` in order. Equations, in order: vertical and in-plane force over the weight, the
-three of flapping [rad], inflow, torque. A way of solving (`Way`) names which unknowns are free and which equations
-must then hold; trimmed, controls held and torque-free flight are three such choices over this one set.
+three of flapping [rad], inflow, torque, the two moments about a stated centre of gravity. A way of solving (`Way`)
+names which unknowns are free and which equations must then hold; trimmed, controls held and torque-free flight are
+such choices over this one set.
 """
 
 from __future__ import annotations
@@ -36,7 +37,7 @@ Array = NDArray[np.float64]
 Members = NDArray[np.intp]
 
 T0, T1C, T1S, B0, B1C, B1S, INDUCED, TILT, CLIMB = range(9)
-VERTICAL, IN_PLANE, FLAP_MEAN, FLAP_COSINE, FLAP_SINE, INFLOW, TORQUE = range(7)
+VERTICAL, IN_PLANE, FLAP_MEAN, FLAP_COSINE, FLAP_SINE, INFLOW, TORQUE, HUB_COSINE, HUB_SINE = range(9)
 
 _ANGLE_STEP: Final = 1e-6  # rad, for slopes of section coefficients
 _UNKNOWN_STEP: Final = 1e-7  # for slopes of the closed-form parts; every unknown is of order 0.01 to 1
@@ -52,6 +53,8 @@ class Way:
 
 
 TRIMMED: Final = Way((T0, T1C, T1S, B0, INDUCED, TILT), (VERTICAL, IN_PLANE, FLAP_MEAN, FLAP_COSINE, FLAP_SINE, INFLOW))
+# The same where a centre of gravity is stated: the disc then flaps from the shaft by what holds the moments.
+BALANCED: Final = Way((*TRIMMED.free, B1C, B1S), (*TRIMMED.equations, HUB_COSINE, HUB_SINE))
 HELD: Final = Way((B0, B1C, B1S, INDUCED), (FLAP_MEAN, FLAP_COSINE, FLAP_SINE, INFLOW))
 # Torque-free: trimmed down a glide path that is found, or with the controls held at a shaft angle that is found.
 GLIDING: Final = Way((*TRIMMED.free, CLIMB), (*TRIMMED.equations, TORQUE))
@@ -82,6 +85,23 @@ def torque(case: Case, sums: Sums) -> Array:
     return 0.5 * case.solidity * sums.drag[:, 1]
 
 
+def hub_moments(case: Case, motion: Motion, sums: Sums) -> tuple[Array, Array]:
+    """Moments about the centre of gravity by cosine and sine, over rho A (Omega R)^2 R; zero in balance.
+
+    The disc's tilt from the shaft strains the hub by N I Omega^2 (nu^2 - 1) / 2 per radian; against it stand the
+    in-plane force at the hub's height (the thrust's lean with the disc is in it) and the thrust behind the centre of
+    gravity. The airframe's drag acts there. The part of the lift that a hinge offset passes on at once is left out, as
+    in the usual formula for hub moment. Where no centre of gravity is stated, the tilt itself must vanish.
+    """
+    lift = thrust(case, sums)
+    hub = 0.25 * case.solidity * (case.stiffness - 1.0) / case.flap_gain
+    ahead_cosine, ahead_sine = case.cg_ahead * np.cos(case.wind_azimuth), -case.cg_ahead * np.sin(case.wind_azimuth)
+    pitching = hub * motion.b1c - rearward_force(case, motion, sums) * case.hub_height + lift * ahead_cosine
+    rolling = hub * motion.b1s - side_force(case, motion, sums) * case.hub_height + lift * ahead_sine
+    stated = case.hub_height > 0.0
+    return np.where(stated, pitching, case.weight * motion.b1c), np.where(stated, rolling, case.weight * motion.b1s)
+
+
 def coefficients(case: Case, motion: Motion, sums: Sums) -> Array:
     """CT, CH, CY and CQ, (batch, 4)."""
     parts = thrust(case, sums), rearward_force(case, motion, sums), side_force(case, motion, sums), torque(case, sums)
@@ -89,7 +109,7 @@ def coefficients(case: Case, motion: Motion, sums: Sums) -> Array:
 
 
 def residuals(case: Case, motion: Motion, sums: Sums) -> Array:
-    """All seven equations, (batch, 7).
+    """All nine equations, (batch, 9).
 
     Vertical: T cos(tilt) + H sin(tilt) = n W + D sin(climb). In plane: T sin(tilt) - H cos(tilt) = D cos(climb), both
     over n W. Drag acts along the flight path, H in the disc's plane.
@@ -105,6 +125,7 @@ def residuals(case: Case, motion: Motion, sums: Sums) -> Array:
             *flap_balance(case, motion, sums),
             induced_balance(lift, mu, motion.axial(case), motion.induced) / scale,
             torque(case, sums) / case.weight,
+            *(moment / case.weight for moment in hub_moments(case, motion, sums)),
         ]
     ).T
 

@@ -179,6 +179,9 @@ class State:
     `speed`), `wind_azimuth` [rad] by which the relative wind is turned from ahead, in the direction of rotation (wind
     from ahead comes over psi = 180 degrees; with pi/2 it comes over 270; `Rotor.wind_azimuth` makes it from a bearing),
     `height` [m] of the rotor above the ground (infinite: out of ground effect; half the radius at least).
+
+    `hub_height` [m] above the centre of gravity and `cg_ahead` [m] of the shaft: where the moments of a trimmed flight
+    balance. With both zero no centre of gravity is stated, and the shaft stands on the disc.
     """
 
     density: Values
@@ -189,6 +192,8 @@ class State:
     climb_rate: Values = 0.0
     wind_azimuth: Values = 0.0
     height: Values = np.inf
+    hub_height: Values = 0.0
+    cg_ahead: Values = 0.0
 
 
 @dataclass(frozen=True, eq=False)
@@ -216,6 +221,8 @@ class Case:
     coning: Array  # 1 where the blade is free to cone, 0 on a teetering hub
     ground: Array  # (R / 4z)^2 for a rotor z above the ground
     gust: Array  # of air straight up, by the tip speed
+    hub_height: Array  # above the centre of gravity; 0 where none is stated
+    cg_ahead: Array
 
     @property
     def size(self) -> int:
@@ -235,8 +242,9 @@ class Case:
 def case_of(rotor: Rotor, state: State, gust: Values = 0.0) -> Case:
     """The dimensionless numbers of a rotor in a state and an up-gust [m/s]; every float is spread over the batch.
 
-    A climb faster than the speed along the flight path has no angle, and a rotor nearer the ground than half its radius
-    no ground effect that is known: they give NaN there, which no solver accepts.
+    A climb faster than the speed along the flight path has no angle, a rotor nearer the ground than half its radius no
+    ground effect that is known, a centre of gravity ahead of a hub of no height no moment that a hub could hold: they
+    give NaN there, which no solver accepts.
     Raises ValueError if two arrays have different lengths.
     """
     tip_speed = np.asarray(state.tip_speed, dtype=np.float64)
@@ -245,6 +253,7 @@ def case_of(rotor: Rotor, state: State, gust: Values = 0.0) -> Case:
     steepness = np.asarray(state.climb_rate) / np.where(speed > 0.0, speed, 1.0)
     climb = np.where(np.abs(steepness) <= 1.0, np.arcsin(np.clip(steepness, -1.0, 1.0)), np.nan)
     height = np.asarray(state.height, dtype=np.float64) / rotor.radius
+    above = np.asarray(state.hub_height, dtype=np.float64) / rotor.radius
     values = (
         rotor.solidity,
         state.density * rotor.chord * rotor.radius**4 / (2.0 * rotor.flap_inertia),
@@ -263,6 +272,8 @@ def case_of(rotor: Rotor, state: State, gust: Values = 0.0) -> Case:
         0.0 if rotor.hub == "teetering" else 1.0,
         np.where(height >= 0.5, (0.25 / np.maximum(height, 0.5)) ** 2, np.nan),
         gust / tip_speed,
+        np.where(above >= 0.0, above, np.nan),
+        np.where((above > 0.0) | (np.asarray(state.cg_ahead) == 0.0), state.cg_ahead / rotor.radius, np.nan),
     )
     arrays = np.broadcast_arrays(*(np.atleast_1d(np.asarray(value, dtype=np.float64)) for value in values))
     return Case(*(np.ascontiguousarray(array) for array in arrays))

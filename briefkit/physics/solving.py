@@ -246,11 +246,13 @@ def _reasons(case: Case, found: Found, model: Model) -> NDArray[np.object_]:
     """Why a member has no number: not solved at all or outside the model's range, or no steady flight found."""
     motion = Motion(*found.columns.T)
     mu, loading = motion.mu(case), found.forces[:, 0] / case.solidity
-    hover = np.sqrt(np.maximum(found.forces[:, 0], 0.0) / 2.0)
-    in_wake = (motion.axial(case) < -LARGEST_DESCENT * hover) & (mu < EDGEWISE * hover)
+    hover = np.sqrt(np.abs(found.forces[:, 0]) / 2.0)
+    # Against the thrust, whichever way that points.
+    against = motion.axial(case) * np.sign(found.forces[:, 0])
+    in_wake = (against < -LARGEST_DESCENT * hover) & (mu < EDGEWISE * hover)
     inside = (
         (mu <= LARGEST_ADVANCE_RATIO)
-        & (loading <= LARGEST_BLADE_LOADING)
+        & (np.abs(loading) <= LARGEST_BLADE_LOADING)
         & ((1.0 + mu) * case.tip_mach <= min(LARGEST_ADVANCING_MACH, model.section.highest_mach))
         & ~in_wake
     )

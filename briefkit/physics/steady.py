@@ -55,8 +55,8 @@ class Elements:
 class Trim:
     """A solved batch; arrays (batch,). Angles in radians, in axes fixed to the rotor's shaft.
 
-    A member whose `reason` is not `Reason.NONE` holds NaN everywhere but in `residual`, `iterations` and `reason`:
-    check `solved` first.
+    A member whose `reason` is not `Reason.NONE` holds NaN everywhere but in `residual` (NaN too where nothing was
+    tried), `iterations` and `reason`: check `solved` first.
 
     - `t0`, `t1c`, `t1s`: pitch from the shaft's plane. `b0`: coning; `b1c`, `b1s`: flapping from the no-feathering
       plane; `hub_b1c`, `hub_b1s`: flapping from the shaft's plane (zero when trimmed, since the shaft stands on it).

@@ -1,9 +1,9 @@
 """Steady flight of a rotor: the ways to ask for it.
 
 Trimmed: the rotor carries the apparent weight and pulls the airframe's drag along a given flight path, with no net hub
-moment, so the shaft stands on the disc. Held: the controls stay where they are. Torque-free: no engine. All are batches
-over one set of equations (`balance`), in the shaft's axes turned to the wind, where the wind's direction over the
-ground plays no part; answers are turned back.
+moment, so the shaft stands on the disc (or, where a centre of gravity is stated, with no moment about that). Held: the
+controls stay where they are. Torque-free: no engine. All are batches over one set of equations (`balance`), in the
+shaft's axes turned to the wind, where the wind's direction over the ground plays no part; answers are turned back.
 """
 
 from __future__ import annotations
@@ -14,7 +14,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from briefkit.physics import balance as equations
-from briefkit.physics.balance import GLIDING, HELD, TRIMMED, WINDMILLING, Model
+from briefkit.physics.balance import BALANCED, GLIDING, HELD, TRIMMED, WINDMILLING, Model
 from briefkit.physics.rotor import Case, Rotor, State, Values, case_of
 from briefkit.physics.section import Section
 from briefkit.physics.solving import solved, turned
@@ -78,7 +78,9 @@ def trim(
     not finite) gets `Reason.OUTSIDE_MODEL`; one for which no steady flight was found, `Reason.NO_TRIM` with the last
     residual. Raises `OutsideLimits` for names or grids that do not exist, ValueError for arrays of different lengths.
     """
-    return solved(rotor, state, TRIMMED, Model.of(rotor, inflow, section, grid), case_of(rotor, state))
+    stated = np.any(np.asarray(state.hub_height) != 0.0) or np.any(np.asarray(state.cg_ahead) != 0.0)
+    way = BALANCED if stated else TRIMMED
+    return solved(rotor, state, way, Model.of(rotor, inflow, section, grid), case_of(rotor, state))
 
 
 def held(

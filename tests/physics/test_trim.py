@@ -341,3 +341,48 @@ def test_more_drag_leans_the_disc_further(rotor: Rotor, mass: tuple[float, float
     assert (np.diff(flight.tip_angle) > 0.0).all()
     climbing = trim(rotor, state_of(rotor, speed=55.0, mass=mass[1], climb_rate=np.array([0.0, 3.0, 6.0])))
     assert (np.diff(climbing.tip_angle) > 0.0).all()
+
+
+def test_moments_about_a_stated_centre_of_gravity(rotor: Rotor, mass: tuple[float, float], state_of: StateOf) -> None:
+    # Written out in newtons and metres, about the centre of gravity 1.2 m under the hub and up to 0.1 m off the shaft.
+    ahead = np.array([-0.1, 0.0, 0.1])
+    flight = trim(rotor, state_of(rotor, speed=45.0, mass=mass[1], hub_height=1.2, cg_ahead=ahead))
+    assert flight.solved.all()
+    turns_per_second = rotor.tip_speed / rotor.radius
+    strain = 0.5 * rotor.blades * rotor.flap_inertia * turns_per_second**2 * (rotor.flap_frequency**2 - 1.0)
+    thrust, rearward, side = (part * flight.scale_of_thrust for part in (flight.ct, flight.ch, flight.cy))
+    pitching = strain * flight.hub_b1c - 1.2 * rearward + ahead * thrust
+    rolling = strain * flight.hub_b1s - 1.2 * side
+    np.testing.assert_allclose(pitching / (mass[1] * 9.80665), 0.0, atol=1e-7)
+    np.testing.assert_allclose(rolling / (mass[1] * 9.80665), 0.0, atol=1e-7)
+    assert (np.diff(flight.hub_b1c) < 0.0).all()  # nose heavy: the disc must lean back from the shaft
+    # A stiffer hub holds the same moment with less flapping; the disc itself hardly cares how the shaft hangs under it.
+    plain = trim(rotor, state_of(rotor, speed=45.0, mass=mass[1]))
+    np.testing.assert_array_equal(plain.hub_b1c, 0.0)
+    assert np.degrees(np.abs(flight.disc_tilt - plain.disc_tilt)).max() < 0.15
+    assert np.degrees(np.abs(flight.tip_angle - plain.tip_angle)).max() < 0.15
+    np.testing.assert_allclose(np.degrees(flight.b1c - plain.b1c), 0.0, atol=0.3)
+
+
+def test_a_stated_centre_of_gravity_turns_with_the_aircraft(
+    rotor: Rotor, mass: tuple[float, float], state_of: StateOf
+) -> None:
+    # Wind from behind: what leans back against the wind leans forward on the aircraft.
+    flight = trim(
+        rotor,
+        state_of(
+            rotor, speed=20.0, mass=mass[1], hub_height=1.2, cg_ahead=0.1, wind_azimuth=np.array([0.0, np.pi, -np.pi])
+        ),
+    )
+    assert flight.solved.all()
+    assert (flight.hub_b1c < 0.0).all()  # nose heavy is nose heavy, whatever the wind
+    assert flight.hub_b1c[1] == pytest.approx(flight.hub_b1c[2], abs=1e-9)
+
+
+def test_stating_no_centre_of_gravity_beside_one(rotor: Rotor, mass: tuple[float, float], state_of: StateOf) -> None:
+    flight = trim(rotor, state_of(rotor, speed=45.0, mass=mass[1], hub_height=np.array([0.0, 1.2, -1.0])))
+    assert [reason.name for reason in flight.reason] == ["NONE", "NONE", "OUTSIDE_MODEL"]
+    assert flight.hub_b1c[0] == pytest.approx(0.0, abs=1e-9)
+    assert flight.hub_b1c[1] != 0.0
+    lone = trim(rotor, state_of(rotor, speed=45.0, mass=mass[1], cg_ahead=0.1))
+    assert lone.reason[0] is Reason.OUTSIDE_MODEL
