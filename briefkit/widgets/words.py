@@ -10,7 +10,6 @@ from briefkit import units
 from briefkit.aircraft.model import Aircraft
 from briefkit.envelope.condition import Condition
 
-
 _TIE: Final = "\u00a0"  # a number and its unit stay on one line
 
 
