@@ -53,13 +53,32 @@ def tip_angle_at(rotor: Rotor, many: Conditions, speed: Floats) -> Floats:
     return np.where(solved.reason == Reason.NONE, solved.tip_angle, np.nan)
 
 
-def onset_speed(rotor: Rotor, many: Conditions, target: float, curve: TipAngles | None = None) -> Floats:
-    """True airspeed [m/s] at which the retreating tip reaches `target` [rad], (batch,).
+def gust_angle(rotor: Rotor, many: Conditions, speed: Floats, gust: Floats | float) -> Floats:
+    """What air rising at `gust` [m/s] adds to the retreating tip's angle [rad] at once, controls held; broadcasts.
+
+    The tip meets air at tip speed less true airspeed: a gust's angle is largest where the blade is slowest.
+    """
+    return np.arctan2(gust, many.rotor_speed * rotor.tip_speed - speed)
+
+
+def onset_speed(
+    rotor: Rotor,
+    many: Conditions,
+    target: float,
+    curve: TipAngles | None = None,
+    gust: Floats | float = 0.0,
+) -> Floats:
+    """True airspeed [m/s] at which the retreating tip reaches `target` [rad], (batch,), in air rising at `gust` [m/s].
 
     NaN where it is above the target at every speed, or does not reach it within the model's range. Three secant steps
     on the model itself leave less than 0.01 kt.
     """
     curve = curve or tip_angles(rotor, many)
+    rising = np.broadcast_to(np.asarray(gust, dtype=float), (len(many),))
+    added = gust_angle(
+        rotor, many.repeat(curve.speed.shape[1]), curve.speed.ravel(), np.repeat(rising, curve.speed.shape[1])
+    )
+    curve = TipAngles(curve.speed, curve.angle + added.reshape(curve.speed.shape))
     column = _crossing(curve, target)
     members = np.nonzero(column >= 0)[0]
     speed = np.full(len(many), np.nan)
@@ -71,6 +90,7 @@ def onset_speed(rotor: Rotor, many: Conditions, target: float, curve: TipAngles 
     for _ in range(_REFINEMENTS):
         guess = slow - below * (fast - slow) / (above - below)
         miss = tip_angle_at(inner_rotor, inner, guess) - target
+        miss = miss + gust_angle(inner_rotor, inner, guess, rising[members])
         reached = miss >= 0.0
         fast, above = np.where(reached, guess, fast), np.where(reached, miss, above)
         slow, below = np.where(reached, slow, guess), np.where(reached, below, miss)
