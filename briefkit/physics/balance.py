@@ -61,31 +61,31 @@ GLIDING: Final = Way((*TRIMMED.free, CLIMB), (*TRIMMED.equations, TORQUE))
 WINDMILLING: Final = Way((*HELD.free, TILT), (*HELD.equations, TORQUE))
 
 
-def thrust(case: Case, sums: Sums) -> Array:
-    """Thrust coefficient, normal to the shaft's disc."""
-    return 0.5 * case.solidity * sums.normal[:, 0]
+@dataclass(frozen=True, eq=False)
+class Loads:
+    """Force and torque coefficients in the shaft's axes, each (batch,): CT along the shaft, CH in the disc's plane
+    downwind, CY in it towards psi = 90 degrees of the wind axes, CQ (which is the power coefficient too)."""
+
+    thrust: Array
+    rearward: Array
+    side: Array
+    torque: Array
 
 
-def rearward_force(case: Case, motion: Motion, sums: Sums) -> Array:
-    """H-force coefficient: in the shaft's disc plane, downwind. Flapped blades lean part of their lift inward."""
-    cosine, squared, mixed = sums.normal[:, 2], sums.normal[:, 6], sums.normal[:, 7]
-    lean = motion.b0 * cosine + motion.b1c * squared + motion.b1s * mixed
-    return 0.5 * case.solidity * (sums.drag[:, 3] - lean)
+def loads_of(case: Case, motion: Motion, sums: Sums) -> Loads:
+    """The loads of a motion. Flapped blades lean part of their lift inward, which is why flapping turns up here."""
+    lift, _, cosine, sine, _, _, cosines, mixed, sines = sums.normal.T
+    _, spin, drag_cosine, drag_sine = sums.drag.T[:4]
+    half = 0.5 * case.solidity
+    return Loads(
+        thrust=half * lift,
+        rearward=half * (drag_sine - motion.b0 * cosine - motion.b1c * cosines - motion.b1s * mixed),
+        side=-half * (drag_cosine + motion.b0 * sine + motion.b1c * mixed + motion.b1s * sines),
+        torque=half * spin,
+    )
 
 
-def side_force(case: Case, motion: Motion, sums: Sums) -> Array:
-    """Y-force coefficient: in the shaft's disc plane, towards psi = 90 degrees of the wind axes."""
-    sine, mixed, squared = sums.normal[:, 3], sums.normal[:, 7], sums.normal[:, 8]
-    lean = motion.b0 * sine + motion.b1c * mixed + motion.b1s * squared
-    return -0.5 * case.solidity * (sums.drag[:, 2] + lean)
-
-
-def torque(case: Case, sums: Sums) -> Array:
-    """Torque coefficient, which is the power coefficient too."""
-    return 0.5 * case.solidity * sums.drag[:, 1]
-
-
-def hub_moments(case: Case, motion: Motion, sums: Sums) -> tuple[Array, Array]:
+def hub_moments(case: Case, motion: Motion, loads: Loads) -> tuple[Array, Array]:
     """Moments about the centre of gravity by cosine and sine, over rho A (Omega R)^2 R; zero in balance.
 
     The disc's tilt from the shaft strains the hub by N I Omega^2 (nu^2 - 1) / 2 per radian; against it stand the
@@ -93,41 +93,33 @@ def hub_moments(case: Case, motion: Motion, sums: Sums) -> tuple[Array, Array]:
     gravity. The airframe's drag acts there. The part of the lift that a hinge offset passes on at once is left out, as
     in the usual formula for hub moment. Where no centre of gravity is stated, the tilt itself must vanish.
     """
-    lift = thrust(case, sums)
     hub = 0.25 * case.solidity * (case.stiffness - 1.0) / case.flap_gain
     ahead_cosine, ahead_sine = case.cg_ahead * np.cos(case.wind_azimuth), -case.cg_ahead * np.sin(case.wind_azimuth)
-    pitching = hub * motion.b1c - rearward_force(case, motion, sums) * case.hub_height + lift * ahead_cosine
-    rolling = hub * motion.b1s - side_force(case, motion, sums) * case.hub_height + lift * ahead_sine
+    pitching = hub * motion.b1c - loads.rearward * case.hub_height + loads.thrust * ahead_cosine
+    rolling = hub * motion.b1s - loads.side * case.hub_height + loads.thrust * ahead_sine
     stated = case.hub_height > 0.0
     return np.where(stated, pitching, case.weight * motion.b1c), np.where(stated, rolling, case.weight * motion.b1s)
 
 
-def coefficients(case: Case, motion: Motion, sums: Sums) -> Array:
-    """CT, CH, CY and CQ, (batch, 4)."""
-    parts = thrust(case, sums), rearward_force(case, motion, sums), side_force(case, motion, sums), torque(case, sums)
-    return np.array(parts).T
-
-
-def residuals(case: Case, motion: Motion, sums: Sums) -> Array:
-    """All nine equations, (batch, 9).
+def residuals(case: Case, motion: Motion, sums: Sums, wanted: tuple[int, ...]) -> Array:
+    """The equations wanted, then CT, CH, CY and CQ: (batch, wanted + 4).
 
     Vertical: T cos(tilt) + H sin(tilt) = n W + D sin(climb). In plane: T sin(tilt) - H cos(tilt) = D cos(climb), both
     over n W. Drag acts along the flight path, H in the disc's plane.
     """
-    lift, rearward = thrust(case, sums), rearward_force(case, motion, sums)
+    loads, mu = loads_of(case, motion, sums), motion.mu(case)
     cosine, sine = np.cos(motion.tilt), np.sin(motion.tilt)
-    mu = motion.mu(case)
     scale = 2.0 * np.sqrt(mu * mu + 0.5 * _REFERENCE_LOADING * case.solidity)
-    return np.array(
-        [
-            (lift * cosine + rearward * sine - case.drag * np.sin(motion.climb)) / case.weight - 1.0,
-            (lift * sine - rearward * cosine - case.drag * np.cos(motion.climb)) / case.weight,
-            *flap_balance(case, motion, sums),
-            induced_balance(lift, mu, motion.axial(case), motion.induced) / scale,
-            torque(case, sums) / case.weight,
-            *(moment / case.weight for moment in hub_moments(case, motion, sums)),
-        ]
-    ).T
+    parts = [
+        (loads.thrust * cosine + loads.rearward * sine - case.drag * np.sin(motion.climb)) / case.weight - 1.0,
+        (loads.thrust * sine - loads.rearward * cosine - case.drag * np.cos(motion.climb)) / case.weight,
+        *flap_balance(case, motion, sums),
+        induced_balance(loads.thrust, mu, motion.axial(case), motion.induced) / scale,
+        loads.torque / case.weight,
+    ]
+    if HUB_COSINE in wanted:
+        parts.extend(moment / case.weight for moment in hub_moments(case, motion, loads))
+    return np.array([*(parts[one] for one in wanted), loads.thrust, loads.rearward, loads.side, loads.torque]).T
 
 
 @dataclass(frozen=True, eq=False)
@@ -175,11 +167,7 @@ class Balance:
     def left(self, x: Array, members: Members) -> Array:
         """Residuals of the equations in force and then CT, CH, CY, CQ, (member, equations + 4)."""
         case, motion = self._members(members), Motion(*self.columns(x, members).T)
-        return self._left(case, motion, disc_of(case, motion, self.model).sums)
-
-    def _left(self, case: Case, motion: Motion, sums: Sums) -> Array:
-        own = residuals(case, motion, sums)[:, self.way.equations]
-        return np.concatenate([own, coefficients(case, motion, sums)], axis=1)
+        return residuals(case, motion, disc_of(case, motion, self.model).sums, self.way.equations)
 
     def slopes(self, x: Array, members: Members) -> tuple[Array, Array]:
         """What `left` gives, and the equations' slopes by the free unknowns (member, equation, free).
@@ -191,7 +179,7 @@ class Balance:
         motion = Motion(*columns.T)
         disc = disc_of(case, motion, self.model)
         sums, terms = disc.sums, disc.terms
-        left = self._left(case, motion, sums)
+        left = residuals(case, motion, sums, self.way.equations)
         now = left[:, : len(self.way.equations)]
         # Every free unknown moved a little in turn, all in one batch: (free, member) run together.
         count, free = x.shape[0], len(self.way.free)
@@ -213,7 +201,7 @@ class Balance:
             for own, slopes in zip((sums.normal, sums.drag), self._sum_slopes(case, disc), strict=True)
         )
         moved_sums = Sums(normal.reshape(free * count, -1), drag.reshape(free * count, -1))
-        after = residuals(many, moved_motion, moved_sums)[:, self.way.equations].reshape(free, count, -1)
+        after = residuals(many, moved_motion, moved_sums, self.way.equations).reshape(free, count, -1)[:, :, :free]
         return left, ((after - now) / _UNKNOWN_STEP).transpose(1, 2, 0)
 
     def _sum_slopes(self, case: Case, disc: Disc) -> tuple[list[Array], list[Array]]:

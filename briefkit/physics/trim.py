@@ -13,8 +13,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from briefkit.physics import balance as equations
-from briefkit.physics.balance import BALANCED, GLIDING, HELD, TRIMMED, WINDMILLING, Model
+from briefkit.physics.balance import BALANCED, GLIDING, HELD, TRIMMED, WINDMILLING, Model, disc_of, loads_of
 from briefkit.physics.rotor import Case, Rotor, State, Values, case_of
 from briefkit.physics.section import Section
 from briefkit.physics.solving import solved, turned
@@ -146,7 +145,8 @@ def vertical_gust(before: Trim, gust: Values) -> Gust:
     """
     case, columns = Controls.of(before).spread(case_of(before.rotor, before.state, gust))
     settled = solved(before.rotor, before.state, HELD, before.model, case, columns)
-    disc = equations.disc_of(case, before.motion, before.model)
+    disc = disc_of(case, before.motion, before.model)
     gone = np.where(before.solved & settled.solved, 1.0, np.nan)
     angle = tip_angle(before.rotor, case, disc.terms)
-    return Gust(before, angle * gone, equations.thrust(case, disc.sums) / before.ct * gone, settled)
+    thrust = loads_of(case, before.motion, disc.sums).thrust
+    return Gust(before, angle * gone, thrust / before.ct * gone, settled)
