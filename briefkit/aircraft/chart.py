@@ -15,6 +15,7 @@ from briefkit.physics import atmosphere
 from briefkit.units import GAS_CONSTANT, GRAVITY, LAPSE_RATE, SEA_LEVEL_PRESSURE, SEA_LEVEL_TEMPERATURE
 
 Floats = NDArray[np.float64]
+Texts = NDArray[np.object_]
 
 
 class ReadingRule(StrEnum):
@@ -48,10 +49,12 @@ class VneChart:
     lightest mass holds for anything lighter. `cap` [m/s indicated] is taken after reading, the lesser of the two.
 
     `rows` is the chart as typed (header first), for the page and the read-back sheet; `printed`, shaped as `speeds`,
-    the text of each typed cell, "" where no cell was typed. `reading_error` [m/s] is the half-width of reading a
-    printed curve; 0 for printed figures. `covers_temperatures` is the statement, with its page, that a chart without a
-    temperature axis holds at every permitted temperature. `reason` is the manual's own statement, with its page, of
-    what sets VNE; `entry_reason` the author's answer to a finding on cells.
+    the text of each typed cell, "" where no cell was typed; `typed` the axes as typed (down, across, third), with the
+    text of each entry. `reading_error` [m/s] is the half-width of reading a printed curve; 0 for printed figures.
+    `covers_temperatures` is the statement, with its page, that a chart without a temperature axis holds at every
+    permitted temperature. `reason` is the manual's own statement, with its page, of what sets VNE. `cap_text` is the
+    cap as typed; `lowered` says by how much a configuration lowers every entry ("15 kt"), `speeds` being lowered
+    already. Each of the two has its source where it is not the chart's.
     """
 
     heights: tuple[float, ...]
@@ -64,13 +67,18 @@ class VneChart:
     reading_error: float = 0.0
     covers_temperatures: str = ""
     reason: str = ""
-    entry_reason: str = ""
     rotor_speeds: tuple[float, ...] = ()
     density_altitude: bool = False
     bands: bool = False
     or_less: bool = False
     cap: float | None = None
     straight: tuple[Axis, ...] = ()
+    printed: Texts | None = None
+    typed: tuple[tuple[Axis, tuple[str, ...]], ...] = ()
+    cap_text: str = ""
+    cap_source: str = ""
+    lowered: str = ""
+    lowered_source: str = ""
 
     def __post_init__(self) -> None:
         lengths = tuple(max(len(nodes), 1) for nodes in self.axes.values())
@@ -81,6 +89,11 @@ class VneChart:
     def axes(self) -> dict[Axis, tuple[float, ...]]:
         """Every axis with its nodes, rising; an axis the chart does not have is empty."""
         return dict(zip(Axis, (self.heights, self.temperatures, self.masses, self.rotor_speeds), strict=True))
+
+    @property
+    def variables(self) -> tuple[Axis, ...]:
+        """What VNE varies with, in words of the manual: the typed axes."""
+        return tuple(axis for axis, _ in self.typed)
 
     @property
     def lowest_mass(self) -> float:

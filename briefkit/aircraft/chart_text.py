@@ -1,11 +1,12 @@
 r"""Charts as text blocks laid out like the manual's page, typed or pasted from a spreadsheet.
 
-Cells are parted by tabs, else by semicolons, else by runs of spaces; a comma never parts cells ("2,000" is one number).
-Every faulty cell is named by its row and column as the person sees them:
-
     ft \ degC    -20     0    +20    +40     kt indicated
     0            112   112    112    108
     2,000        112   112    107     99
+
+Down the side and across go two of pressure altitude (ft, m), density altitude (DA ft, DA m), temperature (degC), mass
+(lb, kg) and rotor speed (%); one of them alone is a chart too. A third is typed as several such charts, each under a
+line "at 1,700 lb or less".
 """
 
 from __future__ import annotations
@@ -15,231 +16,200 @@ from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
+from numpy.typing import NDArray
 
 from briefkit import units
+from briefkit.aircraft import cells
+from briefkit.aircraft.cells import AXES, SPEEDS, Block, Labels, Row
 from briefkit.aircraft.chart import Floats
-from briefkit.errors import ReadingError
 from briefkit.reading.document import Document
-from briefkit.reading.quantity import quoted, spelling
+from briefkit.reading.quantity import quoted
 
-_CORNER = re.compile(r"[^\s\\]+(?:\s*\\\s*[^\s\\]+)*")
-_SPEEDS: Final = tuple(units.permitted_units("speed"))
-_ACROSS: Final = {unit: kind for kind in ("temperature", "mass") for unit in units.permitted_units(kind)}
-_HOTTEST: Final = 55.0  # degC; above it a figure is most likely in Fahrenheit
-_FASTEST: Final = {"kt": 250.0, "km/h": 460.0, "mph": 290.0}
-_SPLIT: Final = "a space inside a number parts it: write 2,000 or 2000"
-
-_EMPTY: Final = "a chart has no empty cells: type the figure from the manual"
+_AXIS_TEXT: Final = r"(?:DA\s+)?[^\s\\]+"
+_CORNER = re.compile(rf"{_AXIS_TEXT}(?:\s*\\\s*{_AXIS_TEXT})*")
+_EXAMPLE: Final = r'like "ft \ degC   -20   0   +20   kt indicated"'
+_DOWN: Final = f"{', '.join(AXES)}: pressure altitudes go down the side as a rule"
+_TWO: Final = (
+    'a chart varies with at most two variables (14 CFR 27.1505(b)(1)); a third is typed as charts under lines like "at '
+    '2,006 lb or less", with a reason'
+)
+Texts = NDArray[np.object_]
 
 
 @dataclass(frozen=True)
-class VneTable:
-    """A chart as typed, in SI: heights [m], columns [K or kg], speeds [m/s] of shape (heights, columns)."""
+class TypedChart:
+    """A chart as typed, in SI: its axes (down, across, third, as far as there are), speeds [m/s] and the text of each
+    cell, both of the shape of the axes; NaN where the manual prints no value. `rows` is the text, header first.
 
-    heights: tuple[float, ...]
-    across: str  # "temperature", "mass" or "" (one column, no axis across)
-    columns: tuple[float, ...]
+    `straight` where the axis down is read along straight lines.
+    """
+
+    axes: tuple[Labels, ...]
     speeds: Floats
+    texts: Texts
     speed_unit: str
-    height_unit: str
     rows: tuple[tuple[str, ...], ...]
-    or_less: bool = False  # the first column says so
+    straight: bool = False
 
 
-@dataclass(frozen=True)
-class CalibrationRows:
-    """A calibration as typed: unit, indicated and calibrated speeds [m/s], and the rows, header first."""
-
-    unit: str
-    indicated: tuple[float, ...]
-    calibrated: tuple[float, ...]
-    rows: tuple[tuple[str, ...], ...]
-
-
-@dataclass(frozen=True)
-class _Row:
-    line: int
-    cells: tuple[str, ...]
-
-
-def read_vne(document: Document, key: str, text: str) -> VneTable | None:
+def read_vne(document: Document, key: str, text: str) -> TypedChart | None:
     """The VNE chart typed at a dotted key; None, with its faults recorded in the document, where it has any."""
-    before = len(document.faults)
-    rows, parted = _rows(text, document.block_line(key))
-    if len(rows) < 3:
+    blocks, parted = cells.split(text, document.block_line(key))
+    if not parted and len(re.findall(r"\d\s*,(?!\d{3}\b)", text)) > sum(len(block.rows) for block in blocks):
+        first = blocks[0].rows[0]
+        read = f"commas between cells: {quoted(' '.join(first.cells))}"
+        permitted = "tabs, semicolons or spaces between cells; a comma groups digits"
+        document.fault(key, read, permitted, "write ; for the commas", first.line)
+        return None
+    charts = [_read_block(document, f"{key}, at {block.label}" if block.label else key, block, parted)
+              for block in blocks]  # fmt: skip
+    found = [chart for chart in charts if chart is not None]
+    if len(found) < len(charts):
+        return None
+    if len(found) == 1 and not blocks[0].label:
+        return found[0]
+    return stacked(document, key, blocks, found)
+
+
+def stacked(document: Document, key: str, blocks: list[Block], charts: list[TypedChart]) -> TypedChart | None:
+    """Charts each under its line "at ..." as one, with that as one more axis; None with faults."""
+    first = charts[0]
+    if len(blocks) < 2 or not blocks[0].label:
+        read = "one chart under a line" if len(blocks) < 2 else "a chart without a line above it"
         document.fault(
-            key, f"{len(rows)} lines", r'a line like "ft \ degC  0  +20  kt indicated", then two rows or more'
+            key, read, 'two charts or more, each under a line like "at 1,700 lb or less"', line=blocks[0].line
         )
         return None
-    if not parted and len(re.findall(r"\d\s*,(?!\d{3}\b)", text)) > len(rows):
-        read = f"commas between cells: {quoted(' '.join(rows[0].cells))}"
-        permitted = "tabs, semicolons or spaces between cells; a comma groups digits"
-        document.fault(key, read, permitted, "write ; for the commas", rows[0].line)
+    for block, chart in zip(blocks[1:], charts[1:], strict=True):
+        if chart.axes != first.axes or chart.speed_unit != first.speed_unit:
+            remedy = "all charts under one key have the same rows and columns"
+            document.fault(
+                f"{key}, at {block.label}", "other rows or columns", "those of the first", remedy, block.line
+            )
+            return None
+    names = [(block.line, f"at {block.label}", block.label) for block in blocks]
+    third = cells.named_labels(document, key, names, {axis.axis for axis in first.axes})
+    if third is None:
+        return None
+    rows = [first.rows[0]]
+    for label, chart in zip(third.texts, charts, strict=True):
+        rows += [(f"at {label}", *[""] * (len(first.rows[0]) - 1)), *chart.rows[1:]]
+    return TypedChart(
+        (*first.axes, third),
+        np.stack([chart.speeds for chart in charts], axis=-1),
+        np.stack([chart.texts for chart in charts], axis=-1),
+        first.speed_unit,
+        tuple(rows),
+        first.straight,
+    )
+
+
+def _read_block(document: Document, key: str, block: Block, parted: str) -> TypedChart | None:
+    before = len(document.faults)
+    rows = block.rows
+    if len(rows) < 3:
+        permitted = r'a line like "ft \ degC  0  +20  kt indicated", then two rows or more'
+        document.fault(key, f"{len(rows)} lines", permitted)
         return None
     head = _corner(document, key, rows[0], parted)
     if head is None:
         return None
-    height_unit, across, across_unit, labels, speed_unit = head
-    columns = _axis(
-        document, key, [(rows[0].line, f"header, column {label}", label) for label in labels] if across else []
-    )
-    heights = _axis(document, key, [(row.line, f"row {row.cells[0]}", row.cells[0]) for row in rows[1:]])
-    if across == "temperature" and any(value is not None and value > _HOTTEST for value in columns):
-        hottest = max(value for value in columns if value is not None)
-        document.fault(f"{key}, header", f"{hottest:g} {across_unit}", f"up to {_HOTTEST:g} degC", "is it Fahrenheit?")
-    speeds = _speeds(document, key, rows[1:], labels, speed_unit)
+    down, across, heads, speed_unit = head
+    axes = []
+    if across:
+        axes.append(cells.labels(document, key, across, [(rows[0].line, f"header, column {x}", x) for x in heads]))
+    sides = [(row.line, f"row {row.cells[0]}", row.cells[0]) for row in rows[1:]]
+    axes.insert(0, cells.labels(document, key, down, sides))
+    speeds = _speeds(document, key, rows[1:], heads, speed_unit)
+    if len(document.faults) == before:
+        _blank_lines(document, key, rows, heads, speeds)
     if len(document.faults) > before:
         return None
-    shown = ((rf"{height_unit} \ {across_unit}".rstrip(" \\"), *labels), *(row.cells for row in rows[1:]))
-    return VneTable(
-        tuple(units.to_si(value, "height", height_unit) for value in heights if value is not None),
-        across,
-        tuple(units.to_si(value, across, across_unit) for value in columns if value is not None),
-        units.to_si(1.0, "speed", speed_unit) * np.array(speeds, dtype=float),
+    corner = rf"{down} \ {across}".rstrip(" \\")
+    shape = tuple(len(axis.values) for axis in axes if axis)
+    texts = np.array([["" if cell in cells.NO_VALUE else cell for cell in row.cells[1:]] for row in rows[1:]], object)
+    return TypedChart(
+        tuple(axis for axis in axes if axis),
+        (units.to_si(1.0, "speed", speed_unit) * np.array(speeds, dtype=float)).reshape(shape),
+        texts.reshape(shape),
         speed_unit,
-        height_unit,
-        shown,
-        across == "mass" and labels[0].startswith(("<=", "≤")),
+        ((corner, *heads), *(row.cells for row in rows[1:])),
     )
 
 
-def read_calibration(document: Document, key: str, text: str) -> CalibrationRows | None:
-    """The calibration typed at a dotted key; None, with its faults recorded in the document, where it has any."""
-    before = len(document.faults)
-    rows, _ = _rows(text, document.block_line(key))
-    header = " ".join(rows[0].cells) if rows else ""
-    match = re.fullmatch(r"(\S+) indicated (\S+) calibrated", " ".join(header.split()))
-    if match is None or match[1] != match[2] or match[1] not in _SPEEDS:
-        permitted = f'a first line "kt indicated    kt calibrated"; units {", ".join(_SPEEDS)}, the same in both'
-        document.fault(f"{key}, header", quoted(header), permitted, line=rows[0].line if rows else 0)
-        return None
-    if len(rows) < 3:
-        document.fault(key, f"{len(rows) - 1} rows", "two rows or more below the header")
-        return None
-    for row in rows[1:]:
-        if len(row.cells) != 2:
-            document.fault(f"{key}, row {row.cells[0]}", f"{len(row.cells)} cells", "2 cells", _SPLIT, row.line)
-    whole = [row for row in rows[1:] if len(row.cells) == 2]
-    columns = []
-    for place, name in enumerate(("indicated", "calibrated")):
-        cells = [(row.line, f"row {row.cells[0]}, {name}", row.cells[place]) for row in whole]
-        columns.append(_axis(document, key, cells))
-        for (line, label, cell), value in zip(cells, columns[-1], strict=True):
-            if value is not None and not 0.0 < value <= _FASTEST[match[1]]:
-                permitted = f"above 0, up to {_FASTEST[match[1]]:g} {match[1]}"
-                document.fault(f"{key}, {label}", cell, permitted, "look again in the manual", line)
-    if len(document.faults) > before:
-        return None
-    indicated, calibrated = (
-        tuple(units.to_si(value, "speed", match[1]) for value in column if value is not None) for column in columns
-    )
-    shown = ((f"{match[1]} indicated", f"{match[1]} calibrated"), *(row.cells for row in rows[1:]))
-    return CalibrationRows(match[1], indicated, calibrated, shown)
-
-
-def _rows(text: str, first_line: int) -> tuple[list[_Row], str]:
-    """Lines with something on them as cells, and what parts the cells ("" for runs of spaces)."""
-    parted = "\t" if "\t" in text else ";" if ";" in text else ""
-    rows = []
-    for offset, line in enumerate(text.lstrip("\ufeff").replace("\r\n", "\n").split("\n")):
-        if not line.strip(" \t;"):
-            continue
-        cells = [cell.strip() for cell in (line.rstrip(" \t;") if parted else line).split(parted or None)]
-        rows.append(_Row(first_line + offset, tuple(cells)))
-    return rows, parted
-
-
-def _corner(document: Document, key: str, row: _Row, parted: str) -> tuple[str, str, str, list[str], str] | None:
-    """Height unit, kind and unit of the axis across, column labels, speed unit; None with a fault."""
+def _corner(document: Document, key: str, row: Row, parted: str) -> tuple[str, str, list[str], str] | None:
+    """What goes down and across (as typed), column heads, speed unit; None with a fault."""
     where = f"{key}, header"
-    example = r'like "ft \ degC   -20   0   +20   kt indicated"'
-    cells = list(row.cells)
+    heads = list(row.cells)
     if parted:
-        corner, *cells = cells
-        speed = cells.pop() if cells else ""
-        while cells and not cells[-1]:
-            cells.pop()
+        corner, *heads = heads
+        speed = heads.pop() if heads else ""
+        while heads and not heads[-1]:
+            heads.pop()
     else:
-        joined = " ".join(cells)
+        joined = " ".join(heads)
         match = _CORNER.match(joined)
         corner = match[0] if match else ""
-        cells = joined[len(corner) :].split()
-        numbers = next((i for i, cell in enumerate(cells) if cell[0].isalpha()), len(cells))
-        cells, speed = cells[:numbers], " ".join(cells[numbers:])
-    parts = [part.strip() for part in corner.split("\\")]
+        heads = joined[len(corner) :].split()
+        numbers = next((i for i, cell in enumerate(heads) if cell[0].isalpha()), len(heads))
+        heads, speed = heads[:numbers], " ".join(heads[numbers:])
+    parts = [" ".join(part.split()) for part in corner.split("\\")]
     if len(parts) > 2:
-        remedy = "a chart varies with at most two of altitude, temperature, mass and rotor speed (14 CFR 27.1505(b)(1))"
-        document.fault(where, quoted(corner), f"two axes, {example}", remedy, row.line)
+        document.fault(where, quoted(corner), f"two axes, {_EXAMPLE}", _TWO, row.line)
         return None
-    height, across = parts[0], parts[1] if len(parts) == 2 else ""
+    down, across = parts[0], parts[1] if len(parts) == 2 else ""
     faults = []
-    if height not in units.permitted_units("height"):
-        faults.append((height, "ft or m: pressure altitudes go down the side"))
-    if across not in _ACROSS and len(parts) == 2:
-        faults.append((across, f"{', '.join(_ACROSS)}: temperatures or masses go across"))
-    unit, _, kind = speed.partition(" ")
-    if unit not in _SPEEDS or kind.strip() != "indicated":
-        permitted = (
-            f"the unit of the cells at the end of the line: {', '.join(f'{unit} indicated' for unit in _SPEEDS)}"
-        )
+    if down not in AXES:
+        faults.append((down, _DOWN))
+    if across not in AXES and len(parts) == 2:
+        faults.append((across, f"{', '.join(AXES)}: temperatures or masses go across as a rule"))
+    elif across and down in AXES and AXES[across][0] is AXES[down][0]:
+        faults.append((across, f"two different variables; {_DOWN}"))
+    unit = speed_unit(speed)
+    if not unit:
+        permitted = f"the unit of the cells at the end of the line: {', '.join(f'{unit} indicated' for unit in SPEEDS)}"
         faults.append((speed, permitted))
     for read, permitted in faults:
-        document.fault(where, quoted(read) if read else "nothing", permitted, example, row.line)
+        document.fault(where, quoted(read) if read else "nothing", permitted, _EXAMPLE, row.line)
     if not across:
-        return None if faults else (height, "", "", ["VNE"], unit)
-    if len(cells) < 2:
-        document.fault(where, f"{len(cells)} columns", f"two columns or more, {example}", line=row.line)
-    return None if faults or len(cells) < 2 else (height, _ACROSS.get(across, ""), across, cells, unit)
+        return None if faults else (down, "", ["VNE"], unit)
+    if len(heads) < 2:
+        document.fault(where, f"{len(heads)} columns", f"two columns or more, {_EXAMPLE}", line=row.line)
+    return None if faults or len(heads) < 2 else (down, across, heads, unit)
 
 
-def _axis(document: Document, key: str, cells: list[tuple[int, str, str]]) -> list[float | None]:
-    """The labels of an axis as numbers, each above the one before; None for a cell that has a fault."""
-    found: list[float | None] = []
-    for line, place, cell in cells:
-        value = _number(document, f"{key}, {place}", cell.removeprefix("<=").removeprefix("≤"), line)
-        previous = next((other for other in reversed(found) if other is not None), None)
-        if value is not None and previous is not None and value <= previous:
-            permitted = f"more than the one before it, {previous:,g}"
-            document.fault(f"{key}, {place}", cell, permitted, "rising order, each value once", line)
-        found.append(value)
-    return found
+def speed_unit(text: str) -> str:
+    """The unit of "kt indicated"; "" where it says anything else."""
+    unit, _, kind = text.partition(" ")
+    return unit if unit in SPEEDS and kind.strip() == "indicated" else ""
 
 
 def _speeds(
-    document: Document, key: str, rows: list[_Row], labels: list[str], speed_unit: str
+    document: Document, key: str, rows: tuple[Row, ...], heads: list[str], unit: str
 ) -> list[list[float | None]]:
-    fastest = _FASTEST[speed_unit]
     found = []
     for row in rows:
-        cells = row.cells[1:]
         place = f"{key}, row {row.cells[0]}"
-        if len(cells) != len(labels):
-            permitted = f"{len(labels)}, one below each column {', '.join(labels)}"
-            document.fault(
-                place, f"{len(cells)} cells", permitted, _SPLIT if len(cells) > len(labels) else _EMPTY, row.line
-            )
+        if len(row.cells) - 1 != len(heads):
+            permitted = f"{len(heads)}, one below each column {', '.join(heads)}"
+            remedy = cells.SPLIT if len(row.cells) - 1 > len(heads) else cells.EMPTY
+            document.fault(place, f"{len(row.cells) - 1} cells", permitted, remedy, row.line)
             continue
-        values = []
-        for label, cell in zip(labels, cells, strict=True):
-            here = f"{place}, column {label}"
-            value = _number(document, here, cell, row.line)
-            if value is not None and not 0.0 < value <= fastest:
-                document.fault(
-                    here, cell, f"above 0, up to {fastest:g} {speed_unit}", "look again in the manual", row.line
-                )
-            values.append(value)
-        found.append(values)
+        pairs = zip(heads, row.cells[1:], strict=True)
+        found.append([cells.speed(document, f"{place}, column {head}", cell, unit, row.line) for head, cell in pairs])
     return found
 
 
-def _number(document: Document, place: str, cell: str, line: int) -> float | None:
-    try:
-        return units.read(cell, "number")
-    except ReadingError as error:
-        remedy = spelling(cell, "number") or error.remedy
-        if cell == "?":
-            remedy = "type the figure from the manual"
-        elif not cell:
-            remedy = _EMPTY
-        document.fault(place, quoted(cell) if cell else "an empty cell", "a number without unit", remedy, line)
-        return None
+def _blank_lines(
+    document: Document, key: str, rows: tuple[Row, ...], heads: list[str], speeds: list[list[float | None]]
+) -> None:
+    """A row or column without any value would say the chart reaches there."""
+    blank = np.isnan(np.array(speeds, dtype=float))
+    for row, none in zip(rows[1:], blank.all(axis=1), strict=True):
+        if none:
+            document.fault(
+                f"{key}, row {row.cells[0]}", "no value in the row", "a figure", "take the row out", row.line
+            )
+    for i in np.nonzero(blank.all(axis=0))[0]:
+        place = f"{key}, header, column {heads[int(i)]}"
+        document.fault(place, "no value below it", "a figure", "take the column out", rows[0].line)

@@ -1,25 +1,22 @@
 """Cross-checks of an aircraft file: plain functions over what could be read, each returning the faults it found.
 
-What cannot be meant is a fault. What a manual could print, though it is rarely meant, is an entry finding: it needs a
-written reason before release (see `entry_findings`).
+What cannot be meant is a fault. What a manual could print, though it is rarely meant, is an entry
+finding (findings.py).
 """
 
 from __future__ import annotations
 
 import math
+from collections.abc import Iterable
 from typing import Final
 
-import numpy as np
-
 from briefkit import units
-from briefkit.aircraft.chart_text import VneTable
-from briefkit.aircraft.model import Aircraft
+from briefkit.aircraft.chart_text import TypedChart
 from briefkit.aircraft.tables import LimitsTable, RotorTable, UnitsTable
 from briefkit.errors import Fault
 from briefkit.reading.quantity import Typed
 
 _DENSITY: Final = units.SEA_LEVEL_PRESSURE / (units.GAS_CONSTANT * units.SEA_LEVEL_TEMPERATURE)
-_SLOWEST_CAS: Final = 40.0 * units.KNOT  # 14 CFR 27.1505(a)(1)
 
 
 def limit_faults(limits: LimitsTable) -> list[Fault]:
@@ -31,15 +28,20 @@ def limit_faults(limits: LimitsTable) -> list[Fault]:
     ):
         if low and high and _si(low) >= _si(high):
             faults.append(_fault(f"limits.{low_key}", low.text, f"less than {high_key}, {high.text}"))
-    for key, pair in (("rotor_on", limits.rotor_on), ("rotor_off", limits.rotor_off)):
+    return faults + rotor_range_faults("limits", limits.rotor_on, limits.rotor_off)
+
+
+def rotor_range_faults(table: str, on: list[Typed] | None, off: list[Typed] | None) -> list[Fault]:
+    """Rotor-speed ranges the wrong way round, and one for power on without 100 %."""
+    faults = []
+    for key, pair in (("rotor_on", on), ("rotor_off", off)):
         if pair and _si(pair[0]) >= _si(pair[1]):
             faults.append(
-                _fault(f"limits.{key}", f"{pair[0].text} to {pair[1].text}", "the lower speed, then the higher")
+                _fault(f"{table}.{key}", f"{pair[0].text} to {pair[1].text}", "the lower speed, then the higher")
             )
-    on = limits.rotor_on
     if on and _si(on[0]) < _si(on[1]) and not _si(on[0]) <= 1.0 <= _si(on[1]):
         read = f"{on[0].text} to {on[1].text}"
-        faults.append(_fault("limits.rotor_on", read, "a range with 100 % in it", "is 100 % the speed of rotor.rpm?"))
+        faults.append(_fault(f"{table}.rotor_on", read, "a range with 100 % in it", "is 100 % the speed of rotor.rpm?"))
     return faults
 
 
@@ -96,17 +98,31 @@ def loading_faults(rotor: RotorTable, limits: LimitsTable) -> list[Fault]:
     ]
 
 
-def unit_faults(chart: VneTable | None, calibration_unit: str, shown: UnitsTable) -> list[Fault]:
-    """Charts in another unit than the type's instruments."""
-    faults = []
-    for key, read, typed, name in (
-        ("vne.power_on.chart", chart.speed_unit if chart else "", shown.speed, "speed"),
-        ("vne.power_on.chart", chart.height_unit if chart else "", shown.height, "height"),
-        ("calibration.table", calibration_unit, shown.speed, "speed"),
-    ):
-        if read and typed and read != typed:
-            faults.append(_fault(key, read, f"{typed}, as units.{name} says", "correct the one that is wrong"))
-    return faults
+def unit_faults(key: str, typed: Iterable[tuple[str, str]], shown: UnitsTable) -> list[Fault]:
+    """What is typed in another unit than the type's manual has: (key below `key`, unit as typed), one fault a key."""
+    faults: dict[str, Fault] = {}
+    for name, unit in typed:
+        for quantity, meant in (("speed", shown.speed), ("height", shown.height), ("mass", shown.mass)):
+            if unit in units.permitted_units(quantity) and meant and unit != meant:
+                permitted = f"{meant}, as units.{quantity} says"
+                place = f"{key}.{name}" if name else key
+                faults.setdefault(place, _fault(place, unit, permitted, "correct the one that is wrong"))
+    return list(faults.values())
+
+
+def typed_units(table: object) -> list[tuple[str, str]]:
+    """The keys of a table with the units of the quantities typed under them."""
+    found = []
+    for name, value in vars(table).items():
+        for typed in value if isinstance(value, list) else [value]:
+            if isinstance(typed, Typed):
+                found.append((name, typed.unit))
+    return found
+
+
+def chart_units(chart: TypedChart | None) -> list[str]:
+    """The units of a chart's cells and of its axes."""
+    return [] if chart is None else [chart.speed_unit, *(axis.unit for axis in chart.axes)]
 
 
 def calibration_faults(indicated: tuple[float, ...], calibrated: tuple[float, ...]) -> list[Fault]:
@@ -122,41 +138,6 @@ def calibration_faults(indicated: tuple[float, ...], calibrated: tuple[float, ..
                 )
             ]
     return []
-
-
-def entry_findings(aircraft: Aircraft) -> list[Fault]:
-    """What the chart says that needs a written reason: a VNE that rises or is under 40 kt, a power-off VNE above all.
-
-    Empty where the author has given `entry_reason` in [vne.power_on].
-    """
-    chart, unit = aircraft.vne, aircraft.units.speed
-    found = []
-    remedy = "look again in the manual; if it is so printed, say why in vne.power_on.entry_reason"
-    columns = chart.temperatures or chart.masses
-    across = "temperature" if chart.temperatures else "mass"
-    cells = chart.speeds.reshape(len(chart.heights), -1)
-    for i, row in enumerate(cells):
-        for j, cell in enumerate(row):
-            place = f"vne.power_on.chart, row {chart.rows[i + 1][0]}"
-            place += f", column {chart.rows[0][j + 1]}" if columns else ""
-            shown = chart.rows[i + 1][j + 1]
-            if i and cell > cells[i - 1, j] + 1e-9:
-                found.append(
-                    _fault(
-                        place, shown, f"VNE that does not rise with height ({chart.rows[i][j + 1]} above it)", remedy
-                    )
-                )
-            if j and cell > row[j - 1] + 1e-9:
-                permitted = f"VNE that does not rise with {across} ({chart.rows[i + 1][j]} before it)"
-                found.append(_fault(place, shown, permitted, remedy))
-            calibrated = float(aircraft.calibration.to_calibrated(float(cell)))
-            if (cell if math.isnan(calibrated) else calibrated) < _SLOWEST_CAS:
-                found.append(_fault(place, shown, "40 kt calibrated or more (14 CFR 27.1505(a)(1))", remedy))
-    highest = float(np.max(cells))
-    if aircraft.vne_off.constant.value > highest:
-        permitted = f"not above every power-on VNE ({units.from_si(highest, 'speed', unit):g} {unit})"
-        found.append(_fault("vne.power_off.constant", aircraft.vne_off.constant.text, permitted, remedy))
-    return [] if chart.entry_reason else found
 
 
 def _fault(key: str, read: str, permitted: str, remedy: str = "") -> Fault:

@@ -3,59 +3,61 @@
 from __future__ import annotations
 
 from pathlib import Path
-from typing import Final, TypeVar
+from typing import Final
 
-from briefkit.aircraft import chart_text, cross, estimates
-from briefkit.aircraft.chart import ReadingRule, VneChart
-from briefkit.aircraft.estimates import Estimate
-from briefkit.aircraft.model import (
-    Aircraft,
-    Calibration,
-    DisplayUnits,
-    HoverLine,
-    Hub,
-    Limits,
-    ManualSpeed,
-    PowerOffVne,
-    Rotation,
-    RotorData,
-    Stated,
-)
+from briefkit.aircraft import answers, configuration, cross, hover, make, manual_speeds, power_off, vne
+from briefkit.aircraft.calibration_text import CalibrationRows, read_calibration
+from briefkit.aircraft.make import needed
+from briefkit.aircraft.model import Aircraft, DisplayUnits, HoverLine, HoverTable
 from briefkit.aircraft.tables import (
     CalibrationTable,
+    ChartTable,
     HoverEntry,
     LimitsTable,
     PowerOffTable,
-    PowerOnTable,
     RecoveryTable,
     RotorTable,
     SpeedEntry,
     TypeTable,
     UnitsTable,
 )
+from briefkit.aircraft.vne import TypedVne
+from briefkit.errors import Fault, FaultyFile
 from briefkit.reading.document import Document
-from briefkit.reading.quantity import UNKNOWN, Typed, quoted
+from briefkit.reading.quantity import quoted
 
 NONE_IN_MANUAL: Final = "none in manual"
 _REQUIRED: Final = ("type", "units", "rotor", "limits", "calibration", "vne")
-_OPTIONAL: Final = ("invented", "manual", "hover", "recovery")
-
-V = TypeVar("V")
+_OPTIONAL: Final = ("invented", "manual", "hover", "recovery", configuration.KEY)
 
 
-def load_aircraft(path: Path | str) -> Aircraft:
-    """The aircraft of a TOML file, in SI; every speed in the file is an indicated one, as the manual prints it.
+def load_aircraft(path: Path | str, configuration: str = "") -> Aircraft:
+    """The aircraft of a TOML file in one of its configurations ("" for the basic one), in SI.
 
-    Raises `FaultyFile` with every fault: file, line, key or row and column, what was read, what is permitted, what to
-    write instead.
+    Every speed in the file is an indicated one, as the manual prints it. Raises `FaultyFile` with every fault of the
+    file, whichever configuration is asked for: file, line, key or row and column, what was read, what is permitted,
+    what to write instead; and where the file has no such configuration.
     """
+    known = load_configurations(path)
+    if not configuration:
+        return next(iter(known.values()))
+    if configuration not in known:
+        permitted = ", ".join(f'"{name}"' for name in known)
+        raise FaultyFile([Fault(str(path), "configuration", quoted(configuration), permitted)])
+    return known[configuration]
+
+
+def load_configurations(path: Path | str) -> dict[str, Aircraft]:
+    """Every configuration of an aircraft file by its name, the basic one first. Raises as `load_aircraft` does."""
     document = Document(path)
     document.tables("", _REQUIRED, _OPTIONAL)
-    document.tables("vne", ("power_on", "power_off"))
+    document.tables("vne", ("power_on", "power_off"), ("reasons",))
     document.tables("manual", (), ("speeds",))
     parts = _Parts(document)
     document.raise_faults()
-    return parts.aircraft()
+    found = parts.aircraft()
+    document.raise_faults()
+    return {aircraft.configuration: aircraft for aircraft in found}
 
 
 class _Parts:
@@ -68,7 +70,7 @@ class _Parts:
         self.rotor = document.table("rotor", RotorTable)
         self.limits = document.table("limits", LimitsTable)
         self.calibration = document.table("calibration", CalibrationTable)
-        self.power_on = document.table("vne.power_on", PowerOnTable)
+        self.power_on = document.table("vne.power_on", ChartTable)
         self.power_off = document.table("vne.power_off", PowerOffTable)
         self.speeds = document.entries("manual.speeds", SpeedEntry)
         self.hover = document.entries("hover", HoverEntry)
@@ -76,68 +78,142 @@ class _Parts:
         self.invented = document.data.get("invented", "")
         if not isinstance(self.invented, str):
             document.fault("invented", quoted(self.invented), "a sentence in quotes")
-        self.chart = self._chart()
+        unit = (self.units.speed or "") if self.units else ""
+        self.typed_on = vne.read(document, "vne.power_on", self.power_on) if self.power_on else None
+        self.typed_off = power_off.read(document, "vne.power_off", self.power_off) if self.power_off else None
         self.calibrated = self._calibrated()
+        self.hover_tables = self._hover()
+        self.configurations = configuration.read_all(document, unit)
+        self.answers = answers.read_answers(document, "vne.reasons", document.raw("vne.reasons"))
+        for name, entry in self.speeds:
+            manual_speeds.check(document, name, entry, unit)
         self._cross()
+        if self.units:
+            self._units(self.units)
 
-    def _chart(self) -> chart_text.VneTable | None:
-        if not self.power_on or self.power_on.chart is None:
-            return None
-        return chart_text.read_vne(self.document, "vne.power_on.chart", self.power_on.chart)
-
-    def _calibrated(self) -> chart_text.CalibrationRows | None:
+    def _calibrated(self) -> CalibrationRows | None:
         table = self.calibration
         if not table or table.table is None:
             return None
         if table.table.strip() != NONE_IN_MANUAL:
-            return chart_text.read_calibration(self.document, "calibration.table", table.table)
+            return read_calibration(self.document, "calibration.table", table.table)
         if table.spread is None:
             remedy = 'add spread = "4 kt": how far indicated and calibrated may lie apart'
             self.document.fault("calibration.spread", "nothing", f'a speed, needed with "{NONE_IN_MANUAL}"', remedy)
         return None
 
+    def _hover(self) -> list[HoverTable]:
+        found = []
+        for name, entry in self.hover:
+            lines, table = (entry.label, entry.text), (entry.kind, entry.table)
+            given = [value is not None for value in (*lines, *table)]
+            if given not in ([True, True, False, False], [False, False, True, True]):
+                if not self.document.has_fault_below(name):
+                    permitted = "label and text (a line of words), or kind and table (ceilings)"
+                    keys = [key for key, there in zip(("label", "text", "kind", "table"), given, strict=True) if there]
+                    self.document.fault(name, ", ".join(keys) or "nothing", permitted)
+            elif entry.table is not None:
+                read = hover.read_hover(self.document, f"{name}.table", entry)
+                found += [read] if read is not None else []
+        return found
+
     def _cross(self) -> None:
-        faults = cross.limit_faults(self.limits) if self.limits else []
-        if self.limits and not self.document.has_fault_below("limits"):
-            faults += cross.hottest_faults(self.limits)
+        document, limits = self.document, self.limits
+        faults = cross.limit_faults(limits) if limits else []
+        whole = limits is not None and not document.has_fault_below("limits")
+        if whole and limits is not None:
+            faults += cross.hottest_faults(limits)
         faults += cross.rotor_faults(self.rotor) if self.rotor else []
-        faults += cross.loading_faults(self.rotor, self.limits) if self.rotor and self.limits else []
-        if self.units:
-            faults += cross.unit_faults(self.chart, self.calibrated.unit if self.calibrated else "", self.units)
+        faults += cross.loading_faults(self.rotor, limits) if self.rotor and limits else []
         if self.calibrated:
             faults += cross.calibration_faults(self.calibrated.indicated, self.calibrated.calibrated)
         for fault in faults:
+            document.fault(fault.key, fault.read, fault.permitted, fault.remedy)
+        kind = self.type
+        basic, serials = ((kind.configuration or ""), (kind.serials or [])) if kind else ("", [])
+        made = make.limits(limits) if whole and not faults and limits is not None else None
+        configuration.check_all(document, self.configurations, basic, serials, made)
+
+    def _units(self, shown: UnitsTable) -> None:
+        """Everything an aircraft file takes from the manual is in the manual's units."""
+        faults = []
+        for key, table in (("limits", self.limits), ("vne.power_on", self.power_on), ("vne.power_off", self.power_off)):
+            faults += cross.unit_faults(key, cross.typed_units(table) if table else [], shown)
+        charts = [("vne.power_on", self.typed_on), ("vne.power_off", self.typed_off)]
+        for one in self.configurations:
+            figures = [("vne", figure.unit) for figure in (one.cap, one.less) if figure is not None]
+            faults += cross.unit_faults(one.key, [*cross.typed_units(one.entry), *figures], shown)
+            charts += [(f"{one.key}.power_on", one.power_on[1])] if one.power_on else []
+            charts += [(f"{one.key}.power_off", one.power_off[1])] if one.power_off else []
+            if one.power_off:
+                faults += cross.unit_faults(f"{one.key}.power_off", cross.typed_units(one.power_off[0]), shown)
+        for key, chart in charts:
+            faults += cross.unit_faults(key, [*_chart_units(chart)] if chart else [], shown)
+        if self.calibrated:
+            faults += cross.unit_faults("calibration", [("table", self.calibrated.unit)], shown)
+        for ceilings in self.hover_tables:
+            cells = [ceilings.rows[0][0].split()[0], ceilings.rows[0][-1]]
+            faults += cross.unit_faults(f"hover ({ceilings.kind})", [("table", unit) for unit in cells], shown)
+        for fault in faults:
             self.document.fault(fault.key, fault.read, fault.permitted, fault.remedy)
 
-    def aircraft(self) -> Aircraft:
-        """The frozen model; only asked for when there is no fault, so nothing needed is missing."""
-        kind, shown = needed(self.type), needed(self.units)
+    def aircraft(self) -> list[Aircraft]:
+        """The frozen models, the basic configuration first; only asked for when there is no fault so far.
+
+        What depends on the limits (how far a slope runs) can still be a fault: then fewer come back.
+        """
+        basic = self._basic()
+        if basic is None:
+            return []
+        found = [basic]
+        for one in self.configurations:
+            made = configuration.apply(self.document, basic, one)
+            found += [made] if made is not None else []
+        return found
+
+    def _basic(self) -> Aircraft | None:
+        document, kind, shown = self.document, needed(self.type), needed(self.units)
+        on_table, off_table = needed(self.power_on), needed(self.power_off)
+        limits = make.limits(needed(self.limits))
+        chart = vne.build(document, "vne.power_on", on_table, needed(self.typed_on), limits)
+        off = power_off.build(document, "vne.power_off", off_table, self.typed_off, limits)
+        if chart is None or off is None:
+            return None
         recovery = self.recovery or RecoveryTable()
+        name = needed(kind.configuration)
         return Aircraft(
             name=needed(kind.name),
             serials=tuple(needed(kind.serials)),
-            configuration=needed(kind.configuration),
+            configuration=name,
             units=DisplayUnits(needed(shown.speed), needed(shown.height), needed(shown.mass), needed(shown.pressure)),
-            rotor=_rotor(needed(self.rotor), needed(needed(self.limits).max_mass)),
-            limits=_limits(needed(self.limits)),
-            calibration=_calibration(needed(self.calibration), self.calibrated),
-            vne=_vne(needed(self.power_on), needed(self.chart)),
-            vne_off=PowerOffVne(
-                _stated(needed(self.power_off).constant, needed(self.power_off).source), needed(self.power_off).source
-            ),
-            speeds=tuple(
-                ManualSpeed(needed(entry.label), needed(entry.text), needed(entry.applies), entry.source)
-                for _, entry in self.speeds
-            ),
-            hover=tuple(HoverLine(needed(entry.label), needed(entry.text), entry.source) for _, entry in self.hover),
+            rotor=make.rotor(needed(self.rotor), needed(needed(self.limits).max_mass)),
+            limits=limits,
+            calibration=make.calibration(needed(self.calibration), self.calibrated),
+            vne=chart,
+            vne_off=off,
+            speeds=tuple(manual_speeds.build(entry) for _, entry in self.speeds),
+            hover=self._hover_lines(),
+            hover_tables=tuple(self.hover_tables),
+            answers=self.answers,
             recovery=recovery.text or "",
             recovery_source=recovery.source,
             invented=self.invented,
-            file=self.document.path.name,
-            data_hash=self.document.data_hash,
+            file=document.path.name,
+            data_hash=document.data_hash,
             sources=self._sources(),
-            unanswered=self.document.unanswered(),
+            unanswered=document.unanswered(),
+            configurations=(name, *(needed(one.entry.name) for one in self.configurations)),
         )
+
+    def _hover_lines(self) -> tuple[HoverLine, ...]:
+        tables = iter(self.hover_tables)
+        found: list[HoverLine] = []
+        for _, entry in self.hover:
+            if entry.table is not None:
+                found += hover.printed(next(tables))
+            else:
+                found.append(HoverLine(needed(entry.label), needed(entry.text), entry.source))
+        return tuple(found)
 
     def _sources(self) -> tuple[tuple[str, str], ...]:
         found = [
@@ -155,104 +231,6 @@ class _Parts:
         return tuple(found)
 
 
-def needed(value: V | None) -> V:
-    """A value whose absence was already a fault."""
-    if value is None:
-        raise AssertionError("a missing value passed the checks of the file")
-    return value
-
-
-def _stated(typed: Typed | None, source: str, estimate: Estimate | None = None) -> Stated:
-    """A typed value, or its estimate where the author wrote "unknown"; the table's source unless it has its own."""
-    typed = needed(typed)
-    if typed.value is None:
-        estimate = needed(estimate)
-        return Stated(estimate.value, UNKNOWN, typed.source or source, typed.spread or estimate.spread, estimate.basis)
-    return Stated(typed.value, typed.text, typed.source or source, typed.spread or 0.0)
-
-
-def _derived(typed: Typed | None, source: str, estimate: Estimate, text: str) -> Stated:
-    """As `_stated`, for a key that may be left out: then the estimate under a text that says where it is from."""
-    if typed is None:
-        return Stated(estimate.value, text, source, estimate.spread, estimate.basis)
-    return _stated(typed, source, estimate)
-
-
-def _limits(table: LimitsTable) -> Limits:
-    def optional(typed: Typed | None) -> Stated | None:
-        return None if typed is None else _stated(typed, table.source)
-
-    def pair(typed: list[Typed] | None) -> tuple[Stated, Stated]:
-        low, high = needed(typed)
-        return _stated(low, table.source), _stated(high, table.source)
-
-    return Limits(
-        max_mass=_stated(table.max_mass, table.source),
-        min_mass=_stated(table.min_mass, table.source),
-        max_altitude=_stated(table.max_altitude, table.source),
-        min_temperature=_stated(table.min_temperature, table.source),
-        isa_deviation=optional(table.isa_deviation),
-        max_temperature=optional(table.max_temperature),
-        max_bank=optional(table.max_bank),
-        rotor_on=pair(table.rotor_on),
-        rotor_off=pair(table.rotor_off),
-        climb_speed=_stated(table.climb_speed, table.source),
-        source=table.source,
-    )
-
-
-def _rotor(table: RotorTable, max_mass: Typed) -> RotorData:
-    hub, source = Hub(needed(table.hub)), table.source
-    radius, chord = _stated(table.radius, source), _stated(table.chord, source)
-    slope = _stated(table.lift_slope, source, estimates.lift_slope())
-    offset_typed = needed(table.hinge_offset).value if table.hinge_offset else None
-    class_frequency = estimates.flap_frequency(hub, offset_typed or 0.0)
-    frequency = _derived(
-        table.flap_frequency, source, class_frequency, f"{class_frequency.value:.3f} for the {hub} hub"
-    )
-    equivalent = 0.0 if hub is not Hub.HINGELESS else estimates.equivalent_hinge_offset(frequency.value)
-    offset = Estimate(equivalent, 0.0, frequency.basis)
-    inertia = estimates.flap_inertia(radius.value, chord.value, slope.value)
-    return RotorData(
-        hub=hub,
-        rotation=Rotation(needed(table.rotation)),
-        blades=needed(table.blades),
-        radius=radius,
-        rpm=_stated(table.rpm, source),
-        chord=chord,
-        twist=_stated(table.twist, source, estimates.twist()),
-        root_cutout=_stated(table.root_cutout, source),
-        hinge_offset=_derived(table.hinge_offset, source, offset, f"{100.0 * equivalent:.3g} %"),
-        flap_frequency=frequency,
-        flap_inertia=_stated(table.flap_inertia, source, inertia),
-        precone=_derived(table.precone, source, estimates.precone(hub), "none stated"),
-        lift_slope=slope,
-        drag_area=_stated(table.drag_area, source, estimates.drag_area(needed(max_mass.value))),
-        source=source,
-    )
-
-
-def _calibration(table: CalibrationTable, rows: chart_text.CalibrationRows | None) -> Calibration:
-    spread = needed(table.spread.value) if table.spread else 0.0
-    if rows is None:
-        return Calibration((), (), table.source, spread)
-    return Calibration(rows.indicated, rows.calibrated, table.source, spread, rows.rows)
-
-
-def _vne(table: PowerOnTable, chart: chart_text.VneTable) -> VneChart:
-    down, across = len(chart.heights), len(chart.columns)
-    shape = (down, 1, across, 1) if chart.across == "mass" else (down, max(across, 1), 1, 1)
-    return VneChart(
-        heights=chart.heights,
-        temperatures=chart.columns if chart.across == "temperature" else (),
-        masses=chart.columns if chart.across == "mass" else (),
-        speeds=chart.speeds.reshape(shape),
-        reading=ReadingRule(table.reading),
-        source=table.source,
-        rows=chart.rows,
-        reading_error=needed(table.reading_error.value) if table.reading_error else 0.0,
-        covers_temperatures=table.covers_temperatures,
-        reason=table.reason,
-        entry_reason=table.entry_reason,
-        or_less=chart.or_less,
-    )
+def _chart_units(typed: TypedVne) -> list[tuple[str, str]]:
+    key = "lines" if typed.chart is not None and typed.chart.straight else "chart"
+    return [(key, unit) for unit in cross.chart_units(typed.chart)] + [("less", slope.unit) for slope in typed.slopes]

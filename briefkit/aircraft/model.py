@@ -150,20 +150,88 @@ class Calibration:
 
 @dataclass(frozen=True)
 class PowerOffVne:
-    """Power-off VNE: a constant, or the power-on VNE where that is less (14 CFR 27.1505(c)(2)(i))."""
+    """Power-off VNE in the forms 14 CFR 27.1505(c)(2) permits, or as a chart of its own; never above power-on VNE.
 
-    constant: Stated
+    (i) `constant`; (ii) power-on VNE `less` an airspeed; (iii) `constant`, or the `chart`, up to `to_height` (pressure
+    altitude [m]), above it power-on VNE `less` an airspeed. What is taken off power-on VNE is `not_over` an airspeed.
+    """
+
     source: str
+    constant: Stated | None = None
+    less: Stated | None = None
+    to_height: Stated | None = None
+    not_over: Stated | None = None
+    chart: VneChart | None = None
+
+    def indicated(
+        self,
+        power_on: Floats | float,
+        height: Floats | float,
+        temperature: Floats | float,
+        mass: Floats | float,
+        rotor_speed: Floats | float = 1.0,
+    ) -> Floats:
+        """Power-off VNE [m/s indicated] where power-on VNE is `power_on` [m/s indicated]; arguments broadcast.
+
+        Pressure altitude [m], temperature [K], mass [kg], rotor speed (fraction). NaN where `power_on` is, and where
+        a chart of its own has no value.
+        """
+        power_on, height = np.broadcast_arrays(np.asarray(power_on, float), np.asarray(height, float))
+        own = power_on
+        if self.constant is not None:
+            own = np.minimum(power_on, self.constant.value)
+        elif self.chart is not None:
+            own = np.minimum(power_on, self.chart.indicated(height, temperature, mass, rotor_speed))
+        if self.less is None:
+            return own
+        reduced = power_on - self.less.value
+        if self.not_over is not None:
+            reduced = np.minimum(reduced, self.not_over.value)
+        if self.to_height is None:
+            return reduced
+        return np.where(height <= self.to_height.value * (1.0 + 1e-9), own, reduced)
+
+    @property
+    def text(self) -> str:
+        """In words, its figures as typed: "85 kt, or VNE power on if less"."""
+        reduced = f"VNE power on less {self.less.text}" if self.less is not None else ""
+        if reduced and self.not_over is not None:
+            reduced += f", at most {self.not_over.text}"
+        own = "the power-off chart" if self.chart is not None else ""
+        if self.constant is not None:
+            own = f"{self.constant.text}, or VNE power on if less"
+        if own and reduced and self.to_height is not None:
+            return f"to {self.to_height.text} {own}; above that {reduced}"
+        return own or reduced
+
+    @property
+    def figures(self) -> tuple[tuple[str, Stated], ...]:
+        """What was typed, each with what it is, for the read-back sheet."""
+        named = (
+            ("constant", self.constant),
+            ("up to, pressure altitude", self.to_height),
+            ("VNE power on less", self.less),
+            ("not over", self.not_over),
+        )
+        return tuple((name, stated) for name, stated in named if stated is not None)
 
 
 @dataclass(frozen=True)
 class ManualSpeed:
-    """One other speed of the manual, printed verbatim with its page before anything computed."""
+    """One other speed of the manual, printed verbatim with its page before anything computed.
+
+    What its figure says, where it has one, in SI: `speed` [m/s indicated], or `less_than_vne` [m/s], and `above_bank`
+    [rad] where it holds above a bank angle only. `value` is the figure as typed.
+    """
 
     label: str
     text: str
     applies: str
     source: str
+    value: str = ""
+    speed: float | None = None
+    less_than_vne: float | None = None
+    above_bank: float | None = None
 
 
 @dataclass(frozen=True)
@@ -194,19 +262,49 @@ class RotorData:
 
 @dataclass(frozen=True)
 class HoverLine:
-    """One line of the manual's hover table: its label and its cells, as typed."""
+    """One line of the manual's hover figures: its label and its cells, as typed."""
 
     label: str
     text: str
     source: str
 
 
+@dataclass(frozen=True, eq=False)
+class HoverTable:
+    """The manual's hover ceilings of one kind ("IGE", "OGE"): pressure altitudes [m], (masses, columns).
+
+    `columns` are outside air temperatures [K], or temperatures above standard [K] where `above_standard`. Both axes
+    rise. `interpolate` where the manual says so, otherwise the next heavier mass and warmer column hold.
+    """
+
+    kind: str
+    masses: tuple[float, ...]
+    columns: tuple[float, ...]
+    above_standard: bool
+    ceilings: Floats
+    interpolate: bool
+    rows: tuple[tuple[str, ...], ...]
+    source: str
+
+
+@dataclass(frozen=True)
+class Answer:
+    """The author's answer to one kind of entry finding: the cells it speaks of ("" for all of them), and why."""
+
+    kind: str
+    cells: str
+    reason: str
+
+
 @dataclass(frozen=True, eq=False)  # compared by identity, so that tables made once per aircraft can be kept with it
 class Aircraft:
     """One type in one configuration, as its file states it.
 
-    `data_hash` is the SHA-256 of the file as read; `unanswered` lists dotted keys typed "?" (a draft may have
-    them, a released page may not), `sources` the source of each table.
+    `serials` are those this configuration may be flown on; `refused_serials` the others of the file, each with the
+    reason. `configurations` names every one the file knows, the basic one first; `basic_vne` is the basic chart, None
+    for the basic configuration itself. `data_hash` is the SHA-256 of the file as read; `unanswered` lists dotted keys
+    typed "?" (a draft may have them, a released page may not), `sources` the source of each table that this
+    configuration rests on.
     """
 
     name: str
@@ -220,6 +318,8 @@ class Aircraft:
     vne_off: PowerOffVne
     speeds: tuple[ManualSpeed, ...] = ()
     hover: tuple[HoverLine, ...] = ()
+    hover_tables: tuple[HoverTable, ...] = ()
+    answers: tuple[Answer, ...] = ()
     recovery: str = ""
     recovery_source: str = ""
     invented: str = ""
@@ -227,6 +327,9 @@ class Aircraft:
     data_hash: str = ""
     sources: tuple[tuple[str, str], ...] = field(default=())
     unanswered: tuple[str, ...] = ()
+    configurations: tuple[str, ...] = ()
+    refused_serials: tuple[tuple[str, str], ...] = ()
+    basic_vne: VneChart | None = None
 
     @property
     def mirrored(self) -> bool:

@@ -7,20 +7,16 @@ from __future__ import annotations
 
 import math
 import re
-from collections.abc import Iterable
 from dataclasses import dataclass
 from itertools import pairwise
 from pathlib import Path
 from typing import Annotated, ClassVar, Final
 
-import numpy as np
 from pydantic import Field
 
-from briefkit import units
-from briefkit.aircraft.load import needed
+from briefkit.aircraft.make import needed
 from briefkit.aircraft.model import Aircraft, Stated
 from briefkit.aircraft.tables import Airspeed, Height, Mass, Pair, Temperature, Text
-from briefkit.errors import Fault
 from briefkit.physics import atmosphere
 from briefkit.reading.document import Document, Table
 from briefkit.reading.quantity import Typed, quantity, quoted
@@ -52,8 +48,9 @@ class WorkArea:
 class FleetEntry:
     """What the company flies with one aircraft file: masses [kg] heaviest first, the one briefed bank [rad], spreads.
 
-    `status` is "for information" or "company limit, <reference>". Speeds are indicated [m/s], `climb` [m/s],
-    `mass_spread` [kg], `temperature_spread` [K].
+    `aircraft` is the stem of its file and `configuration` the one the entry is for, "" for every one without an entry
+    of its own. `status` is "for information" or "company limit, <reference>". Speeds are indicated [m/s], `climb`
+    [m/s], `mass_spread` [kg], `temperature_spread` [K].
     """
 
     key: str
@@ -66,6 +63,8 @@ class FleetEntry:
     mass_spread: float
     temperature_spread: float
     source: str
+    aircraft: str = ""
+    configuration: str = ""
 
 
 @dataclass(frozen=True)
@@ -91,6 +90,12 @@ class Operation:
     data_hash: str = ""
     sources: tuple[tuple[str, str], ...] = ()
     unanswered: tuple[str, ...] = ()
+
+    def entry_for(self, aircraft: Aircraft) -> FleetEntry | None:
+        """The fleet entry for an aircraft in its configuration: its own, else the one for all others of the file."""
+        mine = [entry for entry in self.fleet.values() if entry.aircraft == Path(aircraft.file).stem]
+        own = [entry for entry in mine if entry.configuration == aircraft.configuration]
+        return next(iter(own + [entry for entry in mine if not entry.configuration]), None)
 
 
 class _OperatorTable(Table):
@@ -120,6 +125,8 @@ class _FleetTable(Table):
     masses: Annotated[list[Mass], Field(min_length=1)] | None = None
     brief_bank: Annotated[Typed | None, quantity("angle", math.radians(5.0), math.radians(60.0))] = None
     status: Text | None = None
+    aircraft: Text | None = None
+    configuration: Text | None = None
     minimum_manoeuvring_speed: Airspeed = None
     imc_speed: Airspeed = None
     climb: Annotated[Typed | None, quantity("vertical speed", 0.0, 15.0)] = None
@@ -166,66 +173,6 @@ def load_operation(path: Path | str) -> Operation:
         ),
         unanswered=document.unanswered(),
     )
-
-
-def cross_check(operation: Operation, aircraft: Aircraft, areas: Iterable[str] | None = None) -> list[Fault]:
-    """What of the operation the aircraft's manual forbids; each fault names both files. `areas` defaults to all.
-
-    A corner of a work area outside the chart or the limits, a mass outside the limits, a bank above the manual's.
-    """
-    entry = operation.fleet.get(Path(aircraft.file).stem)
-    if entry is None:
-        known = ", ".join(operation.fleet)
-        return [Fault(operation.file, "fleet", known, f"an entry [fleet.{Path(aircraft.file).stem}]", "add it")]
-    faults = []
-    limits, where = aircraft.limits, f"{aircraft.file}, {aircraft.limits.source}"
-    for number, mass in enumerate(entry.masses, start=1):
-        if not _within(mass.value, limits.min_mass.value, limits.max_mass.value):
-            permitted = f"{limits.min_mass.text} to {limits.max_mass.text} ({where})"
-            faults.append(Fault(operation.file, f"fleet.{entry.key}.masses, value {number}", mass.text, permitted))
-    if limits.max_bank is not None and not _within(entry.brief_bank.value, 0.0, limits.max_bank.value):
-        permitted = f"at most {limits.max_bank.text} ({where})"
-        faults.append(Fault(operation.file, f"fleet.{entry.key}.brief_bank", entry.brief_bank.text, permitted))
-    for key in operation.work_areas if areas is None else areas:
-        if key in operation.work_areas:
-            faults += _area_faults(operation, operation.work_areas[key], aircraft)
-    return faults
-
-
-def _area_faults(operation: Operation, area: WorkArea, aircraft: Aircraft) -> list[Fault]:
-    chart, limits, shown = aircraft.vne, aircraft.limits, aircraft.units
-    faults = []
-
-    def fault(part: str, read: str, permitted: str, source: str) -> None:
-        place = f"work_areas.{area.key}.{part}"
-        faults.append(Fault(operation.file, place, read, f"{permitted} ({aircraft.file}, {source})"))
-
-    for altitude in (area.low_altitude, area.high_altitude):
-        if not _within(altitude.value, chart.heights[0], chart.heights[-1]):
-            low, high = (units.show(end, "height", shown.height) for end in (chart.heights[0], chart.heights[-1]))
-            fault("pressure_altitudes", altitude.text, f"{low} to {high}, the rows of the VNE chart", chart.source)
-        if altitude.value > limits.max_altitude.value + _SLACK:
-            fault("pressure_altitudes", altitude.text, f"at most {limits.max_altitude.text}", limits.source)
-    for temperature in (area.low_temperature, area.high_temperature):
-        axis = chart.temperatures
-        if axis and not _within(temperature.value, axis[0], axis[-1]):
-            low, high = (units.show(end, "temperature", "degC") for end in (axis[0], axis[-1]))
-            fault("temperatures", temperature.text, f"{low} to {high}, the columns of the VNE chart", chart.source)
-        if temperature.value < limits.min_temperature.value - _SLACK:
-            fault("temperatures", temperature.text, f"{limits.min_temperature.text} or warmer", limits.source)
-    highest = float(np.min(limits.max_temperature_at(np.array([area.low_altitude.value, area.high_altitude.value]))))
-    if area.high_temperature.value > highest + _SLACK:
-        permitted = f"at most {units.show(highest, 'temperature', 'degC', 1)} at {area.high_altitude.text}"
-        fault("temperatures", area.high_temperature.text, permitted, limits.source)
-    return faults
-
-
-# Half a millimetre, half a gram: a foot converted there and back is still the same foot.
-_SLACK: Final = 5e-4
-
-
-def _within(value: float, low: float, high: float) -> bool:
-    return low - _SLACK <= value <= high + _SLACK
 
 
 def _check_area(document: Document, key: str, area: _AreaTable) -> None:
@@ -295,4 +242,6 @@ def _entry(key: str, table: _FleetTable) -> FleetEntry:
         mass_spread=(table.mass_spread.value or 0.0) if table.mass_spread else 0.0,
         temperature_spread=(table.temperature_spread.value or 0.0) if table.temperature_spread else 0.0,
         source=table.source,
+        aircraft=table.aircraft or key,
+        configuration=table.configuration or "",
     )

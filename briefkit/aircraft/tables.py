@@ -3,9 +3,9 @@
 from __future__ import annotations
 
 import math
-from typing import Annotated, ClassVar, Final, Literal
+from typing import Annotated, Any, ClassVar, Final, Literal
 
-from pydantic import Field
+from pydantic import BeforeValidator, Field
 
 from briefkit.reading.document import Table
 from briefkit.reading.quantity import Typed, quantity
@@ -18,6 +18,7 @@ Height = Annotated[Typed | None, quantity("height", -600.0, 11_000.0)]
 RotorSpeed = Annotated[Typed, quantity("ratio", 0.75, 1.25)]
 Airspeed = Annotated[Typed | None, quantity("speed", 20.0 * KNOT, 250.0 * KNOT)]
 Pair = Field(min_length=2, max_length=2)
+Reading = Literal["interpolate", "next lower VNE"]
 
 # page.md 3 of the house rules: when a manual's other speed applies.
 APPLIES: Final = ("turbulence", "doors", "bank", "torque", "IMC", "climb", "autorotation", "load", "other")
@@ -100,27 +101,52 @@ class CalibrationTable(Table):
     source: str = ""
 
 
-class PowerOnTable(Table):
-    required: ClassVar[tuple[str, ...]] = ("chart",)
+class ChartTable(Table):
+    """One VNE in one of the forms manuals print: chart, lines, or base; slopes (`less`) and a cap with any of them."""
+
     chart: str | None = None
-    reading: Literal["interpolate", "next lower VNE"] = "next lower VNE"
+    lines: str | None = None
+    base: Airspeed = None
+    less: Annotated[list[Text] | None, BeforeValidator(lambda read: [read] if isinstance(read, str) else read)] = None
+    cap: Airspeed = None
+    reading: Reading = "next lower VNE"
     reading_error: Annotated[Typed | None, quantity("speed", 0.0, 10.0 * KNOT)] = None
     covers_temperatures: str = ""
     reason: str = ""
-    entry_reason: str = ""
     source: str = ""
+
+    @property
+    def slopes(self) -> list[str]:
+        return list(self.less or [])
 
 
 class PowerOffTable(Table):
-    required: ClassVar[tuple[str, ...]] = ("constant",)
+    """14 CFR 27.1505(c)(2): constant; less; constant with to_height and less. Or a chart of its own."""
+
     constant: Airspeed = None
+    to_height: Height = None
+    less: Annotated[Typed | None, quantity("speed", 1.0 * KNOT, 100.0 * KNOT)] = None
+    not_over: Airspeed = None
+    chart: str | None = None
+    lines: str | None = None
+    reading: Reading = "next lower VNE"
+    reading_error: Annotated[Typed | None, quantity("speed", 0.0, 10.0 * KNOT)] = None
     source: str = ""
+
+
+class CellsReason(Table):
+    """The answer to a finding on cells: which of them ("column -20", "row 6,000", both, or "all"), and why."""
+
+    required: ClassVar[tuple[str, ...]] = ("cells", "reason")
+    cells: Text | None = None
+    reason: Text | None = None
 
 
 class SpeedEntry(Table):
     required: ClassVar[tuple[str, ...]] = ("label", "text", "applies")
     label: Text | None = None
     text: Text | None = None
+    value: Text | None = None
     applies: (
         Literal["turbulence", "doors", "bank", "torque", "IMC", "climb", "autorotation", "load", "other"] | None
     ) = None
@@ -128,10 +154,35 @@ class SpeedEntry(Table):
 
 
 class HoverEntry(Table):
-    required: ClassVar[tuple[str, ...]] = ("label", "text")
+    """A line of words (label, text), or a table of ceilings (kind, table)."""
+
     label: Text | None = None
     text: Text | None = None
+    kind: Literal["IGE", "OGE"] | None = None
+    table: str | None = None
+    reading: Literal["interpolate", "next lower ceiling"] = "next lower ceiling"
     source: str = ""
+
+
+class ConfigurationEntry(Table):
+    """What a supplement changes. The tables power_on, power_off, reasons and speeds are held to their own shapes."""
+
+    required: ClassVar[tuple[str, ...]] = ("name",)
+    name: Text | None = None
+    source: str = ""
+    serials: Annotated[list[Text], Field(min_length=1)] | None = None
+    not_for_serials: Annotated[list[Text], Field(min_length=1)] | None = None
+    vne: Text | None = None
+    power_on: dict[str, Any] | None = None
+    power_off: dict[str, Any] | None = None
+    reasons: dict[str, Any] | None = None
+    speeds: list[dict[str, Any]] | None = None
+    max_mass: Mass = None
+    max_altitude: Height = None
+    min_temperature: Temperature = None
+    max_bank: Annotated[Typed | None, quantity("angle", math.radians(10.0), math.radians(90.0))] = None
+    rotor_on: Annotated[list[RotorSpeed], Pair] | None = None
+    rotor_off: Annotated[list[RotorSpeed], Pair] | None = None
 
 
 class RecoveryTable(Table):

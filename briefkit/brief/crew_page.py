@@ -21,10 +21,10 @@ def crew_page(brief: Brief, version: str) -> CrewPage:
     the aircraft.
     """
     identity, aircraft, operation = brief.identity, brief.aircraft, brief.operation
-    key = aircraft.file.removesuffix(".toml")
-    if key not in operation.fleet:
+    fleet, area = operation.entry_for(aircraft), operation.work_areas[identity.work_area]
+    if fleet is None:
+        key = aircraft.file.removesuffix(".toml")
         raise BuildError(f"{operation.file}: no table [fleet.{key}] for {aircraft.file}; add its masses and brief_bank")
-    fleet, area = operation.fleet[key], operation.work_areas[identity.work_area]
     table = reductions(aircraft, fleet, area)
     serials = control.listed(identity.serials)
     above = ", then ".join((*operation.documents, "this page"))

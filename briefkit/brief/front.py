@@ -3,20 +3,16 @@
 from __future__ import annotations
 
 import math
-from typing import Final
-
-import numpy as np
 
 from briefkit import units
 from briefkit.aircraft.chart import ReadingRule
 from briefkit.aircraft.model import Aircraft
 from briefkit.aircraft.operation import FleetEntry, WorkArea
 from briefkit.brief import words
+from briefkit.brief.chart_grid import chart_grid
 from briefkit.brief.pages import Grid, Ink, Section
 from briefkit.envelope import cues
 from briefkit.envelope.reductions import ReductionRow, ReductionTable, RowKind
-
-NOT_PERMITTED: Final = "*"
 
 
 def front(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea, table: ReductionTable) -> tuple[Section, ...]:
@@ -32,35 +28,16 @@ def front(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea, table: Reductio
 def vne_section(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea) -> Section:
     """The manual's own chart around the work area, cells as typed, with what else the manual says of VNE."""
     chart, shown = aircraft.vne, aircraft.units
-    heights = _around(chart.heights, area.low_altitude.value, area.high_altitude.value)
-    columns: list[int]
-    if chart.temperatures:
-        columns = _around(chart.temperatures, area.low_temperature.value, area.high_temperature.value)
-        header = [words.temperature(chart.temperatures[j]) for j in columns]
-    elif chart.masses:
-        masses = [mass.value for mass in fleet.masses]
-        columns = _around(chart.masses, min(masses), max(masses))
-        header = [units.show(chart.masses[j], "mass", shown.mass) for j in columns]
-    else:
-        columns, header = [0], ["VNE"]
-    rows, starred = [], False
-    for i in heights:
-        cells = []
-        for j in columns:
-            star = bool(chart.temperatures) and not _permitted(aircraft, chart.heights[i], chart.temperatures[j])
-            starred |= star
-            cells.append(chart.rows[i + 1][j + 1] + (NOT_PERMITTED if star else ""))
-        rows.append((units.show_number(units.from_si(chart.heights[i], "height", shown.height)), *cells))
+    entries = chart_grid(aircraft, fleet, area)
     between = "interpolate" if chart.reading is ReadingRule.INTERPOLATE else "take the lower VNE"
     beside = [
         f"Between entries: {between} (manual {_page(chart.source)}).",
-        f"Power off: {words.indicated(aircraft, aircraft.vne_off.constant.text)}, or the above if less.",
+        f"Power off: {power_off(aircraft)}.",
+        *entries.notes,
     ]
-    if starred:
-        beside.append(f"{NOT_PERMITTED} warmer or higher than permitted: for reading between only.")
     grid = Grid(
-        (f"Hp {shown.height} ({words.subscale(aircraft)} set)", *header),
-        tuple(rows),
+        entries.header,
+        entries.rows,
         f"VNE power on, {shown.speed_label()}, from {chart.source}",
         Ink.MANUAL,
         tuple(beside),
@@ -71,6 +48,14 @@ def vne_section(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea) -> Sectio
         if speed.applies not in ("turbulence", "bank")
     )
     return Section(f"1. VNE: {chart.source}", f"{shown.speed_label()}, power on", (), grid, after=others)
+
+
+def power_off(aircraft: Aircraft) -> str:
+    """The power-off VNE in the manual's form; a bare constant in the fewest words."""
+    off = aircraft.vne_off
+    if off.constant is not None and off.less is None:
+        return f"{words.indicated(aircraft, off.constant.text)}, or the above if less"
+    return off.text
 
 
 def turn_section(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea, table: ReductionTable) -> Section:
@@ -149,20 +134,6 @@ def if_it_starts(aircraft: Aircraft) -> Section:
     tail = f"{source}{'; ' + mirrored if mirrored else ''}. {others} Not this: page 2."
     felt = cues.onset_words(aircraft)
     return Section("4. If it starts", before=(felt[:1].upper() + felt[1:], *sentences, tail))
-
-
-def _around(axis: tuple[float, ...], low: float, high: float) -> list[int]:
-    """Indices of the chart's entries that enclose a range, with all between them."""
-    nodes = np.asarray(axis)
-    first = max(int(np.searchsorted(nodes, low + 1e-6, side="right")) - 1, 0)
-    last = min(int(np.searchsorted(nodes, high - 1e-6, side="left")), len(nodes) - 1)
-    return list(range(first, last + 1))
-
-
-def _permitted(aircraft: Aircraft, height: float, oat: float) -> bool:
-    limits = aircraft.limits
-    inside = limits.min_temperature.value - 1e-6 <= oat <= float(limits.max_temperature_at(height)) + 1e-6
-    return inside and height <= limits.max_altitude.value + 1e-6
 
 
 def _range(aircraft: Aircraft, area: WorkArea) -> str:

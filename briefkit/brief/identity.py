@@ -14,9 +14,11 @@ from typing import Annotated, ClassVar, Final
 
 from pydantic import Field
 
-from briefkit.aircraft.load import load_aircraft, needed
+from briefkit.aircraft.load import load_configurations
+from briefkit.aircraft.make import needed
 from briefkit.aircraft.model import Aircraft
-from briefkit.aircraft.operation import OPERATION_FILE, Operation, cross_check, load_operation
+from briefkit.aircraft.operation import OPERATION_FILE, Operation, load_operation
+from briefkit.aircraft.operation_check import cross_check
 from briefkit.aircraft.tables import Text
 from briefkit.errors import Fault, FaultyFile
 from briefkit.reading.document import Document, Table
@@ -196,7 +198,9 @@ def load_brief(path: Path | str) -> Brief:
     named = named_aircraft(path)
     if named is not None:
         try:
-            aircraft = load_aircraft(named)
+            known = load_configurations(named)
+            basic = next(iter(known.values()))
+            aircraft = known.get(named_configuration(path) or basic.configuration, basic)
         except FaultyFile as error:
             faults += error.faults
     try:
@@ -213,14 +217,28 @@ def load_brief(path: Path | str) -> Brief:
     return Brief(needed(identity), needed(aircraft), needed(operation))
 
 
+def named_configuration(path: Path | str) -> str | None:
+    """The configuration a brief names, even where the rest of its `brief.toml` is faulty; None where it names none."""
+    return _named(path, "configuration")
+
+
+def _named(path: Path | str, key: str) -> str | None:
+    path = Path(path)
+    try:
+        subject = Document(path / BRIEF_FILE if path.is_dir() else path).data.get("subject")
+    except FaultyFile:
+        return None
+    name = subject.get(key) if isinstance(subject, dict) else None
+    return name if isinstance(name, str) else None
+
+
 def named_aircraft(path: Path | str) -> Path | None:
     """The aircraft file a brief names, even where the rest of its `brief.toml` is faulty; None where it names none."""
     path = Path(path)
     file = path / BRIEF_FILE if path.is_dir() else path
+    name = _named(path, "aircraft")
     try:
-        subject = Document(file).data.get("subject")
-        name = subject.get("aircraft") if isinstance(subject, dict) else None
-        target = (operator_folder(file.parent) / name).resolve() if isinstance(name, str) else None
+        target = (operator_folder(file.parent) / name).resolve() if name is not None else None
         inside = target is not None and target.is_relative_to(operator_folder(file.parent))
         return shown_path(target) if target is not None and inside and target.is_file() else None
     except (FaultyFile, OSError, RuntimeError, ValueError):  # RuntimeError: links in a circle
@@ -238,12 +256,13 @@ def disagreements(identity: Identity, aircraft: Aircraft | None, operation: Oper
     if aircraft is not None:
         for number, serial in enumerate(identity.serials, start=1):
             if serial not in aircraft.serials:
-                permitted = f"{', '.join(aircraft.serials)} ({aircraft.file})"
-                faults.append(Fault(identity.file, f"subject.serials, value {number}", quoted(serial), permitted))
+                permitted = f"{', '.join(aircraft.serials) or 'none'} ({aircraft.file})"
+                why = dict(aircraft.refused_serials).get(serial, "")
+                faults.append(Fault(identity.file, f"subject.serials, value {number}", quoted(serial), permitted, why))
         if identity.configuration != aircraft.configuration:
-            permitted = f'"{aircraft.configuration}" ({aircraft.file})'
+            permitted = f"{', '.join(quoted(name) for name in aircraft.configurations)} ({aircraft.file})"
             read = quoted(identity.configuration)
-            remedy = "another configuration is another aircraft file: its VNE may differ"
+            remedy = "another configuration may have another VNE: its own [[configuration]] in the aircraft file"
             faults.append(Fault(identity.file, "subject.configuration", read, permitted, remedy))
     return faults
 

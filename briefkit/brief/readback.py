@@ -48,14 +48,14 @@ def readback(aircraft: Aircraft, identity: Identity) -> Sheet:
         ),
         chart=chart,
         limits=_limits(aircraft),
-        more=tuple(grid for grid in (_calibration(aircraft), _others(aircraft)) if grid),
+        more=tuple(grid for grid in (_power_off(aircraft), _calibration(aircraft), _others(aircraft)) if grid),
         answers=_answers(aircraft, chart),
     )
 
 
 def _chart(aircraft: Aircraft) -> Chart:
     header, *rows = aircraft.vne.rows
-    cells = [(row, column) for row in range(len(rows)) for column in range(1, len(header))]
+    cells = [(i, j) for i, row in enumerate(rows) for j, cell in enumerate(row) if j and cell]
     cells.sort(key=lambda cell: hashlib.sha256(f"{aircraft.data_hash} {cell}".encode()).digest())
     chosen = sorted(cells[:BLANKS])
     caption = f"VNE power on, {aircraft.units.speed_label()}, {aircraft.vne.source}, read: {aircraft.vne.reading}"
@@ -86,13 +86,29 @@ def _limits(aircraft: Aircraft) -> Grid:
         _line("Rotor speed, power off, lowest", limits.rotor_off[0]),
         _line("Rotor speed, power off, highest", limits.rotor_off[1]),
         _line("Climb speed", limits.climb_speed),
-        _line("VNE power off, or the chart where less", aircraft.vne_off.constant),
+        *(_line(f"VNE power off: {name}", stated) for name, stated in aircraft.vne_off.figures),
     ]
+    chart = aircraft.vne
+    for name, text, source in (
+        ("VNE power on, never above", chart.cap_text, chart.cap_source),
+        ("VNE power on, the basic chart less", chart.lowered, chart.lowered_source),
+        ("VNE power on holds at every permitted temperature", chart.covers_temperatures, chart.source),
+    ):
+        rows += [(name, text, source)] if text else []
     return Grid(("Limit", "As typed", "Page"), tuple(row for row in rows if row), "Limits, as typed", numbers=False)
 
 
 def _line(name: str, stated: Stated | None) -> tuple[str, str, str] | None:
     return None if stated is None else (name, stated.text, stated.source)
+
+
+def _power_off(aircraft: Aircraft) -> Grid | None:
+    chart = aircraft.vne_off.chart
+    if chart is None:
+        return None
+    header, *rows = chart.rows
+    caption = f"VNE power off, {aircraft.units.speed_label()}, {chart.source}, read: {chart.reading}"
+    return Grid(tuple(header), tuple(map(tuple, rows)), caption, numbers=False)
 
 
 def _calibration(aircraft: Aircraft) -> Grid | None:

@@ -97,6 +97,14 @@ class Document:
                 self.fault(name, quoted(entry), f"a table under [[{key}]]")
         return found
 
+    def raw(self, key: str) -> Mapping[str, object]:
+        """What stands in the table at a dotted key, held to no shape; empty where there is none."""
+        return self._at(key) or {}
+
+    def part(self, key: str, value: Mapping[str, object], shape: type[T]) -> T:
+        """A table that stands inside another one, held to a shape under its dotted key; faulty keys left out."""
+        return self._shaped(key, dict(value), shape)
+
     def named(self, key: str, shape: type[T]) -> dict[str, T]:
         """The tables below a dotted key, by name: [work_areas.vellmark], [work_areas.harl]."""
         found = {}

@@ -86,7 +86,7 @@ def line_numbers(text: str) -> dict[str, int]:
         if closing:
             closing = "" if closing in line else closing
         elif header := _HEADER.fullmatch(line):
-            prefix = _bare(header[2])
+            prefix = _inside_entry(_bare(header[2]), counts)
             if header[1] == "[[":
                 counts[prefix] = counts.get(prefix, 0) + 1
                 prefix = f"{prefix} (entry {counts[prefix]})"
@@ -97,6 +97,14 @@ def line_numbers(text: str) -> dict[str, int]:
             opening = pair[2][:3]
             closing = opening if opening in ("'''", '"""') and opening not in pair[2][3:] else ""
     return found
+
+
+def _inside_entry(key: str, counts: Mapping[str, int]) -> str:
+    """A header below an array of tables names the last of its entries: "configuration (entry 2).power_on"."""
+    for name, count in counts.items():
+        if key.startswith(f"{name}."):
+            return f"{name} (entry {count}){key[len(name) :]}"
+    return key
 
 
 def _bare(key: str) -> str:

@@ -14,7 +14,7 @@ from hypothesis import strategies as st
 
 from briefkit.aircraft import estimates
 from briefkit.aircraft.chart import ReadingRule
-from briefkit.aircraft.cross import entry_findings
+from briefkit.aircraft.findings import entry_findings
 from briefkit.aircraft.load import load_aircraft
 from briefkit.aircraft.model import Aircraft, Hub
 from briefkit.errors import FaultyFile
@@ -185,7 +185,8 @@ text = "Lower the collective. Reduce speed."
 
 [[manual.speeds]]
 label = "Rough air"
-text = "100 KIAS, and VNE less 10 above 30 degrees"
+text = "100 KIAS, less where the pilot sees fit"
+value = "100 kt"
 applies = "turbulence"
 source = "flight manual 2-5 rev 4"
 """
@@ -196,8 +197,10 @@ source = "flight manual 2-5 rev 4"
     )
     (speed,) = aircraft.speeds
     assert (speed.label, speed.applies) == ("Rough air", "turbulence")
-    assert speed.text == "100 KIAS, and VNE less 10 above 30 degrees"
-    assert aircraft.hover[0].text.startswith("7,250 ft standard day")
+    assert speed.text == "100 KIAS, less where the pilot sees fit"
+    assert speed.speed == pytest.approx(100 * KNOT)
+    assert (speed.less_than_vne, speed.above_bank) == (None, None)
+    assert aircraft.hover[0].text == "7,250 ft at ISA; 4,950 ft at ISA+20; 3,400 ft at ISA+35"
     assert ("recovery", "flight manual 3-9 rev 4") in aircraft.sources
     assert ("manual.speeds (entry 1)", "flight manual 2-5 rev 4") in aircraft.sources
 
@@ -267,7 +270,10 @@ def test_what_a_manual_rarely_prints_needs_a_reason(
     named = [fault for fault in found if place in fault.key and words in fault.permitted]
     assert len(named) == 1, found
     assert named[0].read in pair[1]
-    answered = changed(typed, pair, ('reading = "interpolate"', 'reading = "interpolate"\nentry_reason = "as printed"'))
+    kinds = ("rises_with_altitude", "rises_with_temperature", "under_40_kt", "out_of_line")
+    every = "".join(f'{kind} = {{ cells = "all", reason = "so printed" }}\n' for kind in kinds)
+    every += 'power_off_above_power_on = "so printed"\npower_off_under_midpoint = "so printed"\n'
+    answered = changed(typed, pair, ("[vne.power_off]", f"[vne.reasons]\n{every}\n[vne.power_off]"))
     assert entry_findings(load(tmp_path, answered)) == []
 
 

@@ -129,7 +129,14 @@ def test_a_chart_that_rises_needs_a_reason(world: Path) -> None:
     assert "row 6,000, column +20" in finding.place
     edit(
         world / "aircraft" / "pelquill-2t.toml",
-        ('reading = "interpolate"', 'reading = "interpolate"\nentry_reason = "so printed, asked the maker"'),
+        (
+            "[vne.power_off]",
+            "[vne.reasons]\n"
+            'rises_with_temperature = { cells = "row 6,000, column +20", reason = "so printed, asked the maker" }\n'
+            'rises_with_altitude = { cells = "row 6,000, column +20", reason = "so printed, asked the maker" }\n'
+            'out_of_line = { cells = "column +20", reason = "so printed, asked the maker" }\n'
+            "[vne.power_off]",
+        ),
     )
     assert serious(world) == []
     assert any("so printed" in finding.text for finding in findings(world / "vellmark-2t", TODAY))

@@ -11,7 +11,7 @@ from pathlib import Path
 
 import pytest
 
-from briefkit.aircraft.cross import entry_findings
+from briefkit.aircraft.findings import entry_findings
 from briefkit.aircraft.operation import load_operation
 from briefkit.brief.check import Level, findings
 from briefkit.brief.crew_page import crew_page
@@ -81,12 +81,13 @@ def test_without_an_operator_the_folder_becomes_one(tmp_path: Path) -> None:
 def test_below_an_operator_lines_are_only_added_to_its_file(tmp_path: Path, examples: Path) -> None:
     operator = Path(shutil.copytree(examples, tmp_path / "operator"))
     before = (operator / "operation.toml").read_text(encoding="utf-8")
+    before_fleet = list(load_operation(operator).fleet)
     made = new(operator / "vrenholt", VRENHOLT, TODAY)
     assert made.folder == operator / "vrenholt"
     assert made.added_to == (operator / "operation.toml").resolve()
     after = (operator / "operation.toml").read_text(encoding="utf-8")
     assert after.startswith(before)
-    assert list(load_operation(operator).fleet) == ["pelquill-2t", "vrenholt-3"]
+    assert list(load_operation(operator).fleet) == [*before_fleet, "vrenholt-3"]
     brief = load_brief(made.folder)
     assert brief.identity.work_area == "vellmark"  # the operator's own, which the example chart covers
     load_brief(operator / "vellmark-2t")
@@ -95,7 +96,9 @@ def test_below_an_operator_lines_are_only_added_to_its_file(tmp_path: Path, exam
 def test_a_work_area_the_example_chart_does_not_cover_is_left_alone(tmp_path: Path, examples: Path) -> None:
     operator = Path(shutil.copytree(examples, tmp_path / "operator"))
     path = operator / "operation.toml"
-    text = path.read_text(encoding="utf-8").replace('"8,000 ft"', '"12,000 ft"').replace("\n", "\r\n")
+    text = path.read_text(encoding="utf-8").replace('"8,000 ft"', '"12,000 ft"')
+    others = text[text.index("[work_areas.harl]") : text.index("[fleet.")]
+    text = text.replace(others, "").replace("\n", "\r\n")
     path.write_bytes(b"\xef\xbb\xbf" + text.encode())
     made = new(operator, VRENHOLT, TODAY)
     assert made.folder == operator / "vrenholt-3"

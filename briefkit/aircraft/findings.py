@@ -1,0 +1,134 @@
+"""Entry findings: what a manual could print, though it is rarely meant. Each needs a written reason before release."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from typing import Final
+
+import numpy as np
+
+from briefkit import units
+from briefkit.aircraft.answers import EntryFinding, Kind, answered, finding
+from briefkit.aircraft.chart import Axis, VneChart
+from briefkit.aircraft.hover import falls
+from briefkit.aircraft.model import Aircraft
+from briefkit.aircraft.permitted import power_off_findings, supplement_findings
+from briefkit.errors import Fault
+
+_RISES: Final = {
+    Axis.HEIGHT: (Kind.RISES_WITH_ALTITUDE, "height"),
+    Axis.TEMPERATURE: (Kind.RISES_WITH_TEMPERATURE, "temperature"),
+    Axis.MASS: (Kind.RISES_WITH_MASS, "mass"),
+}
+_SLOWEST_CAS: Final = 40.0 * units.KNOT
+_SLACK: Final = 1e-6  # m/s
+# How far a cell may lie off the line between its neighbours, where VNE falls on both sides: common practice, no source.
+OUT_OF_LINE: Final = 3.0 * units.KNOT
+
+
+def entry_findings(aircraft: Aircraft) -> list[Fault]:
+    """What needs a written reason and has none in the file, as sentences that name the cell."""
+    return [found.fault for found in all_findings(aircraft) if not answered(aircraft, found)]
+
+
+def all_findings(aircraft: Aircraft) -> list[EntryFinding]:
+    """Every entry finding of an aircraft in its configuration, answered or not.
+
+    A configuration that reads the basic chart, capped or lowered, repeats none of the basic one's findings on its form.
+    """
+    chart, basic = aircraft.vne, aircraft.basic_vne
+    table = "vne" if basic is None else f"configuration ({aircraft.configuration})"
+    key = f"{table}.power_on"
+    if chart.typed:
+        key += ".lines" if chart.typed[0][0] in chart.straight else ".chart"
+    found = []
+    if basic is None or chart.rows is not basic.rows:
+        found += _variables(key, chart) + _rising(key, chart)
+    found += _slow(key, chart, aircraft)
+    if aircraft.vne_off.chart is not None:
+        found += _rising(f"{table}.power_off.chart", aircraft.vne_off.chart)
+        found += _slow(f"{table}.power_off.chart", aircraft.vne_off.chart, aircraft)
+    found += power_off_findings(f"{table}.power_off", aircraft)
+    if basic is None:
+        for ceilings in aircraft.hover_tables:
+            for cells, read in falls(ceilings):
+                permitted = "a ceiling that falls with mass and temperature"
+                found.append(finding(Kind.HOVER_CEILING_RISES, cells, "hover.table", read, permitted))
+    return [*found, *supplement_findings(table, aircraft)]
+
+
+def _variables(key: str, chart: VneChart) -> list[EntryFinding]:
+    if len(chart.variables) <= 2:
+        return []
+    read = ", ".join(chart.variables)
+    permitted = "at most two variables at one time (14 CFR 27.1505(b)(1))"
+    return [finding(Kind.MORE_THAN_TWO_VARIABLES, "", key, read, permitted)]
+
+
+def place_of(chart: VneChart, index: tuple[int, ...]) -> str:
+    """A cell as the person sees it: "row 4,000, column -20", "point 2,000, line +20 degC"."""
+    lines = bool(chart.typed) and chart.typed[0][0] in chart.straight
+    names = ("point", "line", "at") if lines else ("row", "column", "at")
+    nodes = chart.axes
+    parts = []
+    for name, (axis, texts) in zip((*names, "at"), chart.typed, strict=False):
+        added = len(nodes[axis]) - len(texts)  # an entry below a first one that says "or less"
+        parts.append(f"{name} {texts[max(index[list(Axis).index(axis)] - added, 0)]}")
+    return ", ".join(parts)
+
+
+def _text(chart: VneChart, index: tuple[int, ...]) -> str:
+    typed = "" if chart.printed is None else str(chart.printed[index])
+    return typed or f"{chart.speeds[index] / units.KNOT:.1f} kt"
+
+
+def _pairs(chart: VneChart, axis: Axis) -> Iterator[tuple[tuple[int, ...], tuple[int, ...]]]:
+    """Each cell with the one before it on an axis."""
+    along = list(Axis).index(axis)
+    for index in np.ndindex(chart.speeds.shape):
+        if index[along]:
+            yield index, (*index[:along], index[along] - 1, *index[along + 1 :])
+
+
+def _rising(key: str, chart: VneChart) -> list[EntryFinding]:
+    found = []
+    for axis, (kind, words) in _RISES.items():
+        for index, before in _pairs(chart, axis):
+            if chart.speeds[index] > chart.speeds[before] + _SLACK:
+                permitted = f"VNE that does not rise with {words} ({_text(chart, before)} before it)"
+                found.append(finding(kind, place_of(chart, index), key, _text(chart, index), permitted))
+    return [*found, *_out_of_line(key, chart)]
+
+
+def _out_of_line(key: str, chart: VneChart) -> list[EntryFinding]:
+    """Where VNE falls on both sides, a cell lies near the line between its neighbours; below a flat top it need not."""
+    if chart.bands or (chart.typed and chart.typed[0][0] in chart.straight):
+        return []
+    found: dict[str, EntryFinding] = {}
+    for along, axis in enumerate(Axis):
+        nodes = np.array(chart.axes[axis])
+        for index in np.ndindex(chart.speeds.shape):
+            i = index[along]
+            if not 0 < i < len(nodes) - 1:
+                continue
+            line = chart.speeds[(*index[:along], slice(None), *index[along + 1 :])]
+            before, here, after = line[i - 1 : i + 2]
+            if not before > here > after or before >= np.nanmax(line) - _SLACK:
+                continue
+            share = (nodes[i] - nodes[i - 1]) / (nodes[i + 1] - nodes[i - 1])
+            expected = before + share * (after - before)
+            if abs(here - expected) > OUT_OF_LINE:
+                place = place_of(chart, index)
+                permitted = f"near {expected / units.KNOT:.0f} kt, between its neighbours by {axis}"
+                found.setdefault(place, finding(Kind.OUT_OF_LINE, place, key, _text(chart, index), permitted))
+    return list(found.values())
+
+
+def _slow(key: str, chart: VneChart, aircraft: Aircraft) -> list[EntryFinding]:
+    found = []
+    calibrated = aircraft.calibration.to_calibrated(chart.speeds)
+    speeds = np.where(np.isnan(calibrated), chart.speeds, calibrated)
+    for index in map(tuple, np.argwhere(speeds < _SLOWEST_CAS - _SLACK)):
+        permitted = "40 kt calibrated or more (14 CFR 27.1505(a)(1))"
+        found.append(finding(Kind.UNDER_40_KT, place_of(chart, index), key, _text(chart, index), permitted))
+    return found

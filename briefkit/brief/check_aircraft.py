@@ -1,0 +1,82 @@
+"""What stands between an aircraft file and a released page: sources, spreads, and entry findings without a reason."""
+
+from __future__ import annotations
+
+from dataclasses import fields, replace
+from pathlib import Path
+from typing import Final
+
+import numpy as np
+
+from briefkit.aircraft.answers import answered
+from briefkit.aircraft.findings import all_findings
+from briefkit.aircraft.load import load_configurations
+from briefkit.aircraft.model import Aircraft, Limits, RotorData, Stated
+from briefkit.brief.finding import Finding, Level, invented_finding, loaded, source_findings
+
+# A value typed without a spread counts as exact. These never are: each moves the onset band or the pictures.
+_NEVER_EXACT: Final = ("chord", "twist", "flap_inertia", "lift_slope", "drag_area")
+
+
+def aircraft_findings(path: Path, configuration: str | None = None) -> tuple[Aircraft | None, list[Finding]]:
+    """The aircraft of a file in one configuration, and what is found there; with None the basic one, and all looked at.
+
+    None where the file has faults or no such configuration.
+    """
+    known, found = loaded(path, load_configurations)
+    if known is None:
+        return None, found
+    basic = next(iter(known.values()))
+    asked = basic if configuration is None else known.get(configuration)
+    looked_at = known.values() if configuration is None else [asked or basic]
+    for aircraft in looked_at:
+        found += _findings(str(path), aircraft)
+    return asked, list(dict.fromkeys(found))
+
+
+def _findings(place: str, aircraft: Aircraft) -> list[Finding]:
+    found = invented_finding(place, aircraft.invented)
+    charts = [(name, source) for name, source in aircraft.sources if name not in ("rotor", "limits")]
+    found += source_findings(place, charts)
+    found += _numbers_without_source(place, "rotor", aircraft.rotor)
+    found += _numbers_without_source(place, "limits", aircraft.limits)
+    for name in _NEVER_EXACT:
+        if getattr(aircraft.rotor, name).spread == 0.0:
+            remedy = 'add spread = "...", the half-width you would bet on at 95 %'
+            found.append(Finding(Level.BLOCKS, f"{place}: rotor.{name}", "no spread", remedy))
+    for entry in fields(aircraft.rotor):
+        stated = getattr(aircraft.rotor, entry.name)
+        if isinstance(stated, Stated) and not stated.known:
+            found.append(Finding(Level.NOTE, f"{place}: rotor.{entry.name}", f"unknown; used: {stated.basis}"))
+    if not aircraft.calibration.in_manual:
+        text = "no calibration in the manual: indicated is taken as calibrated, give or take the spread"
+        found.append(Finding(Level.NOTE, f"{place}: calibration", text))
+    cells = aircraft.vne.speeds[np.isfinite(aircraft.vne.speeds)]
+    outside = int(np.sum(np.isnan(aircraft.calibration.to_calibrated(cells))))
+    if outside:
+        text = f"{outside} cells lie outside the airspeed calibration: no answer is computed from them"
+        found.append(Finding(Level.NOTE, f"{place}: vne.power_on.chart", text))
+    every = all_findings(aircraft)
+    for one in every:
+        if not answered(aircraft, one):
+            text = f"read {one.fault.read}; expected: {one.fault.permitted}"
+            found.append(Finding(Level.REASON, f"{place}: {one.fault.key}", text, one.fault.remedy))
+    for answer in aircraft.answers:
+        where = f"{place}: reasons.{answer.kind}"
+        meant = [one for one in every if answered(replace(aircraft, answers=(answer,)), one)]
+        text = f"answers {len(meant)} findings{f' ({answer.cells})' if answer.cells else ''}: {answer.reason}"
+        found.append(Finding(Level.NOTE, where, text, "" if meant else "answers nothing: take it out"))
+    return found
+
+
+def _numbers_without_source(place: str, table: str, data: RotorData | Limits) -> list[Finding]:
+    bare = []
+    for entry in fields(data):
+        stated = getattr(data, entry.name)
+        parts = stated if isinstance(stated, tuple) else (stated,)
+        if any(isinstance(part, Stated) and not part.source for part in parts):
+            bare.append(entry.name)
+    if not bare:
+        return []
+    remedy = 'one source = "document, page, revision" in the table serves them all'
+    return [Finding(Level.BLOCKS, f"{place}: {table}", f"no source for {', '.join(bare)}", remedy)]
