@@ -74,7 +74,7 @@ class StallBoundary(Exhibit):
             Curves(
                 x=curves.x,
                 manual=curves.vne,
-                turns=[(curve.bank_deg, curve.ias) for curve in curves.equivalent],
+                turns=[(c.bank_deg, c.ias) for c in curves.equivalent if c.bank_deg is not None],
                 onset_x=curves.onset_x,
                 onset_lower=curves.onset_lower,
                 onset_central=curves.onset_central,
