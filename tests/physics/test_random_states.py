@@ -171,6 +171,7 @@ def test_states_anywhere(rotors: dict[str, Rotor]) -> None:
             sound(trim(rotor, state, section=section))
 
 
+@pytest.mark.slow
 @settings(max_examples=200, deadline=None, derandomize=True)
 @given(
     name=st.sampled_from(list(MANUALS)),
