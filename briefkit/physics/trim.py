@@ -13,7 +13,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from briefkit.physics.balance import BALANCED, GLIDING, HELD, TRIMMED, WINDMILLING, Model, disc_of, loads_of
+from briefkit.physics.balance import BALANCED, CLIMB, GLIDING, HELD, TRIMMED, WINDMILLING, Model, disc_of, loads_of
 from briefkit.physics.rotor import Case, Rotor, State, Values, case_of
 from briefkit.physics.section import Section
 from briefkit.physics.solving import solved, turned
@@ -94,9 +94,10 @@ def held(
 ) -> Trim:
     """The rotor with its controls held: how the disc settles in a new state before the pilot answers.
 
-    `controls` are usually `Controls.of` a trimmed flight, `state` that flight with something changed; `gust` [m/s] of
-    air straight up. The weight in the state is not used: `ct` tells what thrust there is. Flapping from the shaft is in
-    `hub_b1c`, `hub_b1s`; `disc_tilt` is that of the disc. Members, refusals and errors as for `trim`.
+    `controls` are usually `Controls.of` a trimmed flight, `state` that flight with something changed (after a glide,
+    with the climb rate that was found); `gust` [m/s] of air straight up. The weight in the state is not used: `ct` is
+    the thrust there is. Flapping from the shaft is in `hub_b1c`, `hub_b1s`; `disc_tilt` is that of the disc. Members,
+    refusals and errors as for `trim`.
     """
     case, columns = controls.spread(case_of(rotor, state, gust))
     return solved(rotor, state, HELD, Model.of(rotor, inflow, section, grid), case, columns)
@@ -144,6 +145,7 @@ def vertical_gust(before: Trim, gust: Values) -> Gust:
     A sharp-edged gust over the whole disc, the aircraft not yet moving with it, steady aerodynamics.
     """
     case, columns = Controls.of(before).spread(case_of(before.rotor, before.state, gust))
+    columns[:, CLIMB] = before.motion.climb  # of a glide it was found, not stated
     settled = solved(before.rotor, before.state, HELD, before.model, case, columns)
     disc = disc_of(case, before.motion, before.model)
     gone = np.where(before.solved & settled.solved, 1.0, np.nan)

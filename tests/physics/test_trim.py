@@ -248,6 +248,7 @@ def test_refused_outside_the_model(rotor: Rotor, mass: tuple[float, float], stat
         "blade loading": state_of(rotor, speed=20.0, mass=mass[1], load_factor=3.0),
         "advancing Mach": state_of(rotor, speed=90.0, mass=mass[0], sound_speed=310.0),
         "vortex ring": state_of(rotor, speed=8.0, mass=mass[1], climb_rate=-6.0),
+        "windmill brake": state_of(rotor, speed=30.0, mass=mass[1], climb_rate=-29.9),
         "no path": state_of(rotor, speed=3.0, mass=mass[1], climb_rate=4.0),
         "not a number": state_of(rotor, speed=np.nan, mass=mass[1]),
         "infinite": state_of(rotor, speed=30.0, mass=np.inf),

@@ -101,6 +101,15 @@ def test_gust_raises_the_tip_angle_at_once(rotor: Rotor, mass: Masses, state_of:
     np.testing.assert_allclose(none.settled.tip_angle, before.tip_angle, atol=1e-8)
 
 
+def test_a_gust_on_a_glide_is_met_on_the_glide_path(rotor: Rotor, mass: Masses, state_of: StateOf) -> None:
+    glide = torque_free(rotor, state_of(rotor, speed=np.array([30.0, 45.0]), mass=mass[1]))
+    none = vertical_gust(glide, 0.0)
+    np.testing.assert_allclose(none.instant_load, 1.0, atol=1e-12)
+    np.testing.assert_allclose(none.settled.hub_b1c, 0.0, atol=1e-8)
+    np.testing.assert_allclose(none.settled.cq, 0.0, atol=1e-9)
+    assert (vertical_gust(glide, 2.0).instant_load > 1.1).all()
+
+
 def test_gusts_over_one_flight_are_a_batch(rotor: Rotor, mass: Masses, state_of: StateOf) -> None:
     before = trim(rotor, state_of(rotor, speed=45.0, mass=mass[1]))
     met = vertical_gust(before, np.array([-2.0, 0.0, 2.0, 4.0]))
@@ -171,3 +180,21 @@ def test_flapping_and_feathering_are_equivalent(rotor: Rotor, mass: Masses, stat
     assert np.degrees(seen.hub_b1c) == pytest.approx(np.degrees(flight.b1c), abs=tolerance)
     assert np.degrees(seen.hub_b1s) == pytest.approx(np.degrees(flight.b1s), abs=tolerance)
     assert (flight.b1c < 0.0).all()  # blown back from the plane of no feathering
+
+
+def test_the_thrust_leans_with_the_disc(rotor: Rotor, mass: Masses, state_of: StateOf) -> None:
+    # Hover, cyclic put in either way: the in-plane force points where the disc leans, and is the thrust's share of it.
+    # The disc up over the tail leans the thrust forward (against H); up at psi = 90, away from there (against Y).
+    state = state_of(rotor, speed=0.0, mass=mass[1])
+    level = Controls.of(trim(rotor, state))
+    one = held(rotor, state, replace(level, t1c=np.array([0.02])))
+    other = held(rotor, state, replace(level, t1s=np.array([0.02])))
+    # Where the hub holds a moment, one side lifts more, and its lift leans back with the inflow there: the rest.
+    rest = {"teetering": 0.12, "articulated": 0.12, "hingeless": 0.5}[rotor.hub]
+    for flight in (one, other):
+        assert flight.ch[0] == pytest.approx(-flight.ct[0] * flight.hub_b1c[0], abs=rest * 0.02 * flight.ct[0])
+        assert flight.cy[0] == pytest.approx(-flight.ct[0] * flight.hub_b1s[0], abs=rest * 0.02 * flight.ct[0])
+    # A quarter turn of the cyclic is a quarter turn of everything.
+    assert other.hub_b1c[0] == pytest.approx(-one.hub_b1s[0], abs=1e-9)
+    assert other.ch[0] == pytest.approx(-one.cy[0], abs=1e-9)
+    assert other.cy[0] == pytest.approx(one.ch[0], abs=1e-9)
