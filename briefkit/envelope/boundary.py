@@ -102,7 +102,7 @@ def boundary(
         x_label=label,
         x_unit=unit,
         speed_unit=speed,
-        vne=equivalent_vnes(aircraft, level).vne,
+        vne=equivalent_vnes(aircraft, level, upper=False).vne,
         equivalent=_curves(aircraft, many, over, banks_deg),
         onset_x=units.from_si(sparse, quantity, unit),
         onset_lower=units.from_si(band.lower, "speed", speed),
@@ -117,12 +117,12 @@ def _curves(
     if over is Against.GUST:
         return ()
     if over is Against.BANK:
-        answers = equivalent_vnes(aircraft, many)
+        answers = equivalent_vnes(aircraft, many, upper=False)
         return (EquivalentCurve(None, answers.ias, answers.reason),)
     curves = []
     for bank in banks_deg:
         turning = replace(many, load_factor=np.full(len(many), 1.0 / math.cos(math.radians(bank))))
-        answers = equivalent_vnes(aircraft, turning)
+        answers = equivalent_vnes(aircraft, turning, upper=False)
         curves.append(EquivalentCurve(bank, answers.ias, answers.reason))
     return tuple(curves)
 

@@ -86,7 +86,7 @@ def equivalent_vne(aircraft: Aircraft, condition: Condition) -> EquivalentVne:
     """
     conditions = Conditions.of(condition)
     here.refuse(aircraft, conditions)
-    answers = _answers(aircraft, conditions, report=True)
+    answers = _answers(aircraft, conditions, report=True, upper=True)
     reason = answers.reason[0]
     if reason:
         raise _refusal(aircraft, condition, reason)
@@ -103,21 +103,24 @@ def equivalent_vne(aircraft: Aircraft, condition: Condition) -> EquivalentVne:
     )
 
 
-def equivalent_vnes(aircraft: Aircraft, conditions: Conditions | Iterable[Condition]) -> EquivalentVnes:
+def equivalent_vnes(
+    aircraft: Aircraft, conditions: Conditions | Iterable[Condition], *, upper: bool = True
+) -> EquivalentVnes:
     """The same for a batch; a refused member has NaN and a `Reason`, and disturbs no other.
 
     The chart point of each is the fastest one, not the one nearest the day's temperature that a single call reports.
+    Without `upper` the plain-n speeds are left NaN and the batch costs half.
     """
     many = conditions if isinstance(conditions, Conditions) else Conditions.of(conditions)
-    return _answers(aircraft, many, report=False)
+    return _answers(aircraft, many, report=False, upper=upper)
 
 
-def _answers(aircraft: Aircraft, many: Conditions, report: bool) -> EquivalentVnes:
+def _answers(aircraft: Aircraft, many: Conditions, report: bool, upper: bool) -> EquivalentVnes:
     reason = here.reasons(aircraft, many)
     vne = np.where(reason == Reason.NONE, here.indicated_vne(aircraft, many), np.nan)
     level = (many.load_factor <= 1.0 + 1e-12) & (np.abs(many.rotor_speed - 1.0) <= 1e-12)
     ask = np.nonzero((reason == Reason.NONE) & ~level)[0]
-    ias, upper = vne.copy(), vne.copy()
+    ias, plain = vne.copy(), vne.copy()
     rotor = many.rotor_speed.copy() if aircraft.vne.rotor_speeds else np.ones(len(many))
     point = [many.pressure_altitude.copy(), many.oat.copy(), here.chart_mass(aircraft, many), rotor]
     set_by = here.filled(len(many), SetBy.MANUAL_VNE)
@@ -126,12 +129,12 @@ def _answers(aircraft: Aircraft, many: Conditions, report: bool) -> EquivalentVn
         found, why, best = _read(aircraft, asked, vne[ask], LOAD_EXPONENT, report)
         lower = (why == Reason.NONE) & (found < vne[ask])
         ias[ask], reason[ask] = found, why
-        upper[ask] = _read(aircraft, asked, vne[ask], 1.0, False)[0]
+        plain[ask] = _read(aircraft, asked, vne[ask], 1.0, False)[0] if upper else np.nan
         set_by[ask[lower]] = SetBy.EQUIVALENT
         for array, value in zip(point, (best.height, best.temperature, best.mass, best.rotor_speed), strict=True):
             array[ask[lower]] = value[lower]
     refused = reason != Reason.NONE
-    ias, upper = (np.where(refused, np.nan, array) for array in (ias, upper))
+    ias, plain = (np.where(refused, np.nan, array) for array in (ias, plain))
     unit = aircraft.units.speed
 
     def shown(values: Floats) -> Floats:
@@ -140,7 +143,7 @@ def _answers(aircraft: Aircraft, many: Conditions, report: bool) -> EquivalentVn
     return EquivalentVnes(
         ias=shown(ias),
         below_vne=shown(vne - ias),
-        upper=shown(upper),
+        upper=shown(plain),
         vne=shown(vne),
         unit=unit,
         set_by=set_by,

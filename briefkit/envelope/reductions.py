@@ -107,7 +107,7 @@ def reductions(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea) -> Reducti
 
 def _row(aircraft: Aircraft, fleet: FleetEntry, mass: Stated, block: Block, bank: float, floor: Floor) -> ReductionRow:
     points = _points(fleet, mass, block, bank)
-    answers = equivalent_vnes(aircraft, points)
+    answers = equivalent_vnes(aircraft, points, upper=False)
     kind, bank_deg = RowKind.REDUCTION, round(math.degrees(bank))
     if np.any(answers.reason == Reason.BEYOND_CHART):
         banks, _ = covered_banks(aircraft, points)
@@ -116,7 +116,7 @@ def _row(aircraft: Aircraft, fleet: FleetEntry, mass: Stated, block: Block, bank
         if bank_deg < LOWEST_BRIEFED_BANK_DEG:
             return ReductionRow(mass, RowKind.NO_TURN, 0, 0.0, 0.0, None, None)
         points = _points(fleet, mass, block, math.radians(bank_deg))
-        answers = equivalent_vnes(aircraft, points)
+        answers = equivalent_vnes(aircraft, points, upper=False)
     refused = np.isin(answers.reason, (Reason.NONE, Reason.OUTSIDE_CALIBRATION), invert=True)
     if np.any(refused):
         equivalent_vne(aircraft, _single(points, int(np.argmax(refused))))  # raises, naming the limit

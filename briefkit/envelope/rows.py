@@ -41,6 +41,8 @@ class Rows:
     Speeds are referred: V'/k' [m/s true], -inf where the chart has none. `heights` are the chart's own, rising and
     common to all rows; a row ends at its `top` (-inf: not permitted at all). `loading` [m3] is the largest m'/(rho'
     k'^2) of a row, `warmth` [K] its T'/k'^2 (-inf on the standard day, where the height asked for looks after it).
+    `best_above` is the running maximum of `vne` from the top, `peak` the index of the point that makes it;
+    `pressure_rows` where a row's loading is a pressure (else a density); `first_at` and `bin` serve `place`.
     """
 
     temperature: Floats
@@ -53,6 +55,7 @@ class Rows:
     heights: Floats
     vne: Floats
     best_above: Floats
+    peak: Index
     standard_day: bool
     pressure_rows: bool
     first_at: Index
@@ -127,6 +130,9 @@ def _lay_out(aircraft: Aircraft) -> Rows:
     vne = chart_speed(aircraft, at, np.broadcast_to(oat, at.shape), mass[:, None], rotor_speed[:, None])
     vne = np.where(np.isfinite(top)[:, None], vne, -np.inf)
     best_above = np.maximum.accumulate(vne[:, ::-1], axis=1)[:, ::-1]
+    # Where a point is its own running maximum it is a peak; the next peak upwards makes the maximum below it.
+    peak = np.where(vne >= best_above, np.arange(len(heights)), len(heights) - 1)
+    peak = np.minimum.accumulate(peak[:, ::-1], axis=1)[:, ::-1]
     # A row ends at its highest point with a speed: above it nothing can be used.
     top = np.where(np.isfinite(vne), at, -np.inf).max(axis=1)
     usable = np.isfinite(top)
@@ -139,9 +145,22 @@ def _lay_out(aircraft: Aircraft) -> Rows:
     starts = heights[0] + step * np.arange(int(np.ceil((heights[-1] - heights[0]) / step)) + 1)
     first_at = np.minimum(np.searchsorted(heights, starts), len(heights) - 1)
     return Rows(
-        temperature, mass, rotor_speed, len(masses), top, loading, warmth, heights, vne, best_above, standard,
-        not (standard or chart.density_altitude), first_at, float(step),
-    )  # fmt: skip
+        temperature=temperature,
+        mass=mass,
+        rotor_speed=rotor_speed,
+        columns=len(masses),
+        top=top,
+        loading=loading,
+        warmth=warmth,
+        heights=heights,
+        vne=vne,
+        best_above=best_above,
+        peak=peak,
+        standard_day=standard,
+        pressure_rows=not (standard or chart.density_altitude),
+        first_at=first_at,
+        bin=float(step),
+    )
 
 
 def _temperatures(aircraft: Aircraft) -> Floats:

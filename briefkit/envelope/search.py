@@ -26,7 +26,7 @@ SLACK: Final = 1e-9  # relative: a point exactly as loaded counts as such
 _REPORT: Final = 0.5 * units.KNOT  # of points this near the largest, the one nearest the day's temperature is reported
 _LOOK: Final = 0.05 * units.KNOT  # a row this far below the best is not looked at exactly
 _COLUMN: Final = 1.0 * units.KNOT  # a column of mass and rotor speed this far below the best has no row of its own
-_CHUNK: Final = 128  # queries at a time: their arrays stay in cache
+_CHUNK: Final = 512  # queries at a time: their arrays stay in cache
 
 
 @dataclass(frozen=True, eq=False)
@@ -119,10 +119,7 @@ class _Points:
 
 def _stored(rows: Rows, query: Index, row: Index, index: Index, stored: Floats) -> _Points:
     """The running maximum of the rows looked at, with the height of the peak that makes it."""
-    columns = np.arange(rows.vne.shape[1])
-    peak = np.where(rows.vne >= rows.best_above, columns[None, :], rows.vne.shape[1] - 1)
-    next_peak = np.minimum.accumulate(peak[:, ::-1], axis=1)[:, ::-1]
-    at = next_peak[row, index[query, row]]
+    at = rows.peak[row, index[query, row]]
     height = np.minimum(rows.heights[at], rows.top[row])
     return _points(rows, query, row, stored[query, row], height)
 

@@ -73,7 +73,7 @@ def _rule(
     offsets = np.linspace(-reach, reach, 2 * _POINTS + 1) * step
     start = float(getattr(condition, field))
     many = replace(Conditions.of(condition).repeat(len(offsets)), **{field: start + offsets})
-    answers = equivalent_vnes(aircraft, many)
+    answers = equivalent_vnes(aircraft, many, upper=False)
     ias = np.where(answers.reason == Reason.NONE, answers.ias, np.nan)
     slope = _slope(offsets, ias)
     if slope is None:
