@@ -132,6 +132,9 @@ class Rotor:
         self._require("hinge offset", self.hinge_offset, inside, "from zero to the root cut-out")
         frequency = np.asarray(self.flap_frequency)
         self._require("flap frequency", self.flap_frequency, (frequency >= 1.0) & (frequency <= 1.3), "1 to 1.3")
+        if self.taper is not None:
+            own = float(self.taper.at(np.array(REFERENCE_STATION)))
+            self._require("taper at 0.75 R", own, abs(own - 1.0) < 1e-3, "1: it is the chord over that at 0.75 R")
         self._require("rotation", self.rotation, self.rotation in (1, -1), "1 or -1")
         if self.hub == "teetering":
             central = (frequency == 1.0) & (offset == 0.0)

@@ -34,9 +34,9 @@ LARGEST_ADVANCE_RATIO: Final = 0.5
 LARGEST_BLADE_LOADING: Final = 0.18
 LARGEST_ADVANCING_MACH: Final = 0.95
 # Descent through the disc, by the hover induced velocity, past which the wake is no longer a slipstream unless the
-# rotor flies on edgewise faster than EDGEWISE of the same. On the safe side of the vortex-ring region, which begins
-# near half the hover induced velocity (common practice, no source).
-LARGEST_DESCENT: Final = 0.35
+# rotor flies on edgewise faster than EDGEWISE of the same. Roughness is felt from about half the hover induced velocity
+# (common practice, no source); FAA-H-8083-21B warns from 300 ft/min, which is .15 to .2 of it on a light helicopter.
+LARGEST_DESCENT: Final = 0.25
 EDGEWISE: Final = 1.5
 
 TOLERANCE: Final = 1e-10  # where the iteration stops

@@ -309,6 +309,7 @@ def test_names_and_grids_that_do_not_exist(rotor: Rotor, mass: tuple[float, floa
         ({"hub": "teetering", "flap_frequency": 1.05}, "teetering"),
         ({"drag_area": np.array([1.0, -1.0])}, "drag area"),
         ({"radius": np.nan}, "radius"),
+        ({"taper": Distribution((0.0, 1.0), (0.4, 0.2))}, "taper at 0.75 R"),
     ],
 )
 def test_rotors_that_cannot_be(rotor: Rotor, change: dict[str, object], match: str) -> None:
