@@ -154,6 +154,25 @@ def test_ten_thousand_states(
         assert share >= (0.99 if section == "attached" else 0.95)
 
 
+def test_the_attached_section_flies_over_the_whole_range(rotors: dict[str, Rotor]) -> None:
+    # Level flight at any advance ratio, blade loading and Mach number the model is offered for.
+    random = np.random.default_rng(7)
+    count = 700
+    for rotor in rotors.values():
+        tip_speed = rotor.tip_speed * random.uniform(0.85, 1.08, count)
+        air, loading = random.uniform(0.7, 1.45, count), random.uniform(0.02, 0.18, count)
+        weight = loading * air * rotor.solidity * rotor.disc_area * tip_speed**2
+        state = State(
+            air, random.uniform(295.0, 350.0, count), tip_speed, random.uniform(0.0, 0.5, count) * tip_speed, weight
+        )
+        flight = trim(rotor, state)
+        sound(flight)
+        assert not any(reason is Reason.NO_TRIM for reason in flight.reason)
+        assert flight.mu[flight.solved].max() > 0.45
+        assert flight.ct_sigma[flight.solved].max() > 0.17
+        assert flight.advancing_mach[flight.solved].max() > 0.94
+
+
 @pytest.mark.slow
 def test_states_anywhere(rotors: dict[str, Rotor]) -> None:
     # Far beyond any manual: every member must still end in numbers or a reason, without a warning.
