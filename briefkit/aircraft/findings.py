@@ -36,17 +36,17 @@ def all_findings(aircraft: Aircraft) -> list[EntryFinding]:
 
     A configuration that reads the basic chart, capped or lowered, repeats none of the basic one's findings on its form.
     """
-    chart, basic = aircraft.vne, aircraft.basic_vne
+    chart, basic, unit = aircraft.vne, aircraft.basic_vne, aircraft.units.speed
     table = "vne" if basic is None else f"configuration ({aircraft.configuration})"
     key = f"{table}.power_on"
     if chart.typed:
         key += ".lines" if chart.typed[0][0] in chart.straight else ".chart"
     found = []
     if basic is None or chart.rows is not basic.rows:
-        found += _variables(key, chart) + _rising(key, chart)
+        found += _variables(key, chart) + _rising(key, chart, unit)
     found += _slow(key, chart, aircraft)
     if aircraft.vne_off.chart is not None:
-        found += _rising(f"{table}.power_off.chart", aircraft.vne_off.chart)
+        found += _rising(f"{table}.power_off.chart", aircraft.vne_off.chart, unit)
         found += _slow(f"{table}.power_off.chart", aircraft.vne_off.chart, aircraft)
     found += power_off_findings(f"{table}.power_off", aircraft)
     if basic is None:
@@ -77,9 +77,9 @@ def place_of(chart: VneChart, index: tuple[int, ...]) -> str:
     return ", ".join(parts)
 
 
-def _text(chart: VneChart, index: tuple[int, ...]) -> str:
+def _text(chart: VneChart, index: tuple[int, ...], unit: str) -> str:
     typed = "" if chart.printed is None else str(chart.printed[index])
-    return typed or f"{chart.speeds[index] / units.KNOT:.1f} kt"
+    return typed or units.show(float(chart.speeds[index]), "speed", unit, 1)
 
 
 def _pairs(chart: VneChart, axis: Axis) -> Iterator[tuple[tuple[int, ...], tuple[int, ...]]]:
@@ -90,17 +90,17 @@ def _pairs(chart: VneChart, axis: Axis) -> Iterator[tuple[tuple[int, ...], tuple
             yield index, (*index[:along], index[along] - 1, *index[along + 1 :])
 
 
-def _rising(key: str, chart: VneChart) -> list[EntryFinding]:
+def _rising(key: str, chart: VneChart, unit: str) -> list[EntryFinding]:
     found = []
     for axis, (kind, words) in _RISES.items():
         for index, before in _pairs(chart, axis):
             if chart.speeds[index] > chart.speeds[before] + _SLACK:
-                permitted = f"VNE that does not rise with {words} ({_text(chart, before)} before it)"
-                found.append(finding(kind, place_of(chart, index), key, _text(chart, index), permitted))
-    return [*found, *_out_of_line(key, chart)]
+                permitted = f"VNE that does not rise with {words} ({_text(chart, before, unit)} before it)"
+                found.append(finding(kind, place_of(chart, index), key, _text(chart, index, unit), permitted))
+    return [*found, *_out_of_line(key, chart, unit)]
 
 
-def _out_of_line(key: str, chart: VneChart) -> list[EntryFinding]:
+def _out_of_line(key: str, chart: VneChart, unit: str) -> list[EntryFinding]:
     """Where VNE falls on both sides, a cell lies near the line between its neighbours; below a flat top it need not."""
     if chart.bands or (chart.typed and chart.typed[0][0] in chart.straight):
         return []
@@ -119,16 +119,17 @@ def _out_of_line(key: str, chart: VneChart) -> list[EntryFinding]:
             expected = before + share * (after - before)
             if abs(here - expected) > OUT_OF_LINE:
                 place = place_of(chart, index)
-                permitted = f"near {expected / units.KNOT:.0f} kt, between its neighbours by {axis}"
-                found.setdefault(place, finding(Kind.OUT_OF_LINE, place, key, _text(chart, index), permitted))
+                near = units.show(expected, "speed", unit)
+                permitted = f"near {near}, between its neighbours by {axis}"
+                found.setdefault(place, finding(Kind.OUT_OF_LINE, place, key, _text(chart, index, unit), permitted))
     return list(found.values())
 
 
 def _slow(key: str, chart: VneChart, aircraft: Aircraft) -> list[EntryFinding]:
-    found = []
+    found, unit = [], aircraft.units.speed
     calibrated = aircraft.calibration.to_calibrated(chart.speeds)
     speeds = np.where(np.isnan(calibrated), chart.speeds, calibrated)
     for index in map(tuple, np.argwhere(speeds < _SLOWEST_CAS - _SLACK)):
         permitted = "40 kt calibrated or more (14 CFR 27.1505(a)(1))"
-        found.append(finding(Kind.UNDER_40_KT, place_of(chart, index), key, _text(chart, index), permitted))
+        found.append(finding(Kind.UNDER_40_KT, place_of(chart, index), key, _text(chart, index, unit), permitted))
     return found

@@ -8,11 +8,14 @@ from typing import Final
 
 import numpy as np
 
-from briefkit.aircraft.answers import answered
-from briefkit.aircraft.findings import all_findings
+from briefkit import units
+from briefkit.aircraft.answers import EntryFinding, Kind, answered, finding
+from briefkit.aircraft.chart import Axis
+from briefkit.aircraft.findings import all_findings, place_of
 from briefkit.aircraft.load import load_configurations
 from briefkit.aircraft.model import Aircraft, Limits, RotorData, Stated
 from briefkit.brief.finding import Finding, Level, invented_finding, loaded, source_findings
+from briefkit.envelope.chart_shape import LARGEST_RESIDUAL, chart_shape
 
 # A value typed without a spread counts as exact. These never are: each moves the onset band or the pictures.
 _NEVER_EXACT: Final = ("chord", "twist", "flap_inertia", "lift_slope", "drag_area")
@@ -21,14 +24,14 @@ _NEVER_EXACT: Final = ("chord", "twist", "flap_inertia", "lift_slope", "drag_are
 def aircraft_findings(path: Path, configuration: str | None = None) -> tuple[Aircraft | None, list[Finding]]:
     """The aircraft of a file in one configuration, and what is found there; with None the basic one, and all looked at.
 
-    None where the file has faults or no such configuration.
+    None where the file has faults; the basic one where it has no such configuration (which the brief is told of).
     """
     known, found = loaded(path, load_configurations)
     if known is None:
         return None, found
     basic = next(iter(known.values()))
-    asked = basic if configuration is None else known.get(configuration)
-    looked_at = known.values() if configuration is None else [asked or basic]
+    asked = known.get(configuration or basic.configuration, basic)
+    looked_at = known.values() if configuration is None else [asked]
     for aircraft in looked_at:
         found += _findings(str(path), aircraft)
     return asked, list(dict.fromkeys(found))
@@ -56,7 +59,7 @@ def _findings(place: str, aircraft: Aircraft) -> list[Finding]:
     if outside:
         text = f"{outside} cells lie outside the airspeed calibration: no answer is computed from them"
         found.append(Finding(Level.NOTE, f"{place}: vne.power_on.chart", text))
-    every = all_findings(aircraft)
+    every = [*all_findings(aircraft), *similarity_findings(aircraft)]
     for one in every:
         if not answered(aircraft, one):
             text = f"read {one.fault.read}; expected: {one.fault.permitted}"
@@ -66,6 +69,28 @@ def _findings(place: str, aircraft: Aircraft) -> list[Finding]:
         meant = [one for one in every if answered(replace(aircraft, answers=(answer,)), one)]
         text = f"answers {len(meant)} findings{f' ({answer.cells})' if answer.cells else ''}: {answer.reason}"
         found.append(Finding(Level.NOTE, where, text, "" if meant else "answers nothing: take it out"))
+    return found
+
+
+def similarity_findings(aircraft: Aircraft) -> list[EntryFinding]:
+    """Cells off the curve on which VNE over tip speed collapses against loading, the farthest first.
+
+    A configuration that reads the basic chart, capped or lowered, repeats none of the basic one's.
+    """
+    chart, basic, unit = aircraft.vne, aircraft.basic_vne, aircraft.units.speed
+    if (basic is not None and chart.rows is basic.rows) or Axis.HEIGHT not in chart.variables:
+        return []
+    shape, found = chart_shape(aircraft), []
+    across = next((at for at, axis in enumerate(Axis) if at and chart.axes[axis]), 1)
+    for cell in shape.findings if len(chart.typed) <= 2 else []:
+        index = [int(shape.row[cell]), 0, 0, 0]
+        index[across] = int(shape.column[cell])
+        off = units.show(abs(float(shape.residual[cell])), "speed", unit, 1)
+        side = "above" if shape.residual[cell] > 0.0 else "below"
+        largest = units.show(LARGEST_RESIDUAL, "speed", unit)
+        permitted = f"within {largest} of the curve all falling cells share (speed over tip speed against loading)"
+        place = place_of(chart, tuple(index))
+        found.append(finding(Kind.SIMILARITY, place, "vne.power_on", f"{off} {side} it", permitted))
     return found
 
 

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from briefkit import units
+from briefkit.aircraft.chart import Axis, Floats, density_altitude_of
 from briefkit.aircraft.model import Aircraft
 from briefkit.brief import words
 from briefkit.brief.derivation import work_by_hand
@@ -65,17 +66,12 @@ def row_on_chart(aircraft: Aircraft, row: ReductionRow) -> str:
         raise ValueError("only a row with an answer has a place on the chart")
     chart, shown, at, point = aircraft.vne, aircraft.units, row.at, row.answer.chart_point
     hand = work_by_hand(aircraft, at, row.answer)
-    if chart.temperatures:
-        columns = chart.speeds[:, :, 0, 0]
-        names = [words.temperature(oat) for oat in chart.temperatures]
-    else:
-        columns = chart.speeds[:, 0, :, 0]
-        names = [units.show(mass, "mass", shown.mass) for mass in chart.masses] or ["VNE"]
+    heights, columns, names = _chart_lines(aircraft, at.mass)
     kind = shown.speed_label()
-    x_words = f"Pressure altitude, {shown.height}"
+    x_words = f"{'Density' if chart.density_altitude else 'Pressure'} altitude, {shown.height}"
     figure = ChartFigure(
-        units.from_si(np.array(chart.heights), "height", shown.height),
-        units.from_si(np.asarray(columns), "speed", shown.speed),
+        units.from_si(heights, "height", shown.height),
+        units.from_si(columns, "speed", shown.speed),
         names,
         x_words=x_words,
         speed_words=f"VNE, {kind}",
@@ -83,8 +79,8 @@ def row_on_chart(aircraft: Aircraft, row: ReductionRow) -> str:
     loaded = words.height(aircraft, point.pressure_altitude, 10.0)
     here_words = (f"{row.mass.text}, {row.bank_deg}°", f"VNE {words.number(hand.vne_here)} here")
     there_words = (f"as loaded at {loaded}", f"{words.number(point.vne)} on the chart")
-    here = Mark(units.from_si(at.pressure_altitude, "height", shown.height), hand.vne_here, here_words)
-    there = Mark(units.from_si(point.pressure_altitude, "height", shown.height), point.vne, there_words)
+    here = Mark(_along(aircraft, at.pressure_altitude, at.oat), hand.vne_here, here_words)
+    there = Mark(_along(aircraft, point.pressure_altitude, point.temperature), point.vne, there_words)
     figure.update(here, there)
     alt = (
         f"{row.mass.text} at {words.place(aircraft, at)} with {row.bank_deg}° of bank is as loaded as level flight at "
@@ -108,3 +104,32 @@ def row_on_chart(aircraft: Aircraft, row: ReductionRow) -> str:
     caption = "The turn here, and the level flight that loads the rotor as much, on the manual’s own chart."
     parts = StillParts("The equivalent level flight", caption, alt, (), (Drawing(figure.figure, caption, alt),), table)
     return still(_Picture(parts))
+
+
+def _chart_lines(aircraft: Aircraft, mass: float) -> tuple[Floats, Floats, list[str]]:
+    """Heights [m] (n,) as the chart has them, speeds [m/s] (n, m) and the names of the columns.
+
+    A third variable is held: at the first mass not lighter than `mass`, at the rotor speed nearest 100 %.
+    """
+    chart, shown = aircraft.vne, aircraft.units
+    heavier = min(int(np.searchsorted(chart.masses, mass - 1e-6)), max(len(chart.masses) - 1, 0))
+    rotor = int(np.argmin(np.abs(np.array(chart.rotor_speeds or (1.0,)) - 1.0)))
+    typed = dict(chart.typed).get(Axis.HEIGHT, ())
+    first = len(chart.heights) - len(typed) if typed else 0  # not the entry that stands for "or less"
+    heights = np.array(chart.heights[first:])
+    if chart.temperatures:
+        names = [words.temperature(oat) for oat in chart.temperatures]
+        return heights, chart.speeds[first:, :, heavier, rotor], names
+    if chart.masses:
+        names = [units.show(node, "mass", shown.mass) for node in chart.masses]
+        return heights, chart.speeds[first:, 0, :, rotor], names
+    names = [f"{speed * 100.0:g} %" for speed in chart.rotor_speeds] or ["VNE"]
+    return heights, chart.speeds[first:, 0, 0, :], names
+
+
+def _along(aircraft: Aircraft, altitude: float, oat: float) -> float:
+    """A place along the chart's heights, in its unit."""
+    height = altitude
+    if aircraft.vne.density_altitude:
+        height = float(density_altitude_of(np.array(altitude), np.array(oat)))
+    return float(units.from_si(height, "height", aircraft.units.height))

@@ -134,6 +134,7 @@ def test_a_chart_that_rises_needs_a_reason(world: Path) -> None:
             "[vne.reasons]\n"
             'rises_with_temperature = { cells = "row 6,000, column +20", reason = "so printed, asked the maker" }\n'
             'rises_with_altitude = { cells = "row 6,000, column +20", reason = "so printed, asked the maker" }\n'
+            'similarity = { cells = "row 6,000, column +20", reason = "so printed, asked the maker" }\n'
             'out_of_line = { cells = "column +20", reason = "so printed, asked the maker" }\n'
             "[vne.power_off]",
         ),

@@ -1,0 +1,135 @@
+"""Entry findings: what a manual could print, though it is rarely meant, and the answers that let it stand."""
+
+from __future__ import annotations
+
+import pytest
+
+from briefkit.aircraft.answers import Kind
+from briefkit.aircraft.findings import all_findings, entry_findings
+from briefkit.aircraft.load import load_configurations
+
+
+def kinds(aircraft):
+    return {one.kind for one in all_findings(aircraft)}
+
+
+@pytest.mark.parametrize("name", ["pelquill-2t", "ormbrae-3f", "kvillarn-4h"])
+def test_the_invented_types_have_no_finding_without_an_answer(examples, name):
+    for aircraft in load_configurations(examples / "aircraft" / f"{name}.toml").values():
+        assert entry_findings(aircraft) == []
+
+
+def test_the_4hs_cold_column_is_found_and_answered(file_4h):
+    found = all_findings(file_4h.load())
+    assert [(one.kind, one.cells) for one in found] == [
+        (Kind.RISES_WITH_TEMPERATURE, f"row {height}, column -20") for height in ("0", "3,000", "6,000")
+    ]
+    bare = file_4h.replaced(
+        ('rises_with_temperature = { cells = "column -20"', 'rises_with_temperature = { cells = "row 0"')
+    )
+    assert [fault.key for fault in entry_findings(bare.load())] == [
+        "vne.power_on.chart, row 3,000, column -20",
+        "vne.power_on.chart, row 6,000, column -20",
+    ]
+
+
+def test_an_answer_for_one_column_does_not_hide_a_slip_in_another(file_4h):
+    slip = file_4h.replaced(("3,000        129   145   137    127", "3,000        129   145   137    147")).load()
+    assert any("column +20" in fault.key and "rises_with_temperature" in fault.remedy for fault in entry_findings(slip))
+
+
+@pytest.mark.parametrize(
+    ("pair", "kind", "cells"),
+    [
+        (("4,000        112", "4,000        113"), Kind.RISES_WITH_ALTITUDE, "row 4,000, column -20"),
+        (("112   112    112    108", "112   112    112    113"), Kind.RISES_WITH_TEMPERATURE, "row 0, column +40"),
+        (("77     69     61", "77     69     32"), Kind.UNDER_40_KT, "row 10,000, column +40"),
+        (("95    87     79     70", "95    87     75     70"), Kind.OUT_OF_LINE, "row 8,000, column +20"),
+        (('"85 kt"', '"115 kt"'), Kind.POWER_OFF_ABOVE_POWER_ON, ""),
+        (('"85 kt"', '"75 kt"'), Kind.POWER_OFF_UNDER_MIDPOINT, ""),
+    ],
+)
+def test_a_slip_of_typing_is_a_finding_on_its_cell(file_2t, pair, kind, cells):
+    found = all_findings(file_2t.replaced(pair).load())
+    assert (kind, cells) in [(one.kind, one.cells) for one in found], found
+
+
+def test_a_mass_that_rises_is_a_finding(file_3f):
+    found = all_findings(file_3f.replaced(("285     285     269", "285     285     296")).load())
+    assert (Kind.RISES_WITH_MASS, "row 0, column 2,380") in [(one.kind, one.cells) for one in found]
+
+
+@pytest.mark.parametrize("cell", ["264     241     213", "236     213     185"])
+def test_213_typed_as_231_is_out_of_line(file_3f, cell):
+    """Planted fault of the invented world; nothing rises, and still it is found, at its own cell."""
+    slip = file_3f.replaced((cell, cell.replace("213", "231"))).load()
+    row, column = ("2,000", "2,380") if cell.startswith("264") else ("3,000", "2,000")
+    found = all_findings(slip)
+    assert f"row {row}, column {column}" in {one.cells for one in found}
+    assert {one.kind for one in found} == {Kind.OUT_OF_LINE}
+    assert all("km/h" in one.fault.permitted for one in found)
+
+
+THREE = """at 1,700 lb or less
+ft \\ degC   -20   +40   kt indicated
+0   112   108
+10,000   96   80
+at 2,006 lb or less
+ft \\ degC   -20   +40   kt indicated
+0   112   100
+10,000   86   61"""
+
+
+def test_more_than_two_variables_need_a_reason(file_2t):
+    body = f"source = \"2-4\"\nreading = \"interpolate\"\nchart = '''\n{THREE}\n'''"
+    three = file_2t.table("vne.power_on", body)
+    (fault,) = entry_findings(three.load())
+    assert "27.1505(b)(1)" in fault.permitted
+    assert fault.read == "height, temperature, mass"
+    said = three.added('[vne.reasons]\nmore_than_two_variables = "2-4 prints one chart for each weight band"')
+    assert entry_findings(said.load()) == []
+
+
+def test_a_cell_of_a_third_variable_is_named_in_full(file_2t):
+    text = THREE.replace("10,000   86   61", "10,000   86   91")
+    body = f"source = \"2-4\"\nreading = \"interpolate\"\nchart = '''\n{text}\n'''"
+    found = all_findings(file_2t.table("vne.power_on", body).load())
+    assert "row 10,000, column +40, at ≤2,006lb" in {
+        one.cells for one in found if one.kind is Kind.RISES_WITH_TEMPERATURE
+    }
+
+
+def test_points_of_lines_and_rows_below_the_first_have_their_own_names(file_2t):
+    body = 'source = "2-4"\nreading_error = "1 kt"\nlines = \'\'\'\nft   kt indicated\n-20 degC: 0 112, 10,000 86\n'
+    body += "+40 degC: 0 108, 5,000 109, 10,000 61\n'''"
+    found = all_findings(file_2t.table("vne.power_on", body).load())
+    assert [one.cells for one in found if one.kind is Kind.RISES_WITH_ALTITUDE] == ["point 5,000, line +40 degC"]
+    below = "source = \"2-4\"\nchart = '''\nft   kt indicated\n≤0   100\n5,000   105\n10,000   90\n'''"
+    found = all_findings(file_2t.table("vne.power_on", below).load())
+    assert [one.cells for one in found if one.kind is Kind.RISES_WITH_ALTITUDE] == ["row 5,000"]
+
+
+@pytest.mark.parametrize(
+    ("answer", "key", "words"),
+    [
+        ('rises_with_temperature = "so printed"', "", '{ cells = "column -20", reason = "..." }'),
+        ('rises_with_temperature = { cells = "column -20" }', ".reason", "is needed"),
+        (
+            'rises_with_temperature = { cells = "-20", reason = "so printed" }',
+            ".cells",
+            '"row 6,000, column -20" or "all"',
+        ),
+        ('rises_with_temperature = { cells = "column -20", why = "so" }', ".why", "cells, reason"),
+        ("more_than_two_variables = 3", "", "the reason, as text in quotes"),
+        ('more_than_two_variables = " "', "", "the reason, as text in quotes"),
+    ],
+)
+def test_an_answer_that_says_nothing_is_refused(file_2t, answer, key, words):
+    faults = file_2t.added(f"[vne.reasons]\n{answer}").faults()
+    place = f"vne.reasons.{answer.partition(' =')[0]}{key}"
+    assert any(fault.key == place and words in str(fault) for fault in faults), [str(fault) for fault in faults]
+
+
+def test_a_kind_of_finding_that_does_not_exist_is_refused(file_2t):
+    fault = file_2t.added('[vne.reasons]\nrises_with_altitud = "x"').fault()
+    assert (fault.key, fault.remedy) == ("vne.reasons.rises_with_altitud", "did you mean rises_with_altitude?")
