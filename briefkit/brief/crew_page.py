@@ -8,7 +8,7 @@ from briefkit.aircraft.model import Aircraft
 from briefkit.brief import control, derivation, front, pictures, recognition
 from briefkit.brief.identity import Brief
 from briefkit.brief.pages import CrewPage, Section
-from briefkit.envelope.reductions import ReductionTable, reductions
+from briefkit.envelope.reductions import ReductionTable, RowKind, reductions
 from briefkit.errors import BuildError
 
 DRAFT: Final = "DRAFT: not for crews"
@@ -52,11 +52,13 @@ def _analysis(aircraft: Aircraft, table: ReductionTable) -> tuple[Section, ...]:
     """Sheet 3 before the author's own analysis: the method, each row, the pictures, the chart, the assumptions."""
     row = derivation.worked_row(table)
     on_chart = (Section("One row on the chart", figure=pictures.row_on_chart(aircraft, row)),) if row else ()
+    taken_off = any(one.kind is not RowKind.VNE_LIMITS for one in table.rows)
+    stairs = (Section("The reduction as a picture", figure=pictures.stairs(aircraft, table)),) if taken_off else ()
     return (
         derivation.method(aircraft, table),
         *on_chart,
         derivation.rows_section(aircraft, table),
-        Section("The reduction as a picture", figure=pictures.stairs(aircraft, table)),
+        *stairs,
         derivation.chart_section(aircraft),
         derivation.assumptions(aircraft, table),
     )

@@ -112,6 +112,16 @@ def _below(aircraft: Aircraft, row: ReductionRow, hand: Hand) -> str:
 
 def rows_section(aircraft: Aircraft, table: ReductionTable) -> Section:
     """For each mass the block point that sets it, and the equivalent level flight there."""
+    points = len(table.block.heights) * len(table.block.temperatures)
+    searched = (
+        f"{points} points over the work area: its corners, every chart row and column inside it, and every 250 ft and "
+        "2 °C"
+    )
+    heading = "The equivalent level flight of each row"
+    if all(row.kind is RowKind.VNE_LIMITS for row in table.rows):
+        masses = ", ".join(row.mass.text for row in table.rows)
+        nothing = f"Nothing is taken off at {masses}, at any of {searched}."
+        return Section(heading, before=(nothing,))
     kind = aircraft.units.speed_label()
     rows = []
     for row in table.rows:
@@ -141,13 +151,9 @@ def rows_section(aircraft: Aircraft, table: ReductionTable) -> Section:
         "Below VNE",
         "Printed",
     )
-    points = len(table.block.heights) * len(table.block.temperatures)
-    after = (
-        f"Each row is the largest of {points} points over the work area: its corners, every chart row and column "
-        "inside it, and every 250 ft and 2 °C.",
-    )
+    after = (f"Each row is the largest of {searched}.",)
     return Section(
-        "The equivalent level flight of each row",
+        heading,
         grid=Grid(header, tuple(rows), "What sets each row of section 2", Ink.COMPUTED, numbers=False),
         after=after,
     )

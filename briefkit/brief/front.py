@@ -10,6 +10,7 @@ from briefkit.aircraft.model import Aircraft
 from briefkit.aircraft.operation import FleetEntry, WorkArea
 from briefkit.brief import words
 from briefkit.brief.chart_grid import chart_grid
+from briefkit.brief.deciding import Ruling, ruled_turn, ruling_speed, tip_first
 from briefkit.brief.pages import Grid, Ink, Section
 from briefkit.envelope import cues
 from briefkit.envelope.reductions import ReductionRow, ReductionTable, RowKind
@@ -17,9 +18,10 @@ from briefkit.envelope.reductions import ReductionRow, ReductionTable, RowKind
 
 def front(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea, table: ReductionTable) -> tuple[Section, ...]:
     """The four sections of sheet 1, in their fixed order."""
+    ruling = ruling_speed(aircraft, fleet, area)
     return (
-        vne_section(aircraft, fleet, area),
-        turn_section(aircraft, fleet, area, table),
+        vne_section(aircraft, fleet, area) if ruling is None else ruled_section(aircraft, area, ruling),
+        turn_section(aircraft, fleet, area, table, ruling),
         rough_air(aircraft),
         if_it_starts(aircraft),
     )
@@ -50,6 +52,26 @@ def vne_section(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea) -> Sectio
     return Section(f"1. VNE: {chart.source}", f"{shown.speed_label()}, power on", (), grid, after=others)
 
 
+def ruled_section(aircraft: Aircraft, area: WorkArea, ruling: Ruling) -> Section:
+    """One speed of the configuration is VNE all over the area: that speed, and no other on the sheet."""
+    label = aircraft.units.speed_label()
+    digits = ruling.text.removesuffix(aircraft.units.speed).strip()
+    said = tuple(f"{speed.label}: {speed.text}." for speed in aircraft.speeds if speed.source == ruling.source)
+    beside = (*said, f"Power off: {_power_off_within(aircraft, area)}.")
+    caption = f"VNE power on, {label}, from {ruling.source}"
+    grid = Grid(("Height, temperature and mass", f"VNE, {label}"), (("all here", digits),), caption, beside=beside)
+    return Section(f"1. VNE: {ruling.source}", f"{label}, power on", grid=grid)
+
+
+def _power_off_within(aircraft: Aircraft, area: WorkArea) -> str:
+    """The one branch of the power-off VNE that holds all over the area, where there is one; else all of it."""
+    off, cap = aircraft.vne_off, aircraft.vne.cap
+    if off.to_height is None or off.less is None or area.low_altitude.value <= off.to_height.value:
+        return power_off(aircraft)
+    never_over = off.not_over is None or (cap is not None and cap - off.less.value <= off.not_over.value)
+    return f"VNE power on less {off.less.text}" if never_over else off.text
+
+
 def power_off(aircraft: Aircraft) -> str:
     """The power-off VNE in the manual's form; a bare constant in the fewest words."""
     off = aircraft.vne_off
@@ -58,31 +80,26 @@ def power_off(aircraft: Aircraft) -> str:
     return off.text
 
 
-def turn_section(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea, table: ReductionTable) -> Section:
-    """The reduction before a turn of the one briefed bank, by mass."""
+def turn_section(
+    aircraft: Aircraft, fleet: FleetEntry, area: WorkArea, table: ReductionTable, ruling: Ruling | None = None
+) -> Section:
+    """The reduction before a turn of the one briefed bank, by mass; where there is none, what decides instead."""
     bank = f"{table.brief_bank_deg:.0f}°"
     status = fleet.status
     lead = "For awareness" if status == "for information" else f"{status[:1].upper()}{status[1:]}"
     heading = f"2. {lead}: before a turn of up to {bank} of bank, slow to VNE less"
-    validity = (
-        f"{_turn(fleet)}, rotor at 100 %, Hp {_range(aircraft, area)}, "
-        f"{words.temperature(area.low_temperature.value)} to {words.temperature(area.high_temperature.value)}. "
-        f"Answer under {words.indicated(aircraft, table.floor.text)} ({table.floor.reason}): "
-        f"no {table.brief_bank_deg:.0f}-degree turn. "
-        f"Over {bank}: not briefed."
-    )
     # What the manual says of turns comes before anything computed, and the slower of the two holds.
     own = tuple(
         f"The manual’s own first: {speed.label}, {speed.text} ({speed.source}). The slower of the two holds."
         for speed in aircraft.speeds
         if speed.applies == "bank"
     )
+    cold = (said,) if (said := tip_first(aircraft, area)) else ()
+    where = _where(aircraft, fleet, area)
     if all(row.kind is RowKind.VNE_LIMITS for row in table.rows):
-        nothing = (
-            f"Up to {bank} of bank, blade stall asks for nothing below VNE here. VNE still limits: the maker set it "
-            "for reasons this page cannot see."
-        )
-        return Section(heading, before=(*own, nothing), after=(validity,))
+        limits = _nothing(aircraft, bank) if ruling is None else ruled_turn(ruling, aircraft, bank)
+        heading = f"2. {lead}: turns of up to {bank} of bank"
+        return Section(heading, before=(*own, limits, *cold), after=(f"{where} Over {bank}: not briefed.",))
     rows = tuple(
         (row.mass.text + (" or less" if row is table.rows[-1] else ""), row_text(aircraft, table, row))
         for row in table.rows
@@ -94,7 +111,26 @@ def turn_section(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea, table: R
         "In between: the heavier line. Read from the manual’s own VNE chart at the equivalent level flight (“How the "
         "reduction was found”); not a flight-manual limit and not a speed to aim for."
     )
-    return Section(heading, before=own, grid=grid, after=(method, validity))
+    floor = (
+        f"Answer under {words.indicated(aircraft, table.floor.text)} ({table.floor.reason}): "
+        f"no {table.brief_bank_deg:.0f}-degree turn."
+    )
+    return Section(heading, before=own, grid=grid, after=(*cold, method, f"{where} {floor} Over {bank}: not briefed."))
+
+
+def _where(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea) -> str:
+    """What the answer holds for, in a sentence."""
+    cold, hot = (words.temperature(one.value) for one in (area.low_temperature, area.high_temperature))
+    return f"{_turn(fleet)}, rotor at 100 %, Hp {_range(aircraft, area)}, {cold} to {hot}."
+
+
+def _nothing(aircraft: Aircraft, bank: str) -> str:
+    """Nothing is taken off: that VNE still limits, and why, where the manual says why."""
+    why = "The maker set it for reasons this page cannot see."
+    if aircraft.vne.reason:
+        page, _, said = aircraft.vne.reason.rstrip(".").partition(": ")
+        why = f"The manual says why: {said} ({page})." if said else f"The manual says why: {page}."
+    return f"Up to {bank} of bank, blade stall asks for nothing below VNE here. VNE still limits. {why}"
 
 
 def _turn(fleet: FleetEntry) -> str:
