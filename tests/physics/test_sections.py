@@ -82,6 +82,14 @@ def test_closed_forms_as_printed() -> None:
         lift, _ = lift_and_drag(Naca0012(), [1.0, departure, departure + 2.0], mach)
         assert lift[:2] == pytest.approx([slope, slope * departure], rel=1e-12)
         assert lift[2] < slope * (departure + 2.0)
+    # Drag at 9 degrees: .0081 + (-350 a + 396 a^2 - 63.3 a^3 + 3.66 a^4) 1e-6 + .00066 (a - (17 - 23.4 M))^2.54.
+    slow = 0.0081 + (-350.0 * 9.0 + 396.0 * 81.0 - 63.3 * 729.0 + 3.66 * 6561.0) * 1e-6
+    _, drag = lift_and_drag(Naca0012(), [9.0], 0.5)
+    assert drag[0] == pytest.approx(slow + 0.00066 * 3.7**2.54, rel=1e-12)
+    # Above Mach .725: the slope falls by .744 a Mach number, and 21 (M - .725)^3.2 is added to the drag.
+    lift, drag = lift_and_drag(Naca0012(), [0.0, 1.0], 0.8)
+    assert lift[1] == pytest.approx(0.1 / np.sqrt(1.0 - 0.725**2) - 0.00725 - 0.744 * 0.075, rel=1e-12)
+    assert drag[0] == pytest.approx(0.0081 + 21.0 * 0.075**3.2, rel=1e-12)
 
 
 def test_stall_angle_is_where_lift_is_largest() -> None:
@@ -142,6 +150,18 @@ def test_table_gives_its_points_and_straight_lines_between() -> None:
     assert lift[2] == pytest.approx(0.5 * (lift[1] + lift[3]), abs=1e-12)
     assert drag[[0, 1, 3, 4]] == pytest.approx(exact[1], abs=1e-12)
     assert np.degrees(section.stall_angle(np.array(0.5))) == pytest.approx(12.7, abs=0.4)
+
+
+def test_past_its_ends_a_table_becomes_a_flat_plate() -> None:
+    # Complete ten degrees past the end: 1.15 sin(2 alpha) and 1.03 - 1.02 cos(2 alpha), the other way round too.
+    lift, drag = lift_and_drag(own_table(-10.0, 20.0), [30.0, 60.0, -20.0, -60.0], 0.3)
+    twice = np.radians([60.0, 120.0, -40.0, -120.0])
+    np.testing.assert_allclose(lift, 1.15 * np.sin(twice), rtol=1e-12)
+    np.testing.assert_allclose(drag, 1.03 - 1.02 * np.cos(twice), rtol=1e-12)
+    degrees = np.linspace(-180.0, 180.0, 36_001)
+    lift, drag = lift_and_drag(own_table(-10.0, 20.0), degrees, 0.3)
+    assert np.abs(np.diff(lift)).max() < 0.003
+    assert np.abs(np.diff(drag)).max() < 1e-3
 
 
 def test_rotor_with_a_table_is_the_rotor(

@@ -10,6 +10,7 @@ import pytest
 from numpy.typing import NDArray
 
 from briefkit.errors import OutsideLimits, Reason
+from briefkit.physics import solving
 from briefkit.physics.atmosphere import density, pressure_at, speed_of_sound, temperature_at
 from briefkit.physics.balance import BALANCED, GLIDING, HELD, TRIMMED, WINDMILLING, Balance, Model
 from briefkit.physics.rotor import Distribution, Rotor, State, case_of
@@ -279,6 +280,24 @@ def test_past_the_greatest_thrust_there_is_no_trim(rotor: Rotor, mass: tuple[flo
     assert (np.diff(flight.t0[:first]) > 0.0).all()
     assert np.isnan(flight.t0[first:]).all()
     assert np.isfinite(flight.residual[lost]).all()
+
+
+def test_the_way_round_past_stall(rotor: Rotor, mass: tuple[float, float], state_of: StateOf) -> None:
+    # From a start far past stall the direct way is lost or ends on the wrong branch; by way of the section that never
+    # stalls every member comes to the answer.
+    state = state_of(rotor, speed=np.array([10.0, 30.0, 45.0, 55.0]), mass=mass[1], density=1.1)
+    answer = trim(rotor, state, section="stalling")
+    case, model = case_of(rotor, state), Model.of(rotor, "white-blake", "stalling", (24, 12))
+    missed = 0
+    for collective in (0.3, 0.45, 0.6, 0.8):
+        start = np.zeros((4, 9))
+        start[:, 0], start[:, 6] = collective, 0.02
+        direct = solving._attempt(case, model, TRIMMED, start.copy())
+        missed += int((np.abs(direct.columns[:, 0] - answer.t0) > 1e-6).sum())
+        round_about = solving._continued(case, model, TRIMMED, start.copy())
+        assert (round_about.left <= solving.ACCEPTED).all()
+        np.testing.assert_allclose(round_about.columns[:, 0], answer.t0, atol=1e-8)
+    assert missed > 0
 
 
 def test_names_and_grids_that_do_not_exist(rotor: Rotor, mass: tuple[float, float], state_of: StateOf) -> None:

@@ -161,6 +161,17 @@ def test_held_outside_the_model_is_refused(rotor: Rotor, mass: Masses, state_of:
     assert np.isnan(flight.ct[1:]).all()
 
 
+def test_as_much_thrust_down_as_up_is_refused(rotor: Rotor, mass: Masses, state_of: StateOf) -> None:
+    state = state_of(rotor, speed=40.0, mass=mass[1])
+    pitch = np.radians(np.arange(-30.0, 31.0, 5.0))
+    flight = held(rotor, state, Controls(pitch, 0.0, 0.0), inflow="uniform")
+    loading = flight.ct_sigma[flight.solved]
+    assert loading.min() < 0.0 < loading.max()
+    assert np.abs(loading).max() <= 0.18
+    assert flight.reason[0] is Reason.OUTSIDE_MODEL
+    assert flight.reason[-1] is Reason.OUTSIDE_MODEL
+
+
 def test_a_section_can_be_handed_in(rotor: Rotor, mass: Masses, state_of: StateOf) -> None:
     state = state_of(rotor, speed=40.0, mass=mass[1])
     clean, rough = (trim(rotor, state, section=Attached((drag, 0.0, 0.4))) for drag in (0.006, 0.012))
