@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import datetime as dt
+import json
 import shlex
 from collections.abc import Iterator
 from contextlib import contextmanager
@@ -14,6 +16,7 @@ from briefkit.errors import BriefkitError
 
 if TYPE_CHECKING:
     from briefkit.brief.build import Result
+    from briefkit.brief.finding import Finding
 
 app = typer.Typer(
     help="Briefs on retreating-blade stall for the crews of your own aircraft: one offline page each.",
@@ -23,6 +26,11 @@ app = typer.Typer(
     rich_markup_mode=None,
 )
 
+Day = Annotated[
+    dt.datetime | None,
+    typer.Option("--date", formats=["%Y-%m-%d"], help="The day, like 2030-03-01; today by default."),
+]
+Json = Annotated[bool, typer.Option("--json", help="Print JSON for scripts.")]
 Paths = Annotated[list[Path], typer.Argument(metavar="PATH...", exists=True, help="Brief folders, or folders of them.")]
 
 
@@ -84,20 +92,137 @@ def _print_result(result: Result) -> None:
 
 
 @app.command("check")
-def check_command(paths: Paths) -> None:
+def check_command(paths: Paths, as_json: Json = False, date: Day = None) -> None:
     """List what stands in the way of release.
 
-    Exit 1 if something blocks it. Nothing is run or written.
+    Three levels: blocks release, needs a reason, note. Exit 0 if nothing stands against release, 1 if something does, 2
+    if there is nothing to check. Over a folder it says which briefs a revised document touches. No notebook is run and
+    nothing is written.
+    """
+    with _plain_errors(faulty=2):
+        from briefkit.brief.check import findings, stands_against
+
+        every = [(path, findings(path, _day(date))) for path in paths]
+        if as_json:
+            _print_json(
+                {"stands_against_release": sum(len(stands_against(found)) for _, found in every)},
+                [finding for _, found in every for finding in found],
+            )
+        for path, found in every if not as_json else []:
+            lines = list(map(str, found))
+            against = len(stands_against(found))
+            lines += [] if against else [f"{path}: nothing stands against release"]
+            typer.echo("\n".join(lines))
+        if any(stands_against(found) for _, found in every):
+            raise typer.Exit(1)
+
+
+def _print_json(counts: dict[str, int], found: list[Finding]) -> None:
+    from dataclasses import asdict
+
+    typer.echo(json.dumps({**counts, "findings": [asdict(finding) for finding in found]}, ensure_ascii=False, indent=1))
+
+
+def _day(date: dt.datetime | None) -> dt.date:
+    return dt.date.today() if date is None else date.date()
+
+
+@app.command("sign")
+def sign_command(
+    folder: Annotated[Path, typer.Argument(exists=True, file_okay=False, help="The brief's folder.")],
+    role: Annotated[str, typer.Option(help="prepared, checked or approved.")],
+    code: Annotated[str, typer.Option(help='Your staff code, like "NRC-17"; never a name.')],
+    date: Day = None,
+) -> None:
+    """Sign a brief in one role.
+
+    Writes staff code, date and the hash of everything the page is made from into brief.toml; any later edit makes the
+    signature void, and check says what changed. Prepared, checked, approved: in this order, by different people.
     """
     with _plain_errors():
-        from briefkit.brief.check import Level, findings
+        from briefkit.brief.check import findings, stands_against
+        from briefkit.brief.sign import sign
 
-        blocks = 0
-        for path in paths:
-            found = findings(path)
-            blocks += sum(finding.level is Level.BLOCKS for finding in found)
-            typer.echo("\n".join(map(str, found)) if found else f"{path}: nothing stands against release")
-        if blocks:
+        signature = sign(folder, role, code, _day(date))
+        typer.echo(f"{folder}: {role} by {code} on {signature.date}, content {signature.content[:12]}")
+        if left := len(stands_against(findings(folder, _day(date), page=False))):
+            typer.echo(f"{left} findings still stand against release:  briefkit check {shlex.quote(str(folder))}")
+
+
+@app.command("compare")
+def compare_command(
+    old: Annotated[Path, typer.Argument(exists=True, help="A brief's folder, or the archive of an issued one.")],
+    new: Annotated[Path, typer.Argument(exists=True, help="The same, of the later revision.")],
+    as_json: Json = False,
+) -> None:
+    """Say what changed between two revisions, in words and numbers.
+
+    Figures that became less conservative come first, each with the reason NEW gives in [[changes]]. Exit 1 if one has
+    no reason.
+    """
+    with _plain_errors():
+        from contextlib import ExitStack
+        from dataclasses import asdict
+
+        from briefkit.brief.compare import compare, explained
+        from briefkit.brief.issue import opened
+
+        with ExitStack() as stack:
+            before, after = (stack.enter_context(opened(path)) for path in (old, new))
+            found = [
+                (one, explained(after.brief, one) if one.less_conservative else "") for one in compare(before, after)
+            ]
+        if as_json:
+            typer.echo(json.dumps([{**asdict(one), "reason": why} for one, why in found], ensure_ascii=False, indent=1))
+        for one, why in found if not as_json else []:
+            typer.echo(str(one) + (f" ({why})" if why else ", no reason given" if one.less_conservative else ""))
+        if not found and not as_json:
+            typer.echo("nothing changed")
+        if any(one.less_conservative and not why for one, why in found):
+            raise typer.Exit(1)
+
+
+@app.command("issue")
+def issue_command(
+    folder: Annotated[Path, typer.Argument(exists=True, file_okay=False, help="The brief's folder.")],
+    out: Annotated[Path, typer.Option("--out", file_okay=False, help="Folder for the page.")] = Path("out"),
+    date: Day = None,
+) -> None:
+    """Issue a signed brief: its page, a line in register.toml, an archive of everything it was made from.
+
+    Refused while anything stands against release, or where this revision was issued already.
+    """
+    with _plain_errors():
+        from briefkit.brief.export import released
+        from briefkit.brief.issue import issue
+
+        entry, page = issue(folder, out, _day(date), released)
+        typer.echo(f"{page}  {entry.number} rev {entry.revision}, SHA-256 {entry.page}")
+
+
+@app.command("verify")
+def verify_command(
+    pages: Annotated[list[Path], typer.Argument(metavar="PAGE...", exists=True, dir_okay=False, help="Issued pages.")],
+    register: Annotated[
+        Path | None, typer.Option(exists=True, help="The operator's folder or register; else looked for above PAGE.")
+    ] = None,
+    date: Day = None,
+    as_json: Json = False,
+) -> None:
+    """Say whether a page is as registered, altered, superseded, expired, or not in this register.
+
+    Exit 0 only if every page is as registered and in force.
+    """
+    with _plain_errors():
+        from briefkit.brief.issue import State, find_register, verify
+
+        answers = [(page, verify(page, find_register(page, register), _day(date))) for page in pages]
+        if as_json:
+            said = [{"page": str(page), "state": answer.state, "text": answer.text} for page, answer in answers]
+            typer.echo(json.dumps(said, ensure_ascii=False, indent=1))
+        for page, answer in answers if not as_json else []:
+            typer.echo(f"{page}: {answer}")
+        if any(answer.state is not State.AS_REGISTERED for _, answer in answers):
             raise typer.Exit(1)
 
 
@@ -157,13 +282,13 @@ def live_command(
 
 
 @contextmanager
-def _plain_errors() -> Iterator[None]:
-    """An expected error is its own text and exit 1; an interrupt is one line."""
+def _plain_errors(faulty: int = 1) -> Iterator[None]:
+    """An expected error is its own text and exit 1 (or `faulty`); an interrupt is one line."""
     try:
         yield
     except BriefkitError as error:
         typer.echo(str(error), err=True)
-        raise typer.Exit(1) from None
+        raise typer.Exit(faulty) from None
     except KeyboardInterrupt:
         typer.echo("stopped", err=True)
         raise typer.Exit(130) from None

@@ -69,10 +69,16 @@ class FleetEntry:
 
 @dataclass(frozen=True)
 class Policy:
-    """Who must sign: at least `people` distinct staff codes, never fewer than two, the approver never the preparer."""
+    """Who must sign: at least `people` distinct staff codes, never fewer than two, the approver never the preparer.
+
+    `approvers` are the staff codes that may approve, `limit_approvers` those that may approve a page whose status is a
+    company limit; empty where anyone may.
+    """
 
     people: int = 3
     validity_months: int = 24
+    approvers: tuple[str, ...] = ()
+    limit_approvers: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True)
@@ -101,13 +107,15 @@ class Operation:
 class _OperatorTable(Table):
     required: ClassVar[tuple[str, ...]] = ("name", "documents")
     name: Text | None = None
-    documents: list[Text] | None = None
+    documents: Annotated[list[Text], Field(min_length=1)] | None = None
     source: str = ""
 
 
 class _PolicyTable(Table):
     people: Annotated[int, Field(ge=2, le=3)] = 3
     validity_months: Annotated[int, Field(ge=1, le=60)] = 24
+    approvers: list[Text] | None = None
+    limit_approvers: list[Text] | None = None
 
 
 class _AreaTable(Table):
@@ -160,7 +168,12 @@ def load_operation(path: Path | str) -> Operation:
         name=needed(operator.name),
         source=operator.source,
         documents=tuple(needed(operator.documents)),
-        policy=Policy(policy.people, policy.validity_months),
+        policy=Policy(
+            policy.people,
+            policy.validity_months,
+            tuple(policy.approvers or ()),
+            tuple(policy.limit_approvers or ()),
+        ),
         work_areas={key: _area(key, area) for key, area in areas.items()},
         fleet={key: _entry(key, entry) for key, entry in fleet.items()},
         invented=str(invented),
@@ -191,6 +204,14 @@ def _check_area(document: Document, key: str, area: _AreaTable) -> None:
         pair: list[Typed] | None = getattr(area, name)
         if pair and needed(pair[0].value) > needed(pair[1].value):
             document.fault(f"{place}.{name}", f"{pair[0].text}, {pair[1].text}", "the lower, then the higher")
+        _check_one_unit(document, f"{place}.{name}", pair or [])
+
+
+def _check_one_unit(document: Document, place: str, values: list[Typed]) -> None:
+    """Values of one list in two units: one of them is a slip."""
+    other = next((typed for typed in values if typed.unit.strip("°deg") != values[0].unit.strip("°deg")), None)
+    if other is not None:
+        document.fault(place, f"{values[0].text}, {other.text}", "one unit in all", "correct the one that is wrong")
 
 
 def _check_entry(document: Document, key: str, entry: _FleetTable) -> None:
@@ -200,6 +221,7 @@ def _check_entry(document: Document, key: str, entry: _FleetTable) -> None:
         if needed(mass.value) >= needed(above.value):
             permitted = f"less than the one before it, {above.text}"
             document.fault(f"{place}.masses, value {number}", mass.text, permitted, "heaviest first, each once")
+    _check_one_unit(document, f"{place}.masses", masses)
     if entry.status and entry.status != FOR_INFORMATION and not _COMPANY_LIMIT.fullmatch(entry.status):
         permitted = f'"{FOR_INFORMATION}", or "company limit, " and its reference'
         document.fault(f"{place}.status", quoted(entry.status), permitted, 'like "company limit, OM-B 2.3"')

@@ -1,22 +1,30 @@
-"""What stands between a brief and its release: faults, what is still "?", missing sources and spreads, dates, people.
+"""What stands between a brief and its release, each finding with its place and remedy.
 
-Nothing is computed or run here; `build` does that. A draft may have findings, a released page may not block on any.
+Faults, what is still "?", missing sources and spreads, documents revised since, dates, signatures, people's data,
+pictures without words, and the page held against its own rules. No cell is run here; `build` does that. A draft may
+have findings; a released page has none that blocks and none that still needs a reason.
 """
 
 from __future__ import annotations
 
 import calendar
 import datetime as dt
-import json
 from collections.abc import Iterable
 from pathlib import Path
 
 from briefkit.aircraft.operation import OPERATION_FILE, Operation, load_operation
 from briefkit.aircraft.operation_check import cross_check
+from briefkit.brief import check_register
 from briefkit.brief.check_aircraft import aircraft_findings
+from briefkit.brief.check_notebook import notebook_findings, personal_data
+from briefkit.brief.check_page import page_findings
+from briefkit.brief.compare import Difference, Revision, turns_of
+from briefkit.brief.crew_page import table_of
 from briefkit.brief.finding import Finding, Level, from_fault, invented_finding, loaded, source_findings
 from briefkit.brief.identity import (
     BRIEF_FILE,
+    NOTEBOOK,
+    Brief,
     Identity,
     disagreements,
     load_identity,
@@ -25,33 +33,49 @@ from briefkit.brief.identity import (
     operator_folder,
     shown_path,
 )
-from briefkit.errors import Fault, FaultyFile
+from briefkit.brief.register import REGISTER_FILE
+from briefkit.brief.seal import seal_of
+from briefkit.brief.sign import problems
+from briefkit.envelope.reductions import ReductionTable
+from briefkit.errors import BriefkitError, Fault, FaultyFile
 
-__all__ = ["Finding", "Level", "findings"]
+__all__ = ["Finding", "Level", "findings", "page_standing", "stands_against"]
 
 
-def findings(path: Path | str, today: dt.date | None = None) -> list[Finding]:
+def findings(path: Path | str, today: dt.date | None = None, *, page: bool = True) -> list[Finding]:
     """Every finding on a brief (folder or `brief.toml`), on all briefs of an operator folder, or on an aircraft file.
 
-    `today` is the day expiry is held against, by default the clock's. Raises `FaultyFile` only where the path leads to
-    nothing to check.
+    `today` is the day expiry is held against, by default the clock's. Without `page` what has to be computed for the
+    crew's page is left out. Over an operator folder it also says which briefs a revised document touches, and which
+    issued pages. Raises `FaultyFile` only where the path leads to nothing to check.
     """
     path, today = Path(path), today or dt.date.today()
     if path.is_file() and path.name == BRIEF_FILE:
         path = path.parent
     if path.is_file():
-        if path.suffix != ".toml" or path.name == OPERATION_FILE:
+        if path.suffix != ".toml" or path.name in (OPERATION_FILE, REGISTER_FILE):
             raise _nothing(path)
         return _sorted(aircraft_findings(path)[1])
     if (path / BRIEF_FILE).is_file():
-        return _brief(path, today)
-    folders = sorted(file.parent for file in path.rglob(BRIEF_FILE))
+        return _sorted(_brief(path, today, page)[1])
+    folders = [file.parent for file in sorted(path.rglob(BRIEF_FILE)) if not _hidden(file.relative_to(path))]
     if not folders:
         raise _nothing(path)
-    found: dict[Finding, None] = {}
+    found, briefs = [], []
     for folder in folders:
-        found |= dict.fromkeys(_brief(folder, today))
-    return _sorted(found)
+        brief, more = _brief(folder, today, page)
+        found += more
+        briefs += [brief] if brief is not None else []
+    return _sorted([*found, *_over_all(briefs, today)])
+
+
+def stands_against(found: Iterable[Finding]) -> list[Finding]:
+    """Those a released page may not have: what blocks, and what still needs a reason."""
+    return [finding for finding in found if finding.level is not Level.NOTE]
+
+
+def _hidden(inside: Path) -> bool:
+    return any(part.startswith(".") for part in inside.parts)
 
 
 def _nothing(path: Path) -> FaultyFile:
@@ -59,7 +83,20 @@ def _nothing(path: Path) -> FaultyFile:
     return FaultyFile([Fault(str(path), "path", "nothing to check", permitted, "check the path")])
 
 
-def _brief(folder: Path, today: dt.date) -> list[Finding]:
+def _over_all(briefs: list[Brief], today: dt.date) -> list[Finding]:
+    """What a revised document touches, operator by operator."""
+    found = []
+    for operator in dict.fromkeys(brief.identity.operator for brief in briefs):
+        register, _ = check_register.read_register(operator)
+        own = [brief for brief in briefs if brief.identity.operator == operator]
+        if register is not None:
+            found += check_register.touched(own, register)
+            found += check_register.to_recall(own, register, today)
+    return found
+
+
+def _brief(folder: Path, today: dt.date, page: bool) -> tuple[Brief | None, list[Finding]]:
+    """A brief as loaded, None where a file of it has faults, and everything found on it."""
     identity, found = loaded(folder / BRIEF_FILE, load_identity)
     operation, aircraft = None, None
     try:
@@ -67,25 +104,59 @@ def _brief(folder: Path, today: dt.date) -> list[Finding]:
         found += more
     except FaultyFile as error:
         found += [finding for fault in error.faults if (finding := from_fault(fault)) not in found]
-    found += _notebook(folder)
+    found += notebook_findings(folder)
     if (named := named_aircraft(folder)) is not None:
         aircraft, more = aircraft_findings(named, named_configuration(folder))
         found += more
     if identity is not None:
-        found += _dates(identity, operation, folder, today)
+        found += _identity(identity, operation, folder, today)
         found += map(from_fault, disagreements(identity, aircraft, operation))
-        if operation is not None:
-            found += _people(identity, operation, folder)
     if operation is not None:
         place = str(shown_path(operator_folder(folder) / OPERATION_FILE))
         found += source_findings(place, operation.sources) + invented_finding(place, operation.invented)
-    if operation is not None and aircraft is not None and identity is not None:
-        found += map(from_fault, cross_check(operation, aircraft, [identity.work_area]))
-    return _sorted(found)
+    if operation is None or aircraft is None or identity is None:
+        return None, found
+    crossed = cross_check(operation, aircraft, [identity.work_area])
+    found += map(from_fault, crossed)
+    brief = Brief(identity, aircraft, operation)
+    unread = any(one.level is Level.BLOCKS and one.place == str(folder / NOTEBOOK) for one in found)
+    found += [] if unread else _signatures(brief, folder)
+    if crossed or disagreements(identity, aircraft, operation):
+        return None, found
+    register, more = check_register.read_register(identity.operator)
+    found += more
+    if register is not None:
+        found += check_register.source_revisions(brief, register, today)
+    return brief, found + (page_standing(brief)[2] if page else [])
 
 
-def _dates(identity: Identity, operation: Operation | None, folder: Path, today: dt.date) -> list[Finding]:
-    place, found = str(folder / BRIEF_FILE), []
+def page_standing(brief: Brief) -> tuple[ReductionTable | None, tuple[Difference, ...], list[Finding]]:
+    """What has to be computed for the crew's page: its table of turns, what it relaxes since the last issue, findings.
+
+    The table is None where the operation asks for what cannot be answered; then the finding says why.
+    """
+    try:
+        table = table_of(brief)
+    except BriefkitError as error:
+        place = f"{brief.identity.operator / brief.operation.file}: work_areas.{brief.identity.work_area}"
+        return None, (), [Finding(Level.BLOCKS, place, str(error), "a work area or a mass the manual does not cover")]
+    found = page_findings(brief, table)
+    register, _ = check_register.read_register(brief.identity.operator)
+    if register is None:
+        return table, (), found
+    differences, more = check_register.figures_relaxed(Revision(brief, turns_of(table)), register)
+    return table, differences, found + more
+
+
+def _identity(identity: Identity, operation: Operation | None, folder: Path, today: dt.date) -> list[Finding]:
+    place = str(folder / BRIEF_FILE)
+    found = _dates(identity, operation, place, today) + check_register.basis_findings(place, identity)
+    said = "\n".join((identity.title, *identity.basis, *(f"{one.text}\n{one.reason}" for one in identity.changes)))
+    return found + personal_data(place, said)
+
+
+def _dates(identity: Identity, operation: Operation | None, place: str, today: dt.date) -> list[Finding]:
+    found = []
     if identity.expires <= today:
         text = f"expired on {identity.expires}"
         found.append(Finding(Level.BLOCKS, f"{place}: document.expires", text, "review it and issue a new revision"))
@@ -110,35 +181,13 @@ def _months_after(day: dt.date, months: int) -> dt.date:
     return dt.date(year, month + 1, min(day.day, calendar.monthrange(year, month + 1)[1]))
 
 
-def _people(identity: Identity, operation: Operation, folder: Path) -> list[Finding]:
-    place, people = f"{folder / BRIEF_FILE}: people", operation.policy.people
-    empty = [role for role in ("prepared", "checked", "approved") if not getattr(identity, role)]
-    if empty:
-        text = f"nobody yet for {', '.join(empty)}: a draft, not for crews"
-        return [Finding(Level.BLOCKS, place, text, "the page says DRAFT until all three have signed")]
-    if identity.approved == identity.prepared:
-        text = f"{identity.approved} has prepared and approved"
-        return [Finding(Level.BLOCKS, place, text, "the approver is never the preparer")]
-    distinct = len(set(identity.people))
-    if distinct < people:
-        text = f"{distinct} distinct people, the policy asks for {people} ({operation.file})"
-        return [Finding(Level.BLOCKS, place, text, "another person has to sign one of the roles")]
-    return []
-
-
-def _notebook(folder: Path) -> list[Finding]:
-    path = folder / "brief.ipynb"
-    if not path.is_file():
-        return [Finding(Level.BLOCKS, str(path), "no notebook", "every brief has a brief.ipynb beside its brief.toml")]
+def _signatures(brief: Brief, folder: Path) -> list[Finding]:
     try:
-        cells = json.loads(path.read_text(encoding="utf-8"))["cells"]
-        stored = any(cell.get("outputs") for cell in cells)
-    except (OSError, ValueError, KeyError, TypeError, AttributeError):
-        return [Finding(Level.BLOCKS, str(path), "not a notebook that can be read", "save it again from JupyterLab")]
-    if stored:
-        remedy = "clear the outputs before you pass the file on"
-        return [Finding(Level.NOTE, str(path), "outputs are stored in it; a build never reads them", remedy)]
-    return []
+        seal = seal_of(brief.identity)
+    except BriefkitError as error:
+        return [Finding(Level.BLOCKS, str(folder), str(error), "every file of the brief's folder is signed with it")]
+    place = f"{folder / BRIEF_FILE}: signatures"
+    return [Finding(Level.BLOCKS, place, text, remedy) for text, remedy in problems(brief, seal)]
 
 
 def _sorted(found: Iterable[Finding]) -> list[Finding]:

@@ -1,7 +1,8 @@
 """What a brief is: its number, revision, dates, aircraft, work area and people, from `brief.toml` in its folder.
 
-People are staff codes, never names. Nothing is read outside the operator folder, the nearest folder upwards that holds
-`operation.toml`.
+People are staff codes, never names. `[people]` says who is expected to sign; only a `[[signatures]]` entry written by
+`sign`, with the hash of what was signed, is a signature. Nothing is read outside the operator folder, the nearest
+folder upwards that holds `operation.toml`.
 """
 
 from __future__ import annotations
@@ -10,7 +11,7 @@ import datetime as dt
 import re
 from dataclasses import dataclass
 from pathlib import Path, PurePosixPath
-from typing import Annotated, ClassVar, Final
+from typing import Annotated, ClassVar, Final, Literal
 
 from pydantic import Field
 
@@ -29,22 +30,43 @@ NOTEBOOK: Final = "brief.ipynb"
 # A staff code has a digit in it and no small letters: "NRC-17" is one, a name is not.
 _STAFF_CODE = re.compile(r"(?=[A-Z0-9-]*[0-9])[A-Z0-9]{1,8}(?:-[A-Z0-9]{1,8}){0,2}")
 _NUMBER = re.compile(r"[A-Z0-9][A-Z0-9-]{1,30}")
-_ROLES: Final = ("prepared", "checked", "approved")
+_CONTENT = re.compile(r"[0-9a-f]{64}")
+ROLES: Final = ("prepared", "checked", "approved")
 
 
 @dataclass(frozen=True)
 class Change:
-    """One line of the list of changes."""
+    """One line of the list of changes.
+
+    `figures` names figures that became less conservative and `reason` says why; `sections` names what it marks on the
+    page.
+    """
 
     revision: int
     text: str
+    figures: tuple[str, ...] = ()
+    reason: str = ""
+    sections: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True)
+class Signature:
+    """One signature: role, staff code, day, SHA-256 of what was signed, and its parts ("operation.toml 1f2e...")."""
+
+    role: str
+    code: str
+    date: dt.date
+    content: str
+    signed: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True)
 class Identity:
-    """A brief as its `brief.toml` states it. Staff codes are "" where nobody has signed; `folder` holds the notebook.
+    """A brief as its `brief.toml` states it; `folder` holds the notebook.
 
-    `aircraft` is the path of the aircraft file inside the operator folder `operator`.
+    `prepared`, `checked` and `approved` are the staff codes expected to sign, "" where anyone may. `signatures` are
+    as written, whether or not what was signed has changed since (see `seal`). `aircraft` is the path of the aircraft
+    file inside the operator folder `operator`.
     """
 
     number: str
@@ -62,16 +84,12 @@ class Identity:
     approved: str
     changes: tuple[Change, ...]
     basis: tuple[str, ...]
+    signatures: tuple[Signature, ...]
     folder: Path
     operator: Path
     file: str = BRIEF_FILE
     data_hash: str = ""
     unanswered: tuple[str, ...] = ()
-
-    @property
-    def people(self) -> tuple[str, ...]:
-        """Prepared, checked, approved, without the empty ones."""
-        return tuple(code for code in (self.prepared, self.checked, self.approved) if code)
 
     @property
     def aircraft_path(self) -> Path:
@@ -81,10 +99,9 @@ class Identity:
     def notebook(self) -> Path:
         return self.folder / NOTEBOOK
 
-    def signed(self, people: int) -> bool:
-        """All three roles filled, by at least `people` distinct codes, the approver not the preparer."""
-        roles = (self.prepared, self.checked, self.approved)
-        return all(roles) and len(set(roles)) >= people and self.approved != self.prepared
+    def expected(self, role: str) -> str:
+        """The staff code expected to sign a role, "" where anyone may."""
+        return {"prepared": self.prepared, "checked": self.checked, "approved": self.approved}[role]
 
 
 class _DocumentTable(Table):
@@ -116,6 +133,18 @@ class _ChangeEntry(Table):
     required: ClassVar[tuple[str, ...]] = ("revision", "text")
     revision: Annotated[int, Field(ge=0)] | None = None
     text: Text | None = None
+    figures: list[Text] | None = None
+    reason: Text | None = None
+    sections: list[Text] | None = None
+
+
+class _SignatureEntry(Table):
+    required: ClassVar[tuple[str, ...]] = ("role", "code", "date", "content", "signed")
+    role: Literal["prepared", "checked", "approved"] | None = None
+    code: Text | None = None
+    date: dt.date | None = None
+    content: Text | None = None
+    signed: list[Text] | None = None
 
 
 def operator_folder(path: Path | str) -> Path:
@@ -141,17 +170,20 @@ def load_identity(path: Path | str) -> Identity:
         operator = operator_folder(file.parent)
     except FaultyFile as error:
         document.faults += error.faults
-    document.tables("", ("document", "subject"), ("people", "changes"))
+    document.tables("", ("document", "subject"), ("people", "changes", "signatures"))
     head = document.table("document", _DocumentTable)
     subject = document.table("subject", _SubjectTable)
     people = document.table("people", _PeopleTable) or _PeopleTable()
     changes = document.entries("changes", _ChangeEntry)
+    signatures = document.entries("signatures", _SignatureEntry)
     if head:
         _check_head(document, head)
     if subject and operator:
         _check_subject(document, subject, operator)
-    for role in _ROLES:
-        _check_code(document, role, getattr(people, role))
+    for role in ROLES:
+        _check_code(document, f"people.{role}", getattr(people, role))
+    _check_changes(document, changes)
+    _check_signatures(document, signatures)
     document.raise_faults()
     head, subject = needed(head), needed(subject)
     return Identity(
@@ -168,8 +200,9 @@ def load_identity(path: Path | str) -> Identity:
         prepared=people.prepared,
         checked=people.checked,
         approved=people.approved,
-        changes=tuple(Change(needed(entry.revision), needed(entry.text)) for _, entry in changes),
+        changes=tuple(_change(entry) for _, entry in changes),
         basis=tuple(head.basis or ()),
+        signatures=tuple(_signature(entry) for _, entry in signatures),
         folder=file.parent,
         operator=needed(operator),
         file=file.name,
@@ -294,10 +327,43 @@ def _check_subject(document: Document, subject: _SubjectTable, operator: Path) -
         document.fault(key, f"{quoted(subject.aircraft)}, no such file", permitted, remedy)
 
 
-def _check_code(document: Document, role: str, code: str) -> None:
-    if code and not _STAFF_CODE.fullmatch(code):
-        permitted = 'a staff code with a digit in it, like "NRC-17", or "" while nobody has signed'
-        document.fault(f"people.{role}", quoted(code), permitted, "a code, not a name: people are not named on a brief")
+def staff_code(code: str) -> bool:
+    """Whether a text is a staff code: capitals and digits with at least one digit, so that no name is one."""
+    return bool(_STAFF_CODE.fullmatch(code))
+
+
+def _check_code(document: Document, key: str, code: str) -> None:
+    if code and not staff_code(code):
+        permitted = 'a staff code with a digit in it, like "NRC-17", or "" where anyone may sign'
+        document.fault(key, quoted(code), permitted, "a code, not a name: people are not named on a brief")
+
+
+def _check_changes(document: Document, entries: list[tuple[str, _ChangeEntry]]) -> None:
+    for name, entry in entries:
+        if entry.figures and not entry.reason and not document.has_fault_below(f"{name}.reason"):
+            document.fault(f"{name}.reason", "nothing", "why these figures may be less conservative", "add it")
+
+
+def _check_signatures(document: Document, entries: list[tuple[str, _SignatureEntry]]) -> None:
+    seen: set[str] = set()
+    for name, entry in entries:
+        _check_code(document, f"{name}.code", entry.code or "")
+        if entry.content and not _CONTENT.fullmatch(entry.content):
+            remedy = "take the entry out and sign again: briefkit sign writes it"
+            document.fault(f"{name}.content", quoted(entry.content), "64 hexadecimal digits", remedy)
+        if entry.role and entry.role in seen:
+            document.fault(f"{name}.role", quoted(entry.role), "each role once", "take one of the two entries out")
+        seen.add(entry.role or "")
+
+
+def _change(entry: _ChangeEntry) -> Change:
+    figures, sections = tuple(entry.figures or ()), tuple(entry.sections or ())
+    return Change(needed(entry.revision), needed(entry.text), figures, entry.reason or "", sections)
+
+
+def _signature(entry: _SignatureEntry) -> Signature:
+    role, code, content = needed(entry.role), needed(entry.code), needed(entry.content)
+    return Signature(role, code, needed(entry.date), content, tuple(entry.signed or ()))
 
 
 def shown_path(path: Path) -> Path:

@@ -12,13 +12,13 @@ from briefkit.errors import BuildError
 _LEFTOVER: Final = ".part"
 
 
-def write_page(path: Path, text: str) -> int:
-    """Write UTF-8 text beside, flush it to the disk, put it in place, readable by all; the number of bytes.
+def write_page(path: Path, text: str | bytes) -> int:
+    """Write UTF-8 text (or bytes) beside, flush it to the disk, put it in place, readable by all; the number of bytes.
 
     Raises:
         BuildError: the folder or the disk refuses; a page already there is left whole.
     """
-    content = text.encode("utf-8")
+    content = text.encode("utf-8") if isinstance(text, str) else text
     beside = path.with_name(f".{path.name}.{os.getpid()}{_LEFTOVER}")
     try:
         path.parent.mkdir(parents=True, exist_ok=True)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import datetime as dt
 import json
 import shutil
 from pathlib import Path
@@ -50,3 +51,49 @@ def operator(tmp_path: Path, examples: Path, nb: Notebooks) -> Path:
 @pytest.fixture
 def brief(operator: Path) -> Path:
     return operator / "vellmark-2t"
+
+
+SIGNED_ON = dt.date(2030, 3, 5)
+STAFF = {"prepared": "NRC-17", "checked": "NRC-21", "approved": "NRC-02"}
+
+
+@pytest.fixture
+def complete(operator: Path) -> Path:
+    """The operator's folder as a real one: nothing says that it is invented. Nobody has signed."""
+    for path in (operator / "operation.toml", operator / "aircraft" / "pelquill-2t.toml"):
+        lines = path.read_text(encoding="utf-8").split("\n")
+        path.write_text("\n".join(line for line in lines if not line.startswith("invented")), encoding="utf-8")
+    return operator
+
+
+class Signing:
+    """Signs a brief in all three roles, each by another member of staff."""
+
+    day, staff = SIGNED_ON, STAFF
+
+    def __call__(self, folder: Path, day: dt.date = SIGNED_ON) -> Path:
+        from briefkit.brief.sign import sign
+
+        for role, code in STAFF.items():
+            sign(folder, role, code, day)
+        return folder
+
+    @staticmethod
+    def edit(path: Path, *pairs: tuple[str, str]) -> None:
+        """Replace pieces of a text file, each of which has to be there."""
+        text = path.read_text(encoding="utf-8")
+        for old, new in pairs:
+            assert old in text
+            text = text.replace(old, new)
+        path.write_text(text, encoding="utf-8")
+
+
+@pytest.fixture(scope="session")
+def signing() -> Signing:
+    return Signing()
+
+
+@pytest.fixture
+def signed(complete: Path, signing: Signing) -> Path:
+    """A brief with nothing against its release."""
+    return signing(complete / "vellmark-2t")

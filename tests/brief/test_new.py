@@ -164,7 +164,7 @@ def test_the_example_notebook_is_committed_without_outputs(examples: Path, name:
 def test_dates_are_those_of_the_day(tmp_path: Path) -> None:
     identity = load_brief(new(tmp_path / "op", VRENHOLT, TODAY).folder).identity
     assert (identity.issued, identity.effective, identity.expires) == (TODAY, TODAY, dt.date(2031, 5, 31))
-    assert not identity.signed(2)
+    assert identity.signatures == ()
 
 
 @pytest.mark.parametrize(

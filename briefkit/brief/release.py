@@ -1,0 +1,54 @@
+"""Whether a page may say anything but DRAFT: signed by policy, nothing against release, and not past its day."""
+
+from __future__ import annotations
+
+import datetime as dt
+from collections.abc import Iterable
+from dataclasses import dataclass
+from typing import Any
+
+from briefkit.brief.check import findings, page_standing, stands_against
+from briefkit.brief.compare import Difference, explained
+from briefkit.brief.crew_page import DRAFT
+from briefkit.brief.identity import Brief, Signature, load_brief
+from briefkit.brief.seal import Seal, seal_of
+from briefkit.brief.sign import valid
+from briefkit.envelope.reductions import ReductionTable
+
+
+@dataclass(frozen=True)
+class Standing:
+    """What a page says of itself: `mark` is "" for a released one, `expired` the day it ended where it has.
+
+    `signed` are the signatures that hold, by role; `relaxed` the figures less conservative than in the last issued
+    revision, each with the reason given; `table` the table of turns the page was looked at with.
+    """
+
+    mark: str
+    seal: Seal
+    signed: dict[str, Signature]
+    relaxed: tuple[tuple[Difference, str], ...]
+    table: ReductionTable | None
+    expired: dt.date | None = None
+
+
+def standing(brief: Brief, cells: Iterable[Any] | None = None, today: dt.date | None = None) -> Standing:
+    """The standing of a loaded brief on a day (by default the clock's); `cells` are those that will be run.
+
+    A page made from anything but the files that were looked at is a draft: cells not saved, a file changed meanwhile.
+    """
+    today = today or dt.date.today()
+    identity = brief.identity
+    seal = seal_of(identity, cells)
+    table, differences, found = page_standing(brief)
+    found = found + findings(identity.folder, today, page=False)
+    fresh = load_brief(identity.folder)
+    looked_at = _hashes(brief) == _hashes(fresh) and seal == seal_of(identity)
+    released = looked_at and not stands_against(found)
+    expired = identity.expires if identity.expires <= today else None
+    relaxed = tuple((one, explained(brief, one)) for one in differences)
+    return Standing("" if released else DRAFT, seal, valid(identity, seal), relaxed, table, expired)
+
+
+def _hashes(brief: Brief) -> tuple[str, ...]:
+    return brief.identity.data_hash, brief.aircraft.data_hash, brief.operation.data_hash, brief.aircraft.configuration
