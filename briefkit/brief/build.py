@@ -13,7 +13,7 @@ from dataclasses import dataclass
 from pathlib import Path
 from typing import Final
 
-from briefkit.brief.export import compose, contents
+from briefkit.brief.export import compose, contents, unchanged
 from briefkit.brief.fit import complaint
 from briefkit.brief.harden import harden
 from briefkit.brief.identity import BRIEF_FILE, Brief, load_brief
@@ -111,9 +111,11 @@ async def _build_one(folder: Path, out: Path, taken: dict[str, Path]) -> Result:
     try:
         brief = load_brief(folder)
         target = _target(brief, folder, out, taken)
-        page = contents(brief)
+        node = read_notebook(brief.identity.notebook)
+        page = contents(brief, node)
         title, mark = page.heading, page.mark
-        ran = await run_async(read_notebook(brief.identity.notebook), brief.identity.notebook)
+        ran = await run_async(node, brief.identity.notebook)
+        unchanged(brief, page, node)
         html, sheet = compose(page, ran, folder), _readback(brief, page)
         size = write_page(target, html)
         write_page(target.with_suffix(".readback.html"), sheet)

@@ -3,23 +3,28 @@
 from __future__ import annotations
 
 import datetime as dt
+from typing import TYPE_CHECKING
 
 from briefkit.aircraft.operation import Operation
-from briefkit.brief.identity import Brief, Identity
-from briefkit.brief.pages import Grid, Ink, Section
-from briefkit.envelope import cues
+from briefkit.brief.identity import ROLES, Brief, Identity
+from briefkit.brief.pages import Grid, Ink, Section, Source
+
+if TYPE_CHECKING:
+    from briefkit.brief.release import Standing
 
 _HASH_SHOWN = 12
 
 
-def control(brief: Brief, version: str) -> tuple[Section, ...]:
-    """The sections of sheet 4."""
+def control(
+    brief: Brief, version: str, listed: tuple[Source, ...], standing: Standing | None = None
+) -> tuple[Section, ...]:
+    """The sections of sheet 4; without a `standing` nobody has signed."""
     return (
         document(brief.identity, brief.operation),
-        people(brief.identity, brief.operation),
-        changes(brief.identity),
-        sources(brief),
-        made_from(brief, version),
+        people(brief.identity, brief.operation, standing),
+        changes(brief.identity, standing),
+        sources(listed, brief.identity),
+        made_from(brief, version, standing),
     )
 
 
@@ -48,46 +53,51 @@ def document(identity: Identity, operation: Operation) -> Section:
     )
 
 
-def people(identity: Identity, operation: Operation) -> Section:
-    """Prepared, checked, approved, by staff code, with room for wet signatures."""
-    rows = tuple(
-        (role, code or "not signed", "", "")
-        for role, code in (
-            ("Prepared", identity.prepared),
-            ("Checked", identity.checked),
-            ("Approved", identity.approved),
-        )
-    )
-    grid = Grid(("Role", "Staff code", "Signature", "Date"), rows, "Who stands behind it", Ink.CONTEXT, numbers=False)
-    return Section("Signatures", grid=grid, after=(f"At least {operation.policy.people} different people.",))
+def people(identity: Identity, operation: Operation, standing: Standing | None = None) -> Section:
+    """Prepared, checked, approved, by staff code and day, with room for wet signatures beside them."""
+    rows = []
+    for role in ROLES:
+        signature = standing.signed.get(role) if standing is not None else None
+        expected = identity.expected(role)
+        open_role = f"not signed ({expected} to sign)" if expected else "not signed"
+        said = (signature.code, day(signature.date)) if signature is not None else (open_role, "")
+        rows.append((role.capitalize(), *said, ""))
+    grid = Grid(
+        ("Role", "Staff code", "Date", "Signature on paper"), tuple(rows), "Who stands behind it", Ink.CONTEXT,
+        numbers=False,
+    )  # fmt: skip
+    after = f"At least {operation.policy.people} different people. An edit of anything signed makes the page a draft."
+    return Section("Signatures", grid=grid, after=(after,))
 
 
-def changes(identity: Identity) -> Section:
-    """What changed, newest first as typed."""
+def changes(identity: Identity, standing: Standing | None = None) -> Section:
+    """What changed, as typed, and each figure that asks less of a crew than the revision they have in hand."""
     points = tuple(f"rev {change.revision}: {change.text}" for change in identity.changes)
-    return Section("Changes", points=points or ("None recorded.",))
+    relaxed = standing.relaxed if standing is not None else ()
+    rows = tuple((one.name, one.old, one.new, reason or "no reason given") for one, reason in relaxed)
+    header = ("Less conservative than before", "Was", "Is", "Reason")
+    grid = Grid(header, rows, "Figures that became less conservative", Ink.CONTEXT, numbers=False) if rows else None
+    return Section("Changes", grid=grid, points=points or ("None recorded.",))
 
 
-def sources(brief: Brief) -> Section:
-    """Every document a number on these pages is from."""
-    where: dict[str, list[str]] = {}
-    for key, source in (*brief.aircraft.sources, *brief.operation.sources):
-        if source:
-            where.setdefault(source, []).append(key)
-    rows = tuple((source, ", ".join(keys)) for source, keys in where.items())
-    rows += ((cues.HANDBOOK, "recognition, recovery, cautions (chapters 2 and 11)"),)
-    points = tuple(brief.identity.basis)
-    grid = Grid(("Source", "What is from it"), rows, "Sources", Ink.CONTEXT, numbers=False)
-    return Section("Sources", grid=grid, points=points)
+def sources(listed: tuple[Source, ...], identity: Identity) -> Section:
+    """The numbered list of sources, each line with its anchor; then the documents the brief rests on."""
+    rows = tuple((str(source.number), source.text, source.what) for source in listed)
+    anchors = tuple(source.anchor for source in listed)
+    header = ("No.", "Source", "What is from it")
+    grid = Grid(header, rows, "Sources", Ink.CONTEXT, numbers=False, anchors=anchors)
+    return Section("Sources", grid=grid, points=tuple(f"Basis: {one}" for one in identity.basis))
 
 
-def made_from(brief: Brief, version: str) -> Section:
+def made_from(brief: Brief, version: str, standing: Standing | None = None) -> Section:
     """The versions and data this page was made from, so that it can be made again."""
+    content = (("content, as signed", standing.seal.content[:_HASH_SHOWN]),) if standing is not None else ()
     rows = (
         ("briefkit", version),
         (brief.aircraft.file, brief.aircraft.data_hash[:_HASH_SHOWN]),
         (brief.operation.file, brief.operation.data_hash[:_HASH_SHOWN]),
         (brief.identity.file, brief.identity.data_hash[:_HASH_SHOWN]),
+        *content,
     )
     return Section(
         "Made from", grid=Grid(("What", "Version or SHA-256"), rows, "Made from", Ink.CONTEXT, numbers=False)

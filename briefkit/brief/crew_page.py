@@ -2,31 +2,66 @@
 
 from __future__ import annotations
 
-from typing import Final
+from dataclasses import replace
+from typing import TYPE_CHECKING, Final
 
 from briefkit.aircraft.model import Aircraft
 from briefkit.brief import control, derivation, front, pictures, recognition
 from briefkit.brief.identity import Brief
 from briefkit.brief.pages import CrewPage, Section
+from briefkit.brief.sources import sources
 from briefkit.envelope.reductions import ReductionTable, RowKind, reductions
 from briefkit.errors import BuildError
+
+if TYPE_CHECKING:
+    from briefkit.brief.release import Standing
 
 DRAFT: Final = "DRAFT: not for crews"
 
 
-def crew_page(brief: Brief, version: str) -> CrewPage:
-    """Pages 1 to 4 of a brief.
+def table_of(brief: Brief) -> ReductionTable:
+    """The brief's table of turns; raises as `crew_page`."""
+    aircraft, operation = brief.aircraft, brief.operation
+    fleet = operation.entry_for(aircraft)
+    if fleet is None:
+        key = aircraft.file.removesuffix(".toml")
+        raise BuildError(f"{operation.file}: no table [fleet.{key}] for {aircraft.file}; add its masses and brief_bank")
+    return reductions(aircraft, fleet, operation.work_areas[brief.identity.work_area])
+
+
+def crew_page(brief: Brief, version: str, standing: Standing | None = None) -> CrewPage:
+    """Pages 1 to 4 of a brief; without a `standing` (see `release`) it is a draft that nobody has signed.
 
     Raises the refusal of a block point the manual forbids, and `BuildError` where the operation has no fleet entry for
     the aircraft.
     """
+    known = standing.table if standing is not None else None
+    table = table_of(brief) if known is None else known
+    aircraft, area = brief.aircraft, brief.operation.work_areas[brief.identity.work_area]
+    listed = sources(brief)
+    page = replace(
+        first_sheet(brief, table),
+        recognition=recognition.recognition(aircraft, brief.operation.entry_for(aircraft), area),
+        analysis=_analysis(aircraft, table),
+        control=control.control(brief, version, listed, standing),
+        slip=control.slip(brief.identity),
+        sources=listed,
+    )
+    if standing is None:
+        return page
+    page = replace(page, content=standing.seal.content)
+    if standing.expired is not None:
+        ended = control.day(standing.expired)
+        return replace(page, mark=f"EXPIRED {ended}: not for crews", heading=f"EXPIRED {ended}: {page.heading}")
+    return replace(page, mark=standing.mark)
+
+
+def first_sheet(brief: Brief, table: ReductionTable) -> CrewPage:
+    """Sheet 1 alone, as a draft: enough to see whether it fits."""
     identity, aircraft, operation = brief.identity, brief.aircraft, brief.operation
     fleet, area = operation.entry_for(aircraft), operation.work_areas[identity.work_area]
     if fleet is None:
-        key = aircraft.file.removesuffix(".toml")
-        raise BuildError(f"{operation.file}: no table [fleet.{key}] for {aircraft.file}; add its masses and brief_bank")
-    table = reductions(aircraft, fleet, area)
-    serials = control.listed(identity.serials)
+        raise BuildError(f"{operation.file}: no fleet entry for {aircraft.file}")
     above = ", then ".join((*operation.documents, "this page"))
     return CrewPage(
         number=identity.number,
@@ -36,15 +71,15 @@ def crew_page(brief: Brief, version: str) -> CrewPage:
         mark=DRAFT,
         heading=f"{aircraft.name}, {aircraft.configuration}: {area.name}",
         under=(
-            f"Serials {serials} only. For briefing; not for working out speeds in flight.",
+            f"Serials {control.listed(identity.serials)} only. For briefing; not for working out speeds in flight.",
             f"Flight manual, placards and markings first, then {above}.",
         ),
         front=front.front(aircraft, fleet, area, table),
-        recognition=recognition.recognition(aircraft),
-        analysis=_analysis(aircraft, table),
-        control=control.control(brief, version),
-        slip=control.slip(identity),
+        recognition=(),
+        analysis=(),
+        control=(),
         invented=aircraft.invented,
+        unit="" if aircraft.units.speed == "kt" else aircraft.units.speed,
     )
 
 
@@ -60,5 +95,6 @@ def _analysis(aircraft: Aircraft, table: ReductionTable) -> tuple[Section, ...]:
         derivation.rows_section(aircraft, table),
         *stairs,
         derivation.chart_section(aircraft),
+        *recognition.ceilings(aircraft),
         derivation.assumptions(aircraft, table),
     )

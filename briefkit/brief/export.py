@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import datetime as dt
 import sys
+from dataclasses import replace
 from importlib.metadata import version
 from pathlib import Path
 from typing import Any
@@ -14,16 +16,52 @@ from traitlets.config import Application
 
 from briefkit.brief.crew_page import crew_page
 from briefkit.brief.harden import harden
-from briefkit.brief.identity import BRIEF_FILE, NOTEBOOK, Brief, load_brief
-from briefkit.brief.pages import CrewPage, render
+from briefkit.brief.identity import BRIEF_FILE, NOTEBOOK, Brief, Identity, load_brief
+from briefkit.brief.pages import CrewPage, Section, render
 from briefkit.brief.prose import set_words
+from briefkit.brief.release import standing
 from briefkit.brief.run import Ran, Words, read_notebook, run_node
+from briefkit.brief.seal import seal_of
+from briefkit.brief.sources import link
+from briefkit.envelope.reductions import ReductionTable
 from briefkit.errors import BriefkitError, BuildError
 
 
-def contents(brief: Brief) -> CrewPage:
-    """Pages 1 to 4 of a loaded brief. Raises BriefkitError where the operation asks for what cannot be answered."""
-    return crew_page(brief, version("briefkit"))
+def contents(brief: Brief, node: NotebookNode | None = None, today: dt.date | None = None) -> CrewPage:
+    """Pages 1 to 4 of a loaded brief, DRAFT unless released on that day (by default the clock's) with these cells.
+
+    Raises BriefkitError where the operation asks for what cannot be answered.
+    """
+    known = standing(brief, None if node is None else node.cells, today)
+    return mark_changes(crew_page(brief, version("briefkit"), known), brief.identity)
+
+
+def mark_changes(page: CrewPage, identity: Identity) -> CrewPage:
+    """The page with a bar beside every section that the list of changes names for this revision.
+
+    A section is named by its number on sheet 1 ("2") or by the beginning of its heading. Raises:
+        BuildError: no section of the page is so called.
+    """
+    named = [name for change in identity.changes if change.revision == identity.revision for name in change.sections]
+    found: set[str] = set()
+
+    def marked(part: Section) -> Section:
+        here = {name for name in named if _is_called(part.heading, name)}
+        found.update(here)
+        return replace(part, changed=True) if here else part
+
+    rooms = {room: tuple(map(marked, getattr(page, room))) for room in ("front", "recognition", "analysis", "control")}
+    missing = [name for name in named if name not in found]
+    if missing:
+        known = "; ".join(part.heading for room in rooms.values() for part in room)
+        raise BuildError(f"{identity.file}: changes: no section {missing[0]!r} on the page; there is: {known}")
+    return replace(page, **rooms)
+
+
+def _is_called(heading: str, name: str) -> bool:
+    if name.isdigit():
+        return heading.startswith(f"{name}. ")
+    return heading.casefold().startswith(name.strip().casefold())
 
 
 def compose(page: CrewPage, ran: Ran, folder: Path) -> str:
@@ -33,7 +71,7 @@ def compose(page: CrewPage, ran: Ran, folder: Path) -> str:
         BuildError: what the notebook wrote or shows cannot be put on paper; see `set_words` and `harden`.
     """
     blocks = (set_words(block, folder) if isinstance(block, Words) else block.html for block in ran.blocks)
-    return harden(render(page, tuple(blocks)))
+    return harden(link(render(page, tuple(blocks)), page.sources))
 
 
 def export(notebook: Path, node: NotebookNode | None = None) -> str:
@@ -47,9 +85,29 @@ def export(notebook: Path, node: NotebookNode | None = None) -> str:
             f"{notebook.name}: a brief is {NOTEBOOK} beside its {BRIEF_FILE}; no other notebook is its page"
         )
     brief = load_brief(notebook.parent)
-    page = contents(brief)
-    ran = run_node(read_notebook(notebook) if node is None else node, notebook)
+    node = read_notebook(notebook) if node is None else node
+    page = contents(brief, node)
+    ran = run_node(node, notebook)
+    unchanged(brief, page, node)
     return compose(page, ran, notebook.parent)
+
+
+def released(brief: Brief, day: dt.date) -> tuple[str, str, ReductionTable]:
+    """Run a brief's notebook on a day: the page, its mark ("" where it is released), its table of turns."""
+    node = read_notebook(brief.identity.notebook)
+    known = standing(brief, node.cells, day)
+    page = mark_changes(crew_page(brief, version("briefkit"), known), brief.identity)
+    if page.mark or known.table is None:
+        raise BuildError(f"{brief.identity.number} rev {brief.identity.revision}: {page.mark}; see briefkit check")
+    ran = run_node(node, brief.identity.notebook)
+    unchanged(brief, page, node)
+    return compose(page, ran, brief.identity.folder), page.mark, known.table
+
+
+def unchanged(brief: Brief, page: CrewPage, node: NotebookNode) -> None:
+    """Raise `BuildError` where a file of a released brief changed while its notebook ran: the page is of neither."""
+    if not page.mark and seal_of(brief.identity, node.cells).content != page.content:
+        raise BuildError(f"{brief.identity.folder}: a file changed while the notebook ran; look at it and build again")
 
 
 class BriefExporter(Exporter):

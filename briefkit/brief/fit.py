@@ -15,7 +15,7 @@ from briefkit.brief.pages import CrewPage, Grid, Section
 
 _MM: Final = 72.0 / 25.4
 WIDTH: Final = (148.0 - 2 * 10.0) * _MM
-HEIGHT: Final = (210.0 - 11.0 - 6.0) * _MM - 12.0
+HEIGHT: Final = (210.0 - 11.0 - 6.0) * _MM - 16.0
 _LINE: Final = 11.0 * 1.2  # a sentence, a note beside a table
 _HEADING: Final = 11.5 * 1.2
 _CELL: Final = 14.0 * 1.12 + 3.0 + 0.75  # line, padding, hairline
@@ -50,7 +50,8 @@ def complaint(page: CrewPage) -> str:
 
 def height(page: CrewPage) -> float:
     """The height sheet 1 takes on A5, in points; good to about a line."""
-    head = _lines(page.heading, 14.0, bold=True) * 14.0 * 1.2 + 1.0
+    beside = text_width(page.unit, 14.0, bold=True) + 14.0 if page.unit else 0.0
+    head = _lines(page.heading, 14.0, WIDTH - beside, bold=True) * 14.0 * 1.2 + 1.0
     head += sum(_lines(line, 11.0) for line in page.under) * _LINE
     return head + sum(5.0 + _section(part) for part in page.front)
 

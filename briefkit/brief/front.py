@@ -49,7 +49,8 @@ def vne_section(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea) -> Sectio
         for speed in aircraft.speeds
         if speed.applies not in ("turbulence", "bank")
     )
-    return Section(f"1. VNE: {chart.source}", f"{shown.speed_label()}, power on", (), grid, after=others)
+    aside = f"{shown.speed_label()}, power on"
+    return Section(f"1. VNE: {chart.source}", aside, grid=grid, after=others, sources=(aircraft.vne_off.source,))
 
 
 def ruled_section(aircraft: Aircraft, area: WorkArea, ruling: Ruling) -> Section:
@@ -60,7 +61,8 @@ def ruled_section(aircraft: Aircraft, area: WorkArea, ruling: Ruling) -> Section
     beside = (*said, f"Power off: {_power_off_within(aircraft, area)}.")
     caption = f"VNE power on, {label}, from {ruling.source}"
     grid = Grid(("Height, temperature and mass", f"VNE, {label}"), (("all here", digits),), caption, beside=beside)
-    return Section(f"1. VNE: {ruling.source}", f"{label}, power on", grid=grid)
+    aside = f"{label}, power on"
+    return Section(f"1. VNE: {ruling.source}", aside, grid=grid, sources=(aircraft.vne_off.source,))
 
 
 def _power_off_within(aircraft: Aircraft, area: WorkArea) -> str:
@@ -96,10 +98,12 @@ def turn_section(
     )
     cold = (said,) if (said := tip_first(aircraft, area)) else ()
     where = _where(aircraft, fleet, area)
+    sources = (fleet.source, area.source)
     if all(row.kind is RowKind.VNE_LIMITS for row in table.rows):
         limits = _nothing(aircraft, bank) if ruling is None else ruled_turn(ruling, aircraft, bank)
         heading = f"2. {lead}: turns of up to {bank} of bank"
-        return Section(heading, before=(*own, limits, *cold), after=(f"{where} Over {bank}: not briefed.",))
+        before, after = (*own, limits, *cold), (f"{where} Over {bank}: not briefed.",)
+        return Section(heading, before=before, after=after, sources=sources)
     rows = tuple(
         (row.mass.text + (" or less" if row is table.rows[-1] else ""), row_text(aircraft, table, row))
         for row in table.rows
@@ -115,7 +119,9 @@ def turn_section(
         f"Answer under {words.indicated(aircraft, table.floor.text)} ({table.floor.reason}): "
         f"no {table.brief_bank_deg:.0f}-degree turn."
     )
-    return Section(heading, before=own, grid=grid, after=(*cold, method, f"{where} {floor} Over {bank}: not briefed."))
+    after = (*cold, method, f"{where} {floor} Over {bank}: not briefed.")
+    sources = (*sources, aircraft.vne.source, aircraft.limits.climb_speed.source, aircraft.calibration.source)
+    return Section(heading, before=own, grid=grid, after=after, sources=sources)
 
 
 def _where(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea) -> str:

@@ -38,7 +38,7 @@ class Grid:
 
     `caption` names the table (a screen reader says it first). `beside` are short notes set at the table's side on
     paper and below it on a phone. The first cell of a row is its heading unless `row_headings` is False; `numbers`
-    sets the other cells as right-aligned figures, otherwise as text.
+    sets the other cells as right-aligned figures, otherwise as text. `anchors` are ids of the rows, or empty.
     """
 
     header: tuple[str, ...]
@@ -48,11 +48,14 @@ class Grid:
     beside: tuple[str, ...] = ()
     numbers: bool = True
     row_headings: bool = True
+    anchors: tuple[str, ...] = ()
 
     def __post_init__(self) -> None:
         for row in self.rows:
             if len(row) != len(self.header):
                 raise BuildError(f"table {self.caption!r}: a row of {len(row)} cells under {len(self.header)} headings")
+        if self.anchors and len(self.anchors) != len(self.rows):
+            raise BuildError(f"table {self.caption!r}: {len(self.anchors)} anchors for {len(self.rows)} rows")
 
 
 @dataclass(frozen=True)
@@ -60,7 +63,8 @@ class Section:
     """One numbered or titled part of a page, in the order it is set: before, grid, figure, points, after.
 
     `aside` stands at the right of the heading ("KIAS, power on"); `points` are list items; `figure` is a finished
-    fragment of `figures.still`, trusted as it stands (hardening is last).
+    fragment of `figures.still`, trusted as it stands (hardening is last). `sources` are the documents its figures are
+    from where the text does not name them: numbers beside the heading. `changed` sets a bar in the margin.
     """
 
     heading: str
@@ -70,6 +74,8 @@ class Section:
     figure: str = ""
     points: tuple[str, ...] = ()
     after: tuple[str, ...] = ()
+    sources: tuple[str, ...] = ()
+    changed: bool = False
 
     @property
     def run_in(self) -> bool:
@@ -78,12 +84,27 @@ class Section:
 
 
 @dataclass(frozen=True)
+class Source:
+    """One line of the list of sources: its number on this page, the document as typed, and what is from it."""
+
+    number: int
+    text: str
+    what: str
+
+    @property
+    def anchor(self) -> str:
+        return f"source-{self.number}"
+
+
+@dataclass(frozen=True)
 class CrewPage:
     """Pages 1 to 4 of a handout as finished strings.
 
     `mark` is "DRAFT: not for crews" or empty; `revision` is "rev 0"; `expires` is "expires 29 Feb 2032". `heading` is
     the type, configuration and work area; `under` the lines below it. `front` is sheet 1, `recognition` sheet 2,
-    `analysis` goes before the author's notebook, `control` after it; `slip` is a sheet of its own.
+    `analysis` goes before the author's notebook, `control` after it; `slip` is a sheet of its own. `unit` is the unit
+    of the airspeed indicator where it is not the knot: set as large as the type's name. `sources` is the numbered list
+    that `control` holds, for links to its lines.
     """
 
     number: str
@@ -99,6 +120,13 @@ class CrewPage:
     control: tuple[Section, ...]
     slip: Section | None = None
     invented: str = ""
+    unit: str = ""
+    sources: tuple[Source, ...] = ()
+    content: str = ""  # the hash of what the page was made from, see `seal`
+
+    def numbers(self, part: Section) -> tuple[Source, ...]:
+        """The listed sources of a section that its text does not name, in the order of their numbers."""
+        return tuple(source for source in self.sources if source.text in part.sources)
 
     @property
     def running(self) -> str:

@@ -2,7 +2,10 @@
 
 from __future__ import annotations
 
+from briefkit.aircraft.hover import hover_lines
 from briefkit.aircraft.model import Aircraft
+from briefkit.aircraft.operation import FleetEntry, WorkArea
+from briefkit.brief import words
 from briefkit.brief.pages import Grid, Ink, Section
 from briefkit.envelope import cues
 
@@ -15,31 +18,36 @@ _CAUTIONS = (
 )
 
 
-def recognition(aircraft: Aircraft) -> tuple[Section, ...]:
-    """The sections of sheet 2."""
-    return (which_one(aircraft), *low_g(aircraft), cautions(), *hover(aircraft))
+def recognition(
+    aircraft: Aircraft, fleet: FleetEntry | None = None, area: WorkArea | None = None
+) -> tuple[Section, ...]:
+    """The sections of sheet 2; with a fleet entry and a work area also whether the manual gives a hover there."""
+    there = () if fleet is None or area is None else hover(aircraft, fleet, area)
+    return (which_one(aircraft), *low_g(aircraft), cautions(), *there)
 
 
 def which_one(aircraft: Aircraft) -> Section:
     """The table that keeps one reflex from being used for another condition."""
     likenesses = cues.which_one(aircraft)
-    rows = tuple((one.name, one.when, one.sign, one.first, one.source) for one in likenesses)
-    grid = Grid(
-        ("Condition", "When", "What you notice", "First act", "Source"),
-        rows,
-        "Which one is it?",
-        Ink.CONTEXT,
-        numbers=False,
-    )
+    # One source stands in the caption, so that the words have the width of the sheet; what has none carries a mark.
+    rows = tuple((_marked(one), one.when, one.sign, one.first) for one in likenesses)
+    named = sorted({one.source for one in likenesses if one.source != cues.NO_SOURCE})
+    bare = any(one.source == cues.NO_SOURCE for one in likenesses)
+    caption = f"From {' and '.join(named)}" + (f"; † {cues.NO_SOURCE}" if bare else "")
+    header = ("Condition", "When", "What you notice", "First act")
+    grid = Grid(header, rows, caption, Ink.CONTEXT, numbers=False)
     mirrored = cues.sides(aircraft).mirrored
     shake = cues.vibration(aircraft)
     after = (
-        f"Vibration of blade stall: mainly at {aircraft.rotor.blades} per revolution, {shake.blade:.1f} Hz at 100 % "
-        f"(once per revolution is {shake.once:.1f} Hz; a new shake at once per revolution alone points to track and "
-        f"balance; {cues.NO_SOURCE}).",
+        f"Blade stall shakes mainly at {aircraft.rotor.blades} per revolution, {shake.blade:.1f} Hz at 100 %; a new shake "
+        f"at once per revolution alone, {shake.once:.1f} Hz, points to track and balance †.",
         *((f"Left and right are {mirrored}.",) if mirrored else ()),
     )
     return Section("Which one is it?", grid=grid, after=after)
+
+
+def _marked(one: cues.Likeness) -> str:
+    return f"{one.name} †" if one.source == cues.NO_SOURCE else one.name
 
 
 def low_g(aircraft: Aircraft) -> tuple[Section, ...]:
@@ -50,9 +58,9 @@ def low_g(aircraft: Aircraft) -> tuple[Section, ...]:
     points = (
         f"Light in the seat in forward flight: first gently aft on the cyclic to load the rotor. The aircraft may roll "
         f"{roll}: correct the roll only once the rotor is loaded. Cyclic against the roll earlier can bump the mast.",
-        "No abrupt forward cyclic. Slow down in turbulence.",
+        f"No abrupt forward cyclic. Slow down in turbulence ({cues.CHAPTER_11}).",
     )
-    return (Section("Two blades: low g", points=points, after=(cues.CHAPTER_11 + ".",)),)
+    return (Section("Two blades: low g", points=points),)
 
 
 def cautions() -> Section:
@@ -61,13 +69,23 @@ def cautions() -> Section:
     return Section("Cautions", points=(*_CAUTIONS, raises))
 
 
-def hover(aircraft: Aircraft) -> tuple[Section, ...]:
-    """The manual's hover ceilings as typed: where one cannot hover, that decides first."""
-    if not aircraft.hover:
+def hover(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea) -> tuple[Section, ...]:
+    """The manual's hover figures looked up for the heaviest mass at the area's highest and warmest."""
+    height, oat = area.high_altitude.value, area.high_temperature.value
+    lines = hover_lines(aircraft, fleet.masses[0].value, height, oat)
+    if not lines:
         return ()
+    mass = fleet.masses[0].text
+    said = " ".join(line.text for line in lines)
+    if all(line.possible is False for line in lines):
+        pages = " and ".join(dict.fromkeys(line.source for line in lines))
+        said = f"at {mass} the manual gives none, {' or '.join(line.kind for line in lines)} ({pages})."
+    first = "" if all(line.possible for line in lines) else " That decides first."
+    place = f"{words.height(aircraft, height)}, {words.temperature(oat)}"
+    return (Section(f"Hover at {place}", before=(said + first,), sources=(fleet.source, area.source)),)
+
+
+def ceilings(aircraft: Aircraft) -> tuple[Section, ...]:
+    """The manual's hover ceilings as typed."""
     points = tuple(f"{line.label}: {line.text} ({line.source})." for line in aircraft.hover)
-    return (
-        Section(
-            "Hover, from the manual", points=points, after=("Where the manual gives no hover, that decides first.",)
-        ),
-    )
+    return (Section("The manual’s hover ceilings", points=points),) if points else ()

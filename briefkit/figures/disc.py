@@ -94,7 +94,7 @@ class DiscFigure:
         self._strokes = canvas.lines(area, theme.MAP_INK, 0.8)
         self._leader = canvas.lines(area, theme.GREY, theme.THIN)
         self._blade = canvas.patch(area, theme.MAP_INK)
-        self._hub = canvas.patch(area, theme.MAP_INK)
+        self._hub = canvas.patch(area, theme.INK)  # on the page, not on the map
         self._steps = canvas.texts(area, align="middle", size=11.0)
         self._arc = canvas.lines(area, theme.INK, theme.LINE)
         self._arc_head = canvas.patch(area, theme.INK)

@@ -10,7 +10,7 @@ from __future__ import annotations
 from typing import Final
 
 INK: Final = "#16181d"
-GREY: Final = "#646a73"
+GREY: Final = "#565c66"
 RULE: Final = "#c9cdd3"
 BAND: Final = "#e4e6ea"
 COMPUTED: Final = "#0b3f8c"
@@ -20,13 +20,14 @@ PAPER: Final = "#ffffff"
 MAP_INK: Final = "#0d1b2e"
 MAP_PAPER: Final = "#fdfdfe"
 
-# role -> (on white, on a dark page). Text roles keep at least 4.5 : 1 against their paper (WCAG 2.2, 1.4.3).
+# role -> (on white, on a dark page). Text roles keep at least 4.5 : 1 against their paper (WCAG 2.2, 1.4.3), and 7 : 1 by
+# the red part of their light alone: under a red lamp that is all there is.
 _ROLES: Final[dict[str, tuple[str, str]]] = {
     "ink": (INK, "#eceef1"),
     "grey": (GREY, "#a6adb7"),
     "rule": (RULE, "#454b54"),
     "band": (BAND, "#2b3037"),
-    "computed": (COMPUTED, "#8db9ff"),
+    "computed": (COMPUTED, "#a6c8ff"),
     "paper": (PAPER, "#14161a"),
 }
 _ROLE_OF: Final = {light: role for role, (light, _) in _ROLES.items()}

@@ -42,7 +42,9 @@ def nb() -> Notebooks:
 def operator(tmp_path: Path, examples: Path, nb: Notebooks) -> Path:
     """The invented operator's folder with its one brief, whose notebook is words and one slider."""
     folder = tmp_path / "operator"
-    shutil.copytree(examples, folder, ignore=shutil.ignore_patterns(".*", "__pycache__", "*.html"))
+    shutil.copytree(
+        examples, folder, ignore=shutil.ignore_patterns(".*", "__pycache__", "*.html", "corrant-3f", "ysbrane-4h")
+    )
     words = nb.text("# Why we slow down\n\nHeavy, high, hot.")
     nb.write(folder / "vellmark-2t" / "brief.ipynb", words, nb.code(SLIDER))
     return folder
