@@ -218,3 +218,31 @@ def test_no_guess_where_nothing_is_near(typed: str) -> None:
 def test_nearest_is_empty_where_nothing_is_near() -> None:
     assert nearest("colour", ("radius", "rpm")) == ""
     assert nearest("raduis", ("radius", "rpm")) == "radius"
+
+
+def test_a_block_left_open_is_named_where_it_opens(tmp_path: Path) -> None:
+    text = "[a]\nx = '''\n1 2\n\n[b]\ny = 3\nz = '''\n4 5\n'''\n"
+    with pytest.raises(FaultyFile) as refused:
+        document(tmp_path, text)
+    first = refused.value.faults[0]
+    assert (first.key, first.line) == ("x", 2)
+    assert "still open at line 7" in first.read
+    words = "[a]\nx = '''\ny = 3\n[b]\n'''\nz = '''\n4 5\n'''\n"
+    closed = document(tmp_path, words)  # a closed block may hold any words
+    assert closed.data["a"]["x"] == "y = 3\n[b]\n"
+
+
+def test_a_table_below_an_entry_has_the_entrys_name(tmp_path: Path) -> None:
+    text = '[[kit]]\nname = "a"\n\n[[kit]]\nname = "b"\n\n[kit.chart]\nx = 1\n\n[[kit.speeds]]\ny = 2\n'
+    read = document(tmp_path, text)
+    assert read.line_of("kit (entry 2).chart.x") == 8
+    assert read.line_of("kit (entry 2).speeds (entry 1).y") == 11
+    assert read.line_of("kit (entry 1).chart.x") == 1
+    assert read.line_of("kit") == 1  # what is first below it
+
+
+def test_a_misspelt_name_above_a_table_is_found_at_that_table(tmp_path: Path) -> None:
+    read = document(tmp_path, "[a]\nx = 1\n\n[wrk.harl]\ny = 2\n")
+    read.tables("", ("a",), ("work",))
+    (fault,) = read.faults
+    assert (fault.key, fault.line) == ("wrk", 4)

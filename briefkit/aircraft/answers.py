@@ -30,10 +30,14 @@ class Kind(StrEnum):
     RISES_WITH_MASS = "rises_with_mass"
     UNDER_40_KT = "under_40_kt"
     OUT_OF_LINE = "out_of_line"
+    UNEVEN_AXIS = "uneven_axis"
     MORE_THAN_TWO_VARIABLES = "more_than_two_variables"
     POWER_OFF_ABOVE_POWER_ON = "power_off_above_power_on"
     POWER_OFF_UNDER_MIDPOINT = "power_off_under_midpoint"
     SUPPLEMENT_ABOVE_BASIC = "supplement_above_basic"
+    CALIBRATION_OUT_OF_LINE = "calibration_out_of_line"
+    HEAVIER_THAN_CHART = "heavier_than_chart"
+    HOVER_ABOVE_MAXIMUM_MASS = "hover_above_maximum_mass"
     HOVER_CEILING_RISES = "hover_ceiling_rises"
     SIMILARITY = "similarity"
 
@@ -45,6 +49,8 @@ ON_CELLS: Final = (
     Kind.RISES_WITH_MASS,
     Kind.UNDER_40_KT,
     Kind.OUT_OF_LINE,
+    Kind.UNEVEN_AXIS,
+    Kind.CALIBRATION_OUT_OF_LINE,
     Kind.HOVER_CEILING_RISES,
     Kind.SIMILARITY,
 )

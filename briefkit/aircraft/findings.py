@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections import Counter
 from collections.abc import Iterator
 from typing import Final
 
@@ -24,6 +25,7 @@ _SLOWEST_CAS: Final = 40.0 * units.KNOT
 _SLACK: Final = 1e-6  # m/s
 # How far a cell may lie off the line between its neighbours, where VNE falls on both sides: common practice, no source.
 OUT_OF_LINE: Final = 3.0 * units.KNOT
+CALIBRATION_OUT_OF_LINE: Final = 1.5 * units.KNOT  # likewise
 
 
 def entry_findings(aircraft: Aircraft) -> list[Fault]:
@@ -49,12 +51,45 @@ def all_findings(aircraft: Aircraft) -> list[EntryFinding]:
         found += _rising(f"{table}.power_off.chart", aircraft.vne_off.chart, unit)
         found += _slow(f"{table}.power_off.chart", aircraft.vne_off.chart, aircraft)
     found += power_off_findings(f"{table}.power_off", aircraft)
+    found += _masses(key, aircraft)
     if basic is None:
+        found += _calibration(aircraft)
         for ceilings in aircraft.hover_tables:
             for cells, read in falls(ceilings):
                 permitted = "a ceiling that falls with mass and temperature"
                 found.append(finding(Kind.HOVER_CEILING_RISES, cells, "hover.table", read, permitted))
     return [*found, *supplement_findings(table, aircraft)]
+
+
+def _calibration(aircraft: Aircraft) -> list[EntryFinding]:
+    """The correction (calibrated less indicated) changes smoothly: an entry off its neighbours' line is looked at."""
+    table, unit, found = aircraft.calibration, aircraft.units.speed, []
+    indicated = np.array(table.indicated)
+    correction = np.array(table.calibrated) - indicated
+    for i in range(1, len(indicated) - 1):
+        expected = float(np.interp(indicated[i], indicated[[i - 1, i + 1]], correction[[i - 1, i + 1]]))
+        if abs(correction[i] - expected) > CALIBRATION_OUT_OF_LINE:
+            row = table.text[i + 1]
+            near = units.show(float(indicated[i] + expected), "speed", unit)
+            permitted = f"near {near}, by the entries on both sides"
+            key, place = "calibration.table", f"row {row[0]}"
+            found.append(finding(Kind.CALIBRATION_OUT_OF_LINE, place, key, row[1], permitted))
+    return found
+
+
+def _masses(key: str, aircraft: Aircraft) -> list[EntryFinding]:
+    """Masses that do not agree: a maximum the chart does not reach, a hover table for more than the maximum."""
+    found, heaviest, chart = [], aircraft.limits.max_mass, aircraft.vne
+    if chart.masses and heaviest.value > chart.masses[-1] * (1.0 + 1e-9):
+        last = units.show(chart.masses[-1], "mass", aircraft.units.mass)
+        permitted = f"the maximum mass, {heaviest.text}, on the chart"
+        found.append(finding(Kind.HEAVIER_THAN_CHART, "", key, f"up to {last}", permitted))
+    if aircraft.basic_vne is None:
+        for table in aircraft.hover_tables:
+            if table.masses[-1] > heaviest.value * (1.0 + 1e-9):
+                permitted = f"at most the maximum mass, {heaviest.text}"
+                found.append(finding(Kind.HOVER_ABOVE_MAXIMUM_MASS, "", "hover.table", table.rows[-1][0], permitted))
+    return found
 
 
 def _variables(key: str, chart: VneChart) -> list[EntryFinding]:
@@ -97,7 +132,25 @@ def _rising(key: str, chart: VneChart, unit: str) -> list[EntryFinding]:
             if chart.speeds[index] > chart.speeds[before] + _SLACK:
                 permitted = f"VNE that does not rise with {words} ({_text(chart, before, unit)} before it)"
                 found.append(finding(kind, place_of(chart, index), key, _text(chart, index, unit), permitted))
-    return [*found, *_out_of_line(key, chart, unit)]
+    return [*found, *_out_of_line(key, chart, unit), *_uneven(key, chart)]
+
+
+def _uneven(key: str, chart: VneChart) -> list[EntryFinding]:
+    """Heights and temperatures of a table that mostly go in one step: an entry in another step is often mistyped."""
+    found = []
+    if chart.typed and chart.typed[0][0] in chart.straight:
+        return []
+    for name, (axis, texts) in zip(("row", "column", "at"), chart.typed, strict=False):
+        nodes = np.array(chart.axes[axis])[-len(texts) :]
+        steps = np.round(np.diff(nodes), 3)
+        usual, count = Counter(steps.tolist()).most_common(1)[0]
+        if axis not in (Axis.HEIGHT, Axis.TEMPERATURE) or count < 2 or count == len(steps):
+            continue
+        for text, before, step in zip(texts[1:], texts, steps, strict=False):
+            if step != usual:
+                permitted = "the same step as between most others"
+                found.append(finding(Kind.UNEVEN_AXIS, f"{name} {text}", key, f"{before} to {text}", permitted))
+    return found
 
 
 def _out_of_line(key: str, chart: VneChart, unit: str) -> list[EntryFinding]:

@@ -125,6 +125,9 @@ class _Parts:
             faults += cross.hottest_faults(limits)
         faults += cross.rotor_faults(self.rotor) if self.rotor else []
         faults += cross.loading_faults(self.rotor, limits) if self.rotor and limits else []
+        faults += cross.drag_faults(self.rotor, limits) if self.rotor and limits else []
+        for key, table in (("rotor", self.rotor), ("limits", limits)):
+            faults += cross.spread_faults(key, table) if table else []
         if self.calibrated:
             faults += cross.calibration_faults(self.calibrated.indicated, self.calibrated.calibrated)
         for fault in faults:

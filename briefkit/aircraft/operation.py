@@ -209,7 +209,9 @@ def _check_area(document: Document, key: str, area: _AreaTable) -> None:
 
 def _check_one_unit(document: Document, place: str, values: list[Typed]) -> None:
     """Values of one list in two units: one of them is a slip."""
-    other = next((typed for typed in values if typed.unit.strip("°deg") != values[0].unit.strip("°deg")), None)
+    spelled = {"°C": "degC", "C": "degC"}
+    given = [spelled.get(typed.unit, typed.unit) for typed in values]
+    other = next((typed for typed, unit in zip(values, given, strict=True) if unit != given[0]), None)
     if other is not None:
         document.fault(place, f"{values[0].text}, {other.text}", "one unit in all", "correct the one that is wrong")
 

@@ -14,6 +14,9 @@ from briefkit.units import KNOT, ZERO_CELSIUS
 Text = Annotated[str, Field(pattern=r"^[^\x00-\x1f\x7f]*\S[^\x00-\x1f\x7f]*$")]
 Mass = Annotated[Typed | None, quantity("mass", 100.0, 20_000.0)]
 Temperature = Annotated[Typed | None, quantity("temperature", ZERO_CELSIUS - 80.0, ZERO_CELSIUS + 55.0)]
+# The coldest day a manual permits is cold, the hottest is warm: a sign typed wrongly shows.
+Coldest = Annotated[Typed | None, quantity("temperature", ZERO_CELSIUS - 80.0, ZERO_CELSIUS + 5.0)]
+Hottest = Annotated[Typed | None, quantity("temperature", ZERO_CELSIUS + 5.0, ZERO_CELSIUS + 55.0)]
 Height = Annotated[Typed | None, quantity("height", -600.0, 11_000.0)]
 RotorSpeed = Annotated[Typed, quantity("ratio", 0.75, 1.25)]
 Airspeed = Annotated[Typed | None, quantity("speed", 20.0 * KNOT, 250.0 * KNOT)]
@@ -84,9 +87,9 @@ class LimitsTable(Table):
     max_mass: Mass = None
     min_mass: Mass = None
     max_altitude: Height = None
-    min_temperature: Temperature = None
+    min_temperature: Coldest = None
     isa_deviation: Annotated[Typed | None, quantity("temperature difference", 0.0, 50.0)] = None
-    max_temperature: Temperature = None
+    max_temperature: Hottest = None
     max_bank: Annotated[Typed | None, quantity("angle", math.radians(10.0), math.radians(90.0))] = None
     rotor_on: Annotated[list[RotorSpeed], Pair] | None = None
     rotor_off: Annotated[list[RotorSpeed], Pair] | None = None
@@ -179,7 +182,7 @@ class ConfigurationEntry(Table):
     speeds: list[dict[str, Any]] | None = None
     max_mass: Mass = None
     max_altitude: Height = None
-    min_temperature: Temperature = None
+    min_temperature: Coldest = None
     max_bank: Annotated[Typed | None, quantity("angle", math.radians(10.0), math.radians(90.0))] = None
     rotor_on: Annotated[list[RotorSpeed], Pair] | None = None
     rotor_off: Annotated[list[RotorSpeed], Pair] | None = None

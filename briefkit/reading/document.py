@@ -126,10 +126,13 @@ class Document:
         return any(re.match(rf"{re.escape(key)}(?![\w-])", fault.key) for fault in self.faults)
 
     def line_of(self, key: str) -> int:
-        """The line a dotted key, or the nearest table above it, stands on; 0 where it is not in the file."""
+        """The line a dotted key, or what is first below it, or the nearest table above it, stands on; 0 for neither."""
         while key:
             if key in self._lines:
                 return self._lines[key]
+            below = [line for name, line in self._lines.items() if name.startswith((f"{key}.", f"{key} ("))]
+            if below:
+                return min(below)
             key = re.sub(r"(?:[.,][^.,]*|[^.,]+)$", "", key)
         return 0
 

@@ -19,6 +19,7 @@ _MOST_SLIPS: Final = 50  # after so many the rest of a file is not looked at
 
 _HEADER = re.compile(r"\s*(\[\[?)\s*([^\[\]]+?)\s*\]\]?\s*(?:#.*)?")
 _PAIR = re.compile(r"""\s*((?:[\w-]+|"[^"]*"|'[^']*')(?:\s*\.\s*(?:[\w-]+|"[^"]*"|'[^']*'))*)\s*=\s*(.*)""")
+_QUOTES: Final = ("'''", '"""')
 _AT_LINE = re.compile(r"(.*) \(at line (\d+), column (\d+)\)", re.DOTALL)
 
 
@@ -36,7 +37,7 @@ def parse(text: str) -> tuple[dict[str, Any], list[Slip]]:
     """The data of a TOML text and its slips; a line with a slip is read as text in quotes where that makes sense."""
     places = line_numbers(text)
     lines = text.split("\n")
-    slips: list[Slip] = []
+    slips = _left_open(lines)
     while len(slips) < _MOST_SLIPS:
         try:
             return tomllib.loads("\n".join(lines)), slips
@@ -55,6 +56,28 @@ def parse(text: str) -> tuple[dict[str, Any], list[Slip]]:
                 break
             lines[number - 1] = "" if "Cannot overwrite" in said else f"{pair[1]} = {json.dumps(pair[2])}"
     return {}, slips
+
+
+def _left_open(lines: list[str]) -> list[Slip]:
+    """Blocks whose closing quotes are missing: the next quotes are those that open another one.
+
+    The parser would point at a line far below. The opening quotes are taken out of `lines`, so that the rest is read.
+    """
+    slips, opened, quotes = [], 0, ""
+    for number, line in enumerate(lines, start=1):
+        pair = _PAIR.fullmatch(line)
+        opening = pair[2][:3] if pair and pair[2][:3] in _QUOTES and pair[2][:3] not in pair[2][3:] else ""
+        if opened and opening == quotes:
+            key, _, rest = lines[opened - 1].partition("=")
+            read = f"a block that is still open at line {number}, `{line.strip()}`"
+            slips.append(Slip(opened, _bare(key), read, f"a block opened with {quotes} has to be closed with {quotes}"))
+            lines[opened - 1] = f"{key}= {json.dumps(rest.replace(quotes, '').strip())}"
+            opened = number
+        elif opened:
+            opened = 0 if quotes in line else opened
+        elif opening:
+            opened, quotes = number, opening
+    return slips
 
 
 def _slip(line: str, number: int, key: str, said: str) -> Slip:
@@ -95,7 +118,7 @@ def line_numbers(text: str) -> dict[str, int]:
             key = _bare(pair[1])
             found.setdefault(f"{prefix}.{key}" if prefix else key, number)
             opening = pair[2][:3]
-            closing = opening if opening in ("'''", '"""') and opening not in pair[2][3:] else ""
+            closing = opening if opening in _QUOTES and opening not in pair[2][3:] else ""
     return found
 
 
