@@ -39,8 +39,8 @@ def which_one(aircraft: Aircraft) -> Section:
     mirrored = cues.sides(aircraft).mirrored
     shake = cues.vibration(aircraft)
     after = (
-        f"Blade stall shakes mainly at {aircraft.rotor.blades} per revolution, {shake.blade:.1f} Hz at 100 %; a new shake "
-        f"at once per revolution alone, {shake.once:.1f} Hz, points to track and balance †.",
+        f"Blade stall shakes mainly at {aircraft.rotor.blades} per revolution, {shake.blade:.1f} Hz at 100 %; a new "
+        f"shake at once per revolution alone, {shake.once:.1f} Hz, points to track and balance †.",
         *((f"Left and right are {mirrored}.",) if mirrored else ()),
     )
     return Section("Which one is it?", grid=grid, after=after)

@@ -20,8 +20,8 @@ PAPER: Final = "#ffffff"
 MAP_INK: Final = "#0d1b2e"
 MAP_PAPER: Final = "#fdfdfe"
 
-# role -> (on white, on a dark page). Text roles keep at least 4.5 : 1 against their paper (WCAG 2.2, 1.4.3), and 7 : 1 by
-# the red part of their light alone: under a red lamp that is all there is.
+# role -> (on white, on a dark page). Text roles keep at least 4.5 : 1 against their paper (WCAG 2.2, 1.4.3), and 7 : 1
+# by the red part of their light alone: under a red lamp that is all there is.
 _ROLES: Final[dict[str, tuple[str, str]]] = {
     "ink": (INK, "#eceef1"),
     "grey": (GREY, "#a6adb7"),
