@@ -55,14 +55,15 @@ def build_command(
 ) -> None:
     """Make the page of every brief.
 
-    Runs each brief below PATH and writes its page, its read-back sheet and an index. Exit 1 if one failed; the others
-    are built, and a page already there is left whole.
+    Runs each brief below PATH and writes its page, its read-back sheet, the sheets of its deck if it has one, and an
+    index. Exit 1 if one failed; the others are built, and a page already there is left whole.
     """
     with _plain_errors():
         from rich.console import Console
         from rich.progress import BarColumn, MofNCompleteColumn, Progress, TextColumn, TimeElapsedColumn
 
         from briefkit.brief.build import build, find_briefs
+        from briefkit.session.sheets import deck_pages
 
         console = Console(stderr=True)
         columns = (TextColumn("building"), BarColumn(), MofNCompleteColumn(), TimeElapsedColumn())
@@ -73,7 +74,7 @@ def build_command(
                 _print_result(result)
                 progress.advance(bar)
 
-            results = build(paths, out, tell)
+            results = build(paths, out, tell, deck_pages)
         failed = sum(bool(result.error) for result in results)
         if failed:
             typer.echo(
@@ -101,8 +102,9 @@ def check_command(paths: Paths, as_json: Json = False, date: Day = None) -> None
     """
     with _plain_errors(faulty=2):
         from briefkit.brief.check import findings, stands_against
+        from briefkit.session.sheets import deck_findings
 
-        every = [(path, findings(path, _day(date))) for path in paths]
+        every = [(path, findings(path, _day(date)) + deck_findings(path)) for path in paths]
         if as_json:
             _print_json(
                 {"stands_against_release": sum(len(stands_against(found)) for _, found in every)},
@@ -264,6 +266,52 @@ def new_command(
         typer.echo(f"see page 1:  briefkit build {where}")
         typer.echo(f"what is still to be typed:  briefkit check {where}")
         typer.echo(f"work on it:  briefkit live {where}")
+
+
+@app.command("deck")
+def deck_command(
+    folder: Annotated[Path, typer.Argument(exists=True, file_okay=False, help="The brief's folder.")],
+    area: Annotated[list[str] | None, typer.Option(help="A work area; the brief's own if none is given.")] = None,
+) -> None:
+    """Write a first deck for the recurrent check.
+
+    Cases drawn from the aircraft and operation files, to be edited: hot days, drooped rotor, light, one where stall
+    does not decide, one the tool refuses. Nothing that exists is written over.
+    """
+    with _plain_errors():
+        from briefkit.session.generate import write_deck
+
+        typer.echo(f"written: {write_deck(folder, *(area or ()))}; edit every case before use")
+
+
+@app.command("recompute")
+def recompute_command(
+    log: Annotated[Path, typer.Argument(exists=True, dir_okay=False, help="A session log.")],
+    operator: Annotated[
+        Path | None,
+        typer.Option(exists=True, file_okay=False, help="The operator's folder; else looked for above LOG."),
+    ] = None,
+    csv: Annotated[Path | None, typer.Option(dir_okay=False, help="Write the log as CSV to this new file.")] = None,
+) -> None:
+    """Compute every figure of a session log again, and say what differs today.
+
+    Exit 0 if the log is whole and nothing differs, 1 if something does.
+    """
+    with _plain_errors():
+        from briefkit.session.recompute import recompute, to_csv, write_csv
+        from briefkit.session.record import read_log
+
+        read = read_log(log)
+        if csv is not None:
+            write_csv(csv, to_csv(read))
+            typer.echo(f"written: {csv}")
+        done = recompute(read, operator)
+        for note in (*done.notes, *done.differences):
+            typer.echo(str(note))
+        differ = len({one.line for one in done.differences})
+        typer.echo(f"{len(read.steps)} steps, {done.steps} with figures computed again, {differ} differ")
+        if done.differences or read.faults:
+            raise typer.Exit(1)
 
 
 @app.command("live")

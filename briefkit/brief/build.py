@@ -24,13 +24,16 @@ from briefkit.brief.write import sweep, write_page
 from briefkit.errors import BriefkitError, BuildError
 
 INDEX: Final = "index.html"
+# What a later room sets beside a brief's page: (name, finished page) for each; the file is NUMBER.name.html.
+Beside = Callable[[Brief, CrewPage], tuple[tuple[str, str], ...]]
 
 
 @dataclass(frozen=True)
 class Result:
     """What became of one brief: `brief` its folder, `page` the file written (or left), seconds, bytes, the error.
 
-    `title` is the page's own heading ("" where the typed files could not be read); `notes` what its author should hear.
+    `title` is the page's own heading ("" where the typed files could not be read); `notes` what its author should hear;
+    `beside` the further pages written with it.
     """
 
     brief: Path
@@ -41,6 +44,7 @@ class Result:
     title: str = ""
     mark: str = ""
     notes: tuple[str, ...] = ()
+    beside: tuple[Path, ...] = ()
 
     @property
     def readback(self) -> Path | None:
@@ -71,26 +75,32 @@ def _below(folder: Path) -> Iterator[Path]:
             yield file.parent
 
 
-def build(paths: Iterable[Path], out: Path, tell: Callable[[Result], None] | None = None) -> tuple[Result, ...]:
+def build(
+    paths: Iterable[Path], out: Path, tell: Callable[[Result], None] | None = None, beside: Beside | None = None
+) -> tuple[Result, ...]:
     """Build every brief below `paths` into the folder `out`; `tell` hears of each as it is done.
+
+    `beside` makes further pages of a brief, from rooms this one does not know; what it refuses fails the brief.
 
     Never raises for a brief that fails: its result carries the error, and its page stays as it was. Raises:
         BuildError: no brief found, or `out` cannot be written at all.
     """
     briefs = find_briefs(paths)
-    results = complete(_build_all(briefs, out, tell or (lambda _: None)))
+    results = complete(_build_all(briefs, out, tell or (lambda _: None), beside or (lambda _, __: ())))
     write_page(out / INDEX, _index(results))
     return results
 
 
-async def _build_all(briefs: tuple[Path, ...], out: Path, tell: Callable[[Result], None]) -> tuple[Result, ...]:
+async def _build_all(
+    briefs: tuple[Path, ...], out: Path, tell: Callable[[Result], None], beside: Beside
+) -> tuple[Result, ...]:
     _make(out)
     cores = asyncio.Semaphore(_cores())
     taken: dict[str, Path] = {INDEX: out}
 
     async def one(folder: Path) -> Result:
         async with cores:
-            result = await _build_one(folder, out, taken)
+            result = await _build_one(folder, out, taken, beside)
         tell(result)
         return result
 
@@ -105,7 +115,7 @@ def _make(out: Path) -> None:
     sweep(out)
 
 
-async def _build_one(folder: Path, out: Path, taken: dict[str, Path]) -> Result:
+async def _build_one(folder: Path, out: Path, taken: dict[str, Path], beside: Beside) -> Result:
     start = time.monotonic()
     target, title, mark = None, "", ""
     try:
@@ -116,13 +126,17 @@ async def _build_one(folder: Path, out: Path, taken: dict[str, Path]) -> Result:
         title, mark = page.heading, page.mark
         ran = await run_async(node, brief.identity.notebook)
         unchanged(brief, page, node)
-        html, sheet = compose(page, ran, folder), _readback(brief, page)
+        html, sheet, more = compose(page, ran, folder), _readback(brief, page), beside(brief, page)
         size = write_page(target, html)
         write_page(target.with_suffix(".readback.html"), sheet)
+        written = tuple(target.with_suffix(f".{name}.html") for name, _ in more)
+        for file, (_, text) in zip(written, more, strict=True):
+            write_page(file, text)
     except BriefkitError as error:
         return Result(folder, target, time.monotonic() - start, error=str(error), title=title, mark=mark)
     notes = tuple(note for note in (complaint(page), *ran.notes) if note)
-    return Result(folder, target, time.monotonic() - start, size, title=title, mark=mark, notes=notes)
+    seconds = time.monotonic() - start
+    return Result(folder, target, seconds, size, title=title, mark=mark, notes=notes, beside=written)
 
 
 def _target(brief: Brief, folder: Path, out: Path, taken: dict[str, Path]) -> Path:

@@ -26,7 +26,7 @@ from briefkit.errors import BuildError
 _SHOWN: Final = 16
 _TEXT: Final = (".toml", ".py", ".csv", ".txt", ".md", ".j2", ".css")
 # What a build, an editor or the office leaves beside a brief: none of it is read for the page.
-_NOT_COVERED: Final = (".html", ".pdf", ".zip", ".pyc")
+_NOT_COVERED: Final = (".html", ".pdf", ".zip", ".pyc", ".jsonl", ".torn")
 _REGISTER: Final = "register.toml"
 
 

@@ -6,6 +6,7 @@ Plain strings and floats, for the panel, the sheets and the log alike. A refusal
 from __future__ import annotations
 
 import math
+import re
 from dataclasses import dataclass
 from enum import StrEnum
 from typing import Final
@@ -251,7 +252,9 @@ def _place_on_chart(aircraft: Aircraft, one: Conditions) -> str:
 
 
 def _sentence(refusal: Refusal) -> str:
-    return f"{_capital(str(refusal))}."
+    """A refusal as a page sets it: a true minus sign and the apostrophe of the page."""
+    text = re.sub(r"(?<![\w.])-(?=\d)", "\u2212", str(refusal)).replace("'", "’")
+    return f"{_capital(text)}."
 
 
 def _capital(text: str) -> str:

@@ -10,15 +10,18 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator
 from dataclasses import dataclass
+from pathlib import Path
 from typing import Final
 
 from briefkit import units
 from briefkit.aircraft.model import Aircraft
 from briefkit.aircraft.operation import FleetEntry, Operation, WorkArea
+from briefkit.brief.identity import load_brief
 from briefkit.envelope import cues
 from briefkit.envelope.condition import Condition
 from briefkit.errors import BriefkitError, BuildError
 from briefkit.session.answers import Answers, Says, answers
+from briefkit.session.deck import DECK_FILE
 
 _HEAD: Final = """\
 # The deck of a recurrent check, generated from {operation} and {aircraft}: edit every case before use.
@@ -64,6 +67,24 @@ def generate(aircraft: Aircraft, operation: Operation, *areas: str) -> str:
     title = f"{aircraft.name}, {aircraft.configuration}: recurrent check"
     head = _HEAD.format(operation=operation.file, aircraft=aircraft.file, title=_escaped(title))
     return head + "".join(_text(aircraft, fleet, draft) for draft in drafts)
+
+
+def write_deck(folder: Path, *areas: str) -> Path:
+    """A generated deck in a brief's folder, by default for the brief's own work area; the file written.
+
+    Raises `BuildError` where there is a deck already or the folder refuses, and as `load_brief` and `generate` do.
+    """
+    brief = load_brief(folder)
+    text = generate(brief.aircraft, brief.operation, *(areas or (brief.identity.work_area,)))
+    path = folder / DECK_FILE
+    try:
+        with path.open("x", encoding="utf-8", newline="\n") as stream:
+            stream.write(text)
+    except FileExistsError:
+        raise BuildError(f"{path}: there already; nothing is written over") from None
+    except OSError as error:
+        raise BuildError(f"{path}: cannot be written ({error.strerror})") from None
+    return path
 
 
 # --- cases ---------------------------------------------------------------------------------------------------------

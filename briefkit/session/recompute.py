@@ -166,3 +166,14 @@ def _cell(table: Mapping[str, Any], name: str) -> Any:
 
 def _harmless(value: Any) -> Any:
     return f"'{value}" if isinstance(value, str) and value[:1] in ("=", "+", "-", "@", "\t", "\r") else value
+
+
+def write_csv(path: Path, text: str) -> None:
+    """Write a CSV to a new file, UTF-8 with the mark a spreadsheet looks for. Raises `RecordError` if it is there."""
+    try:
+        with path.open("x", encoding="utf-8-sig", newline="") as stream:
+            stream.write(text)
+    except FileExistsError:
+        raise RecordError(f"{path}: there already; nothing is written over") from None
+    except OSError as error:
+        raise RecordError(f"{path}: cannot be written ({error.strerror})") from None
