@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import math
+
 import ipywidgets as w
 import numpy as np
 
@@ -15,7 +17,9 @@ from briefkit.widgets.words import Dial, text_of
 class Control(w.HBox):  # type: ignore[misc]  # ipywidgets carries no types
     """A slider over the permitted range and a box; both only ask, the live condition decides.
 
-    Neither clamps: the box takes any text, and the slider's ends are the permitted ones.
+    Neither clamps: the box takes any text, and the slider's ends are the permitted ones. The front end rounds a slider
+    to its own grid when it draws it, and sends that back as if a hand had moved it: 1,763.7 lb would silently become
+    1,764. So the grid is laid through the number shown, and a move of less than a step is not taken for a hand's.
     """
 
     def __init__(self, aircraft: Aircraft, dial: Dial, low: float, high: float) -> None:
@@ -24,19 +28,33 @@ class Control(w.HBox):  # type: ignore[misc]  # ipywidgets carries no types
         self.low, self.high = low, high
         self.slider = w.FloatSlider(
             value=low, min=low, max=high, step=dial.step, readout=False, disabled=not low < high,
-            description=dial.name, style={"description_width": "170px"}, layout={"width": "440px"},
+            description=dial.name, style={"description_width": "170px"},
+            layout={"width": "440px", "min_width": "330px"},
         )  # fmt: skip
         self.box = w.Text(continuous_update=False, layout={"width": "120px"})
         self.box.tooltip = f"{dial.name}, {text_of(dial, low, aircraft)} to {text_of(dial, high, aircraft)}"
-        super().__init__([self.slider, self.box])
+        super().__init__([self.slider, self.box], layout={"flex_flow": "row wrap"})
 
     def show(self, number: float) -> None:
         """Set both to a number in the dial's unit."""
-        # The slider keeps its ends around the number, so that it can never show another one than is used.
+        step = self.dial.step
+        offset = (number - self.low) % step
+        start = self.low if min(offset, step - offset) < 1e-6 * step else self.low + offset
         with self.slider.hold_sync():
-            self.slider.min, self.slider.max = min(self.low, number), max(self.high, number)
-            self.slider.value = number
+            # The ends keep round the number, so that the slider can never show another one than is used.
+            self.slider.min, self.slider.max = round(min(start, number), 6), round(max(self.high, number), 6)
+            self.slider.value = round(number, 6)
         self.box.value = typed_text(self.dial, number, self._aircraft)
+
+    def slid(self, number: float, now: float) -> float | None:
+        """What a slider moved to `number` asks for, whole steps from `now`'s side; None where no hand moved it."""
+        step = self.dial.step
+        if abs(number - now) < 0.51 * step:
+            return None
+        if number >= self.high - 1e-6 * step:
+            return self.high
+        whole = math.floor(number / step + 1e-6) if number > now else math.ceil(number / step - 1e-6)
+        return min(max(whole * step, self.low), self.high)
 
     def read(self, text: str) -> float:
         """Typed text to a number in the dial's unit: "2,006 lb", or "2,006" alone. Raises `ReadingError`."""

@@ -73,9 +73,9 @@ class Exhibit(w.VBox):  # type: ignore[misc]  # ipywidgets carries no types
         self._drawn_for: Condition | None = None
         self._figures = self._build(self._source.answers.aircraft)
         self._caption, self._state = w.HTML(), w.HTML()
-        self._picture = w.Box(
-            [w.HTML(STYLE, layout={"display": "none"}), *self._figures], layout={"flex_flow": "row wrap"}
-        )
+        style = w.HTML(STYLE, layout={"display": "none"})
+        # A narrow page gets a scroll bar: a picture cut at its edge could be taken for whole.
+        self._picture = w.Box([style, *self._figures], layout={"flex_flow": "row wrap", "overflow": "auto"})
         super().__init__([self._caption, self._picture, self._state])
         self.add_class("briefkit")
         self._source.follow(self)

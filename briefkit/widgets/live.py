@@ -108,7 +108,9 @@ class LiveCondition(w.VBox):  # type: ignore[misc]  # ipywidgets carries no type
         return guarded(partial(self._refuse, control), changed)
 
     def _slide(self, control: Control, number: float) -> None:
-        self._ask(control, number)
+        asked = control.slid(number, words.number_of(control.dial, self.condition))
+        if asked is not None:
+            self._ask(control, asked)
 
     def _type(self, control: Control, text: str) -> None:
         self._ask(control, control.read(text))

@@ -37,6 +37,8 @@ PICTURE = """async () => {
   context.drawImage(image, 0, 0, 64, 64);
   return Array.from(context.getImageData(0, 0, 64, 64).data).join();
 }"""
+# All words of the notebook with plain spaces: on the panel a number and its unit are tied together.
+TEXT = r"document.querySelector('.jp-Notebook').innerText.replace(/\u00a0/g, ' ')"
 CURVES = "() => [...document.querySelectorAll('.bqplot .curve .line')].map(line => line.getAttribute('d')).join()"
 
 
@@ -91,7 +93,7 @@ def settled(page: Any) -> tuple[str, str]:
 
 
 def words(page: Any) -> str:
-    return str(page.evaluate("() => document.querySelector('.jp-Notebook').innerText"))
+    return str(page.evaluate(f"() => {TEXT}"))
 
 
 def test_every_exhibit_appears_with_its_condition(seen):
@@ -106,7 +108,7 @@ def test_the_disc_picture_follows_the_airspeed_slider(seen):
     box = control(seen.page, "Airspeed").locator("input[type=text]")
     speed = box.input_value()
     assert speed != "60 KIAS"
-    seen.page.wait_for_function(f"document.querySelector('.jp-Notebook').innerText.split('{speed}, bank').length === 5")
+    seen.page.wait_for_function(f"{TEXT}.split('{speed}, bank').length === 5")
 
 
 def test_the_curves_follow_the_bank_slider(seen):
@@ -122,7 +124,7 @@ def test_an_impossible_entry_is_refused_where_it_is_seen_and_the_picture_stays(s
     word.wait_for(timeout=20_000)
     assert "Refused" in word.inner_text()
     assert "2,100 lb" in word.inner_text()
-    assert "Mass stays at 1,800 lb" in word.inner_text()
+    assert "Mass stays at 1,800 lb" in word.inner_text().replace("\u00a0", " ")
     seen.page.wait_for_function("""() => [...document.querySelectorAll('.briefkit input[type=text]')]
         .some(box => box.value === '1,800 lb')""")
     assert settled(seen.page) == before
@@ -132,7 +134,7 @@ def test_a_typed_number_is_taken(seen):
     box = control(seen.page, "Mass").locator("input[type=text]")
     box.fill("1,700")
     box.press("Enter")
-    seen.page.wait_for_function("document.querySelector('.jp-Notebook').innerText.split('1,700 lb, Hp').length === 5")
+    seen.page.wait_for_function(f"{TEXT}.split('1,700 lb, Hp').length === 5")
     assert box.input_value() == "1,700 lb"
 
 
@@ -149,6 +151,21 @@ def test_running_the_cells_again_leaks_no_models(seen):
         settled(seen.page)
         counts.append(models())
         assert again == 0 or counts[-1] == counts[0]
+
+
+def test_odd_numbers_and_words_set_from_a_cell_stay(lab):
+    """The slider rounds what it draws and sends that back: it must neither move a number nor wipe a refusal."""
+    cells = [
+        CELLS[0].replace("1,800 lb", "800 kg").replace("20 degC", "20.3 degC"),
+        "live._controls[0].box.value = '2,100 lb'",
+    ]
+    page = lab.open(cells).page
+    page.locator(".briefkit .noUi-handle").first.wait_for(timeout=60_000)
+    page.wait_for_timeout(3000)
+    boxes = page.locator(".briefkit input[type=text]")
+    assert [boxes.nth(i).input_value() for i in (0, 2)] == ["1,763.7 lb", "+20.3 °C"]
+    assert "Refused" in page.locator(".briefkit .word").first.inner_text()
+    page.context.close()
 
 
 def test_nothing_was_said_to_the_console_and_nothing_left_the_machine(seen):

@@ -110,6 +110,7 @@ def test_the_boundary_against_mass(fixed):
         fixed(StallBoundary, against="torque")
 
 
+@pytest.mark.slow  # another aircraft, so another onset table
 def test_banks_above_the_manual_s_limit_do_not_exist(two_t, start, fixed):
     """page.md 3: nothing computed above a manual bank limit exists anywhere."""
     import dataclasses

@@ -94,6 +94,53 @@ def test_an_impossible_entry_is_refused_in_words_and_changes_nothing(
     assert control(field).box.value == shown
 
 
+@pytest.mark.parametrize(
+    ("typed", "field", "echo", "shown"),
+    [
+        ("800 kg", "mass", 1764.0, "1,763.7 lb"),
+        ("25.4", "load_factor", 25.0, "25.4°"),
+        ("20.3", "oat", 20.0, "+20.3 °C"),
+    ],
+)
+def test_the_front_end_s_own_rounding_changes_nothing(live, control, from_browser, typed, field, echo, shown):
+    """Seen in JupyterLab: drawn off its grid, a slider rounds its value and sends that as if a hand had moved it."""
+    from_browser(control(field).box, typed)
+    before = live.condition
+    from_browser(control(field).slider, echo)
+    assert live.condition is before
+    assert control(field).box.value == shown
+
+
+def test_the_front_end_s_rounding_wipes_no_refusal(live, control, from_browser):
+    from_browser(control("mass").box, "2,100 lb")
+    from_browser(control("mass").slider, 1800.0000001)
+    assert "Refused" in live.word
+
+
+@pytest.mark.parametrize(
+    ("typed", "moved", "shown"),
+    [
+        ("8,050", 8150.0, "8,100 ft"),
+        ("8,050", 7950.0, "8,000 ft"),
+        ("8,050", 9999.0, "9,900 ft"),
+        ("8,050", 10_000.0, "10,000 ft"),
+        ("8,000", 7400.0, "7,400 ft"),
+    ],
+)
+def test_a_slider_moves_by_round_numbers_and_reaches_its_end(live, control, from_browser, typed, moved, shown):
+    from_browser(control("pressure_altitude").box, typed)
+    from_browser(control("pressure_altitude").slider, moved)
+    assert control("pressure_altitude").box.value == shown
+
+
+def test_the_slider_s_grid_runs_through_the_number_it_shows(live, control, from_browser):
+    from_browser(control("mass").box, "800 kg")
+    slider = control("mass").slider
+    steps = (slider.value - slider.min) / slider.step
+    assert steps == pytest.approx(round(steps), abs=1e-5)
+    assert slider.min == pytest.approx(1301.698, abs=1e-3)
+
+
 def test_a_slider_into_a_forbidden_corner_is_refused_and_set_back(live, control, from_browser):
     """+30 C is permitted low down, but not at 10,000 ft (ISA+35 ends at +30.2 C there... at +36 it is not)."""
     from_browser(control("oat").slider, 36.0)
