@@ -31,6 +31,18 @@ def two_t() -> Aircraft:
 
 
 @pytest.fixture(scope="session")
+def three_f() -> Aircraft:
+    """The invented Ormbrae 3F: km/h, metres, a chart over height and mass."""
+    return load_aircraft(EXAMPLES / "aircraft" / "ormbrae-3f.toml")
+
+
+@pytest.fixture(scope="session")
+def four_h() -> Aircraft:
+    """The invented Kvillarn 4H: clockwise, hingeless, a chart with a cold edge."""
+    return load_aircraft(EXAMPLES / "aircraft" / "kvillarn-4h.toml")
+
+
+@pytest.fixture(scope="session")
 def operation() -> Operation:
     """The invented Norrabeck Rotor Charter."""
     return load_operation(EXAMPLES)

@@ -15,6 +15,7 @@ from typing import Any, Final
 import numpy as np
 from numpy.typing import NDArray
 
+from briefkit import units
 from briefkit.envelope.condition import Conditions
 from briefkit.envelope.solution import state_of
 from briefkit.errors import Reason
@@ -29,6 +30,7 @@ LIMIT_OF_CONTROL: Final = math.radians(16.0)
 # Advance ratios of the first look. The tip angle rises smoothly with speed, so these bracket every crossing.
 _ADVANCE_RATIOS: Final = np.concatenate([[0.03, 0.06], np.arange(0.09, 0.481, 0.03), [0.497]])
 _REFINEMENTS: Final = 3
+_STEP: Final = 1.0 * units.KNOT  # for the slope of tip angle against speed
 
 
 @dataclass(frozen=True, eq=False)
@@ -96,6 +98,31 @@ def onset_speed(
         slow, below = np.where(reached, slow, guess), np.where(reached, below, miss)
     speed[members] = slow - below * (fast - slow) / np.where(above > below, above - below, np.inf)
     return speed
+
+
+def moved_onset(
+    rotor: Rotor,
+    many: Conditions,
+    changed: Rotor,
+    changed_many: Conditions,
+    speed: Floats,
+    target: float,
+    count: int,
+) -> Floats:
+    """Onset of the changed members [m/s]: two secant steps from the unchanged one, whose slope they start with."""
+    if count == 0:
+        return np.empty(0)
+    safe = np.where(np.isfinite(speed), speed, 10.0)
+    slope = (tip_angle_at(rotor, many, safe + _STEP) - tip_angle_at(rotor, many, safe - _STEP)) / (2.0 * _STEP)
+    slope = np.repeat(slope, count)
+    start = np.repeat(safe, count)
+    miss = tip_angle_at(changed, changed_many, start) - target
+    guess = np.maximum(start - miss / slope, 0.0)
+    again = tip_angle_at(changed, changed_many, guess) - target
+    moved = guess - start
+    secant = np.where(np.abs(moved) > 1e-6, (again - miss) / np.where(np.abs(moved) > 1e-6, moved, 1.0), slope)
+    found = guess - again / np.where(secant > 0.0, secant, slope)
+    return np.where(np.repeat(np.isfinite(speed), count), found, np.nan)
 
 
 def _crossing(curve: TipAngles, target: float) -> NDArray[np.intp]:

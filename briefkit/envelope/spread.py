@@ -7,7 +7,6 @@ The band is softer than the manual's chart and is labelled so wherever it is sho
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
-from typing import Final
 
 import numpy as np
 from numpy.typing import NDArray
@@ -15,7 +14,7 @@ from numpy.typing import NDArray
 from briefkit import units
 from briefkit.aircraft.model import Aircraft, Stated
 from briefkit.envelope.condition import Condition, Conditions
-from briefkit.envelope.onset import FIRST_SIGNS, onset_speed, tip_angle_at, tip_angles
+from briefkit.envelope.onset import FIRST_SIGNS, moved_onset, onset_speed, tip_angles
 from briefkit.envelope.onset_table import ALLOWANCE, INPUTS, TARGETS, loading_of, onset_table, possible
 from briefkit.envelope.solution import rotor_of
 from briefkit.envelope.speeds import indicated_of
@@ -23,8 +22,6 @@ from briefkit.errors import OutsideCalibration, OutsideLimits, Reason
 from briefkit.physics.rotor import Rotor
 
 Floats = NDArray[np.float64]
-
-_STEP: Final = 1.0 * units.KNOT  # for the slope of tip angle against speed
 
 
 @dataclass(frozen=True)
@@ -114,7 +111,7 @@ def onset_bands(aircraft: Aircraft, many: Conditions) -> OnsetBands:
     ends = []
     for target in TARGETS:
         speed = onset_speed(rotor, many, target, curve)
-        ends.append((speed, _moved_onset(rotor, many, changed, changed_many, speed, target, 2 * len(names))))
+        ends.append((speed, moved_onset(rotor, many, changed, changed_many, speed, target, 2 * len(names))))
     return _combined(aircraft, many, changed_many, names, ends, 0.0)
 
 
@@ -192,31 +189,6 @@ def _changed_rotor(aircraft: Aircraft, members: int, inputs: int) -> Rotor:
         values[2 * i : 2 * i + 2] = possible(field, stated.value + stated.spread * np.array([-1.0, 1.0]))
         changes[field] = np.tile(values, members)
     return rotor_of(aircraft, **changes)
-
-
-def _moved_onset(
-    rotor: Rotor,
-    many: Conditions,
-    changed: Rotor,
-    changed_many: Conditions,
-    speed: Floats,
-    target: float,
-    count: int,
-) -> Floats:
-    """Onset of the changed members [m/s]: two secant steps from the unchanged one, whose slope they start with."""
-    if count == 0:
-        return np.empty(0)
-    safe = np.where(np.isfinite(speed), speed, 10.0)
-    slope = (tip_angle_at(rotor, many, safe + _STEP) - tip_angle_at(rotor, many, safe - _STEP)) / (2.0 * _STEP)
-    slope = np.repeat(slope, count)
-    start = np.repeat(safe, count)
-    miss = tip_angle_at(changed, changed_many, start) - target
-    guess = np.maximum(start - miss / slope, 0.0)
-    again = tip_angle_at(changed, changed_many, guess) - target
-    moved = guess - start
-    secant = np.where(np.abs(moved) > 1e-6, (again - miss) / np.where(np.abs(moved) > 1e-6, moved, 1.0), slope)
-    found = guess - again / np.where(secant > 0.0, secant, slope)
-    return np.where(np.repeat(np.isfinite(speed), count), found, np.nan)
 
 
 def _spread_texts(aircraft: Aircraft, condition: Condition) -> list[str]:
