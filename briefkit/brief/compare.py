@@ -11,7 +11,7 @@ import difflib
 import json
 import math
 from collections.abc import Iterable, Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from itertools import product
 from pathlib import Path
 from typing import Final
@@ -79,7 +79,13 @@ def compare(old: Revision, new: Revision) -> list[Difference]:
     """Everything that changed, figures first, those that became less conservative before the others."""
     found = [*_turns(old, new), *_vne(old.brief.aircraft, new.brief.aircraft), *_figures(old, new)]
     found.sort(key=lambda one: not one.less_conservative)
-    return [*found, *_words(old.brief, new.brief), *_cells(old.brief, new.brief)]
+    found += [*_words(old.brief, new.brief), *_cells(old.brief, new.brief)]
+    return [replace(one, name=_typeable(one.name)) for one in found]
+
+
+def _typeable(name: str) -> str:
+    """A name as a person types it into [[changes]]: plain spaces, a plain minus sign."""
+    return name.replace("\u00a0", " ").replace("\u2212", "-")
 
 
 def relaxed(old: Revision, new: Revision) -> list[Difference]:
@@ -93,7 +99,7 @@ def explained(brief: Brief, difference: Difference) -> str:
     An entry of [[changes]] names figures in full, or their beginning up to a comma or colon: "VNE power on" is all.
     """
     for change in brief.identity.changes:
-        for figure in change.figures:
+        for figure in map(_typeable, change.figures):
             whole = difference.name == figure or difference.name.startswith((f"{figure},", f"{figure}:"))
             if whole and change.reason and change.revision == brief.identity.revision:
                 return change.reason

@@ -190,10 +190,13 @@ def add_issued(path: Path, entry: Issued) -> None:
     text = path.read_bytes().decode("utf-8") if path.exists() else ""
     ends = "\r\n" if "\r\n" in text else "\n"
     joined = text.rstrip("\r\n") + (2 * ends if text.strip() else "") + ends.join([*_block(entry), ""])
-    before, after = (tomllib.loads(one.removeprefix("\ufeff")) for one in (text, joined))
-    written = after.pop("issued")
-    if written[:-1] != before.pop("issued", []) or after != before:
-        raise BriefkitError(f"{path}: an entry cannot be added at its end; close the table that is open there")
+    fault = BriefkitError(f"{path}: an entry cannot be added at its end; look at what stands there")
+    try:
+        before, after = (tomllib.loads(one.removeprefix("\ufeff")) for one in (text, joined))
+    except ValueError:
+        raise fault from None
+    if after.pop("issued")[:-1] != before.pop("issued", []) or after != before:
+        raise fault
     write_page(path, joined)
 
 

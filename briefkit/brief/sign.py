@@ -130,7 +130,8 @@ def _too_few(operation: Operation, signed: dict[str, Signature]) -> list[tuple[s
     distinct = len({signature.code for signature in signed.values()})
     if distinct + missing >= operation.policy.people:
         return []
-    return [(f"{distinct} distinct people of {operation.policy.people}", "another person has to sign this role")]
+    text = f"{distinct + missing} distinct people, the policy asks for {operation.policy.people} ({operation.file})"
+    return [(text, "another person has to sign this role")]
 
 
 def with_signature(text: str, signature: Signature) -> str:
