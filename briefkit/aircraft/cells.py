@@ -15,7 +15,7 @@ from briefkit import units
 from briefkit.aircraft.chart import Axis
 from briefkit.errors import ReadingError
 from briefkit.reading.document import Document
-from briefkit.reading.quantity import quoted, spelling
+from briefkit.reading.quantity import plain, quoted, spelling
 
 SPEEDS: Final = tuple(units.permitted_units("speed"))
 FASTEST: Final = {"kt": 250.0, "km/h": 460.0, "mph": 290.0}
@@ -214,7 +214,7 @@ def _in_range(document: Document, place: str, value: float, header: str, line: i
     low, high = _RANGES[axis]
     low = _LOWEST_DENSITY_ALTITUDE if density else low
     if not low <= units.to_si(value, QUANTITY[axis], unit) <= high:
-        ends = [f"{units.from_si(end, QUANTITY[axis], unit):,.4g}" for end in (low, high)]
+        ends = [plain(units.from_si(end, QUANTITY[axis], unit)) for end in (low, high)]
         document.fault(place, f"{value:,g} {header}", f"{ends[0]} to {ends[1]} {header}", "look again", line)
 
 

@@ -10,7 +10,7 @@ import numpy as np
 
 from briefkit import units
 from briefkit.aircraft.answers import EntryFinding, Kind, answered, finding
-from briefkit.aircraft.chart import Axis, VneChart
+from briefkit.aircraft.chart import Axis, Floats, VneChart
 from briefkit.aircraft.hover import falls
 from briefkit.aircraft.model import Aircraft
 from briefkit.aircraft.permitted import power_off_findings, supplement_findings
@@ -136,21 +136,35 @@ def _rising(key: str, chart: VneChart, unit: str) -> list[EntryFinding]:
 
 
 def _uneven(key: str, chart: VneChart) -> list[EntryFinding]:
-    """Heights and temperatures of a table that mostly go in one step: an entry in another step is often mistyped."""
+    """Heights and temperatures of a table mostly go in one step: an entry off it is often mistyped."""
     found = []
     if chart.typed and chart.typed[0][0] in chart.straight:
         return []
     for name, (axis, texts) in zip(("row", "column", "at"), chart.typed, strict=False):
         nodes = np.array(chart.axes[axis])[-len(texts) :]
-        steps = np.round(np.diff(nodes), 3)
-        usual, count = Counter(steps.tolist()).most_common(1)[0]
-        if axis not in (Axis.HEIGHT, Axis.TEMPERATURE) or count < 2 or count == len(steps):
-            continue
-        for text, before, step in zip(texts[1:], texts, steps, strict=False):
-            if step != usual:
-                permitted = "the same step as between most others"
-                found.append(finding(Kind.UNEVEN_AXIS, f"{name} {text}", key, f"{before} to {text}", permitted))
+        if axis in (Axis.HEIGHT, Axis.TEMPERATURE):
+            for i in _off_step(nodes):
+                permitted = "an even step, as between most others"
+                found.append(finding(Kind.UNEVEN_AXIS, f"{name} {texts[i]}", key, texts[i], permitted))
     return found
+
+
+def _off_step(nodes: Floats) -> list[int]:
+    """The one entry without which all others go in one step; else each entry after a step other than the usual one."""
+    steps = np.round(np.diff(nodes), 3)
+    if len(nodes) < 4 or np.ptp(steps) < 0.01:
+        return []
+    alone = []
+    for i in range(len(nodes)):
+        rest = np.round(np.diff(np.delete(nodes, i)), 3)
+        if 0 < i < len(nodes) - 1:
+            rest[i - 1] = np.round(rest[i - 1] / 2.0, 3)  # the gap the entry was taken out of
+        if np.ptp(rest) < 0.01:
+            alone.append(i)
+    if len(alone) == 1:
+        return alone
+    usual, count = Counter(steps.tolist()).most_common(1)[0]
+    return [i + 1 for i, step in enumerate(steps) if step != usual] if count > 1 else []
 
 
 def _out_of_line(key: str, chart: VneChart, unit: str) -> list[EntryFinding]:

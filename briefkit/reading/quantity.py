@@ -90,6 +90,11 @@ def quoted(read: object) -> str:
     return "a table" if isinstance(read, Mapping) else "a list" if isinstance(read, list) else str(read)
 
 
+def plain(number: float) -> str:
+    """A number for a sentence: four figures, whole from 1,000 up, never an exponent."""
+    return f"{number:,.0f}" if abs(number) >= 1000.0 else f"{number:.4g}"
+
+
 def _read_quantity(read: object, kind: str, low: float, high: float, unknown: bool) -> Typed:
     faults: list[tuple[str, str, str, str]] = []
     table: Mapping[str, object] = read if isinstance(read, Mapping) else {"value": read}
@@ -153,7 +158,7 @@ def _read_spread(read: object, kind: str, value: float | None) -> float:
 
 
 def _range_in_words(kind: str, unit: str, low: float, high: float) -> str:
-    shown = [f"{units.from_si(end, kind, unit):,.4g}" if math.isfinite(end) else "" for end in (low, high)]
+    shown = [plain(units.from_si(end, kind, unit)) if math.isfinite(end) else "" for end in (low, high)]
     if not shown[1]:
         return f"{shown[0]} {unit} or more".replace("  ", " ")
     return f"{shown[0]} to {shown[1]} {unit}".strip()

@@ -72,7 +72,7 @@ def test_the_2t_is_read_as_typed(two_t: Aircraft) -> None:
 def test_the_demo_file_says_on_its_first_line_that_it_is_invented(examples: Path) -> None:
     for path in examples.rglob("*.toml"):
         first = path.read_text(encoding="utf-8").split("\n")[0]
-        assert first.startswith("# Invented"), path
+        assert "nvented" in first, path
         assert first.endswith("Do not use for flight."), path
 
 
