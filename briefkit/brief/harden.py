@@ -66,6 +66,12 @@ _NEIGHBOUR: Final = re.compile(r"#[A-Za-z0-9_.:\-]+|[A-Za-z0-9][A-Za-z0-9.\-]*\.
 _ELSEWHERE: Final = re.compile(r"url\((?!\s*#)|@import|expression\(|javascript:|\\", re.IGNORECASE)
 _FETCHES: Final = re.compile(r"url\(|@import|expression\(", re.IGNORECASE)
 _DECLARATION: Final = re.compile(r"[a-z\-]+\s*:[^;{}<>@\\]+", re.IGNORECASE)
+# What HTML's input stream may not hold (WHATWG HTML 13.2.3.5): controls, half letters, noncharacters.
+_NO_LETTER: Final = re.compile(
+    "[\x00-\x08\x0b\x0e-\x1f\x7f-\x9f\ud800-\udfff\ufdd0-\ufdef"
+    + "".join(chr(plane << 16 | last) for plane in range(17) for last in (0xFFFE, 0xFFFF))
+    + "]"
+)
 _CELLS: Final = _names("td th dd text tspan")
 _BROKEN_CELL: Final = re.compile(r"\b(?:[nN]a[nN]|NAN|[iI]nf|INF|[iI]nfinity|None)\b")
 _BROKEN_TEXT: Final = re.compile(r"\b(?:nan|NaN|NAN)\b")
@@ -110,12 +116,13 @@ class _Cleaner(HTMLParser):
         if _FETCHES.search(self._style):
             raise BuildError("the page's style sheet would fetch something; the handout template is damaged")
         rules = [f".{name}{{{text}}}" for name, text in sorted(self._classes.items())]
-        style = "\n".join([self._style.rstrip("\n"), *rules]) + "\n"
+        style = _NO_LETTER.sub("\ufffd", "\n".join([self._style.rstrip("\n"), *rules]) + "\n")
         digest = base64.b64encode(hashlib.sha256(style.encode("utf-8")).digest()).decode("ascii")
         policy = f"default-src 'none'; style-src 'sha256-{digest}'; img-src data:; base-uri 'none'; form-action 'none'"
         head = f'\n<meta http-equiv="Content-Security-Policy" content="{policy}">\n'
         body = "".join(head if part == self._HEAD_MARK else part for part in self._out)
-        return "<!DOCTYPE html>\n" + body.replace("\0style", style).strip() + "\n"
+        whole = body.replace("\0style", style).strip()
+        return "<!DOCTYPE html>\n" + _NO_LETTER.sub("\ufffd", whole) + "\n"
 
     def handle_starttag(self, tag: str, attrs: list[tuple[str, str | None]]) -> None:
         self._start(tag, attrs, closed=False)

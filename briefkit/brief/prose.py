@@ -1,4 +1,7 @@
-"""The author's markdown as page text: headings below the page's own, pictures in the page, no formulas."""
+"""The author's markdown as page text: headings below the page's own, pictures in the page, no formulas.
+
+HTML in a cell is shown as it was typed: nothing of it is obeyed, so that nothing of it can break the page.
+"""
 
 from __future__ import annotations
 
@@ -47,7 +50,7 @@ class _PageRenderer(IPythonRenderer):
     """Refuses what a page without scripts cannot draw."""
 
     def __init__(self, words: Words) -> None:
-        super().__init__(escape=False, exclude_anchor_links=True, attachments=words.attachments)
+        super().__init__(escape=True, exclude_anchor_links=True, attachments=words.attachments)
         self._place = words.place
 
     def _refuse(self) -> str:

@@ -23,6 +23,7 @@ _WORDS: Final = {
 }  # fmt: skip
 # Not put there as text of a source: a head, a drawing, another link, what is hidden from the eye.
 _SKIPPED: Final = re.compile(r"<(head|svg|a|h1)\b|<caption class=\"said\"")
+_LEAST: Final = 4  # letters and digits: less is no name of a document, and stands in too many words
 _SHORT: Final = 24  # letters that may stand together on a line of the narrowest telephone
 _TOKEN: Final = re.compile(r"(<[^>]*>)")
 
@@ -84,14 +85,21 @@ def link(page: str, listed: tuple[Source, ...]) -> str:
     `page` is HTML whose text and attributes are escaped, as the templates write it. Drawings, headings of the first
     level, hidden captions and the list itself are left alone.
     """
-    if not listed:
+    names = {
+        name: source
+        for source in reversed(listed)
+        for name in (source.text, source.text.removeprefix("flight "))
+        if len(re.findall(r"\w", name)) >= _LEAST
+    }
+    if not names:
         return page
-    names = {name: source for source in reversed(listed) for name in (source.text, source.text.removeprefix("flight "))}
     mention = re.compile("|".join(_spaced(name) for name in sorted(names, key=len, reverse=True)))
     by_text = {_plain(name): source for name, source in names.items()}
 
     def linked(match: re.Match[str]) -> str:
-        source = by_text[_plain(unescape(match[0]))]
+        source = by_text.get(_plain(unescape(match[0])))
+        if source is None:
+            return match[0]
         short = ' class="short"' if len(source.text) <= _SHORT else ""
         return f'<a{short} href="#{source.anchor}">{match[0]}</a>'
 
@@ -114,7 +122,7 @@ def _closing(tag: str) -> str:
 
 
 def _plain(text: str) -> str:
-    return re.sub(r"\s+", " ", text)
+    return " ".join(text.split())
 
 
 def _spaced(name: str) -> str:
