@@ -1,4 +1,4 @@
-"""Speed against height or mass: the manual's VNE, the equivalent VNE at a few banks, and the onset band behind them."""
+"""Speed against one quantity: the manual's VNE, the equivalent VNE of a few turns, and the onset band behind them."""
 
 from __future__ import annotations
 
@@ -18,6 +18,7 @@ Floats = NDArray[np.float64]
 
 _ROOM = Margins(40, 122, 30, 44)
 _HEIGHT = 330
+_UNDER = 48.0  # room for two rows of words under a line's end [px]
 _SAME = 0.05  # speeds closer than this, everywhere, are one line
 
 
@@ -39,14 +40,14 @@ class Here:
 class Curves:
     """What the figure shows, in the units it is printed in; NaN marks a gap (refused), and a gap stays a gap.
 
-    `x` (n,) rising; `manual` (n,) the manual's VNE; `turns` (bank in degrees, (n,) speeds) of the equivalent VNE;
+    `x` (n,) rising; `manual` (n,) the manual's VNE; `turns` (name, (n,) speeds) of the equivalent VNE;
     `onset_lower`, `onset_central`, `onset_upper` (m,) the absolute onset band over `onset_x` (m,) rising; where only
     its upper end has no value the band is drawn open, up to the top of the figure, and says so.
     """
 
     x: ArrayLike
     manual: ArrayLike
-    turns: Sequence[tuple[float, ArrayLike]]
+    turns: Sequence[tuple[str, ArrayLike]]
     onset_x: ArrayLike
     onset_lower: ArrayLike
     onset_central: ArrayLike
@@ -56,16 +57,16 @@ class Curves:
 class BoundaryFigure:
     """A live bqplot figure of the boundary: built once, changed in place by `update`."""
 
-    def __init__(self, *, x_words: str, speed_words: str, banks: int = 3) -> None:
-        """`x_words` and `speed_words` name the axes with their units; `banks` is how many banks will be shown."""
-        if not 1 <= banks <= len(theme.DASHES):
-            raise ValueError(f"1 to {len(theme.DASHES)} banks can be told apart, not {banks}")
+    def __init__(self, *, x_words: str, speed_words: str, turns: int) -> None:
+        """`x_words` and `speed_words` name the axes with their units; `turns` is how many lines are computed."""
+        if not 0 <= turns <= len(theme.DASHES):
+            raise ValueError(f"up to {len(theme.DASHES)} computed lines can be told apart, not {turns}")
         area = self._area = canvas.plane((0.0, 1.0, 0.0, 1.0), theme.WIDTH, _HEIGHT, _ROOM)
         self._words = (x_words, speed_words)
         self._band = [canvas.patch(area, theme.BAND)]
         self._middle = Curve(area, theme.GREY, theme.THIN, "dotted")
         self._manual = Curve(area, theme.INK, theme.HEAVY)
-        self._turns = [Curve(area, theme.COMPUTED, theme.LINE, theme.DASHES[index]) for index in range(banks)]
+        self._turns = [Curve(area, theme.COMPUTED, theme.LINE, theme.DASHES[index]) for index in range(turns)]
         self._stops = canvas.lines(area, theme.COMPUTED, theme.LINE)
         self._stop_words = [canvas.texts(area, theme.COMPUTED, align=align) for align in ("start", "end")]
         self._ends = EndWords(area)
@@ -89,19 +90,20 @@ class BoundaryFigure:
         """New curves and the present condition. A curve without one finite point raises ValueError."""
         x = np.asarray(curves.x, dtype=float)
         manual = np.asarray(curves.manual, dtype=float)
-        turns = [(bank, np.asarray(speeds, dtype=float)) for bank, speeds in curves.turns]
+        turns = [(name, np.asarray(speeds, dtype=float)) for name, speeds in curves.turns]
         if len(turns) != len(self._turns):
-            raise ValueError(f"this figure was built for {len(self._turns)} banks, not {len(turns)}")
+            raise ValueError(f"this figure was built for {len(self._turns)} computed lines, not {len(turns)}")
         band = [
             np.asarray(edge, dtype=float) for edge in (curves.onset_lower, curves.onset_central, curves.onset_upper)
         ]
         band_x = np.asarray(curves.onset_x, dtype=float)
         if not np.any(np.isfinite(manual)):
             raise ValueError("the manual's VNE has no value anywhere on this figure")
-        self._set_limits(x, [manual, *(speeds for _, speeds in turns), *band], here)
+        computed = [speeds for _, speeds in turns]
+        self._set_limits(x, [manual, *computed, *band], computed, here)
         grown = self._draw_band(band_x, band)
         grown |= self._manual.update(x, manual)
-        merged = [bank for bank, speeds in turns if _same(speeds, manual)]
+        merged = [name for name, speeds in turns if _same(speeds, manual)]
         grown |= self._draw_turns(x, turns, merged, here)
         self._write_ends(x, manual, [turn for turn in turns if turn[0] not in merged], (band_x, band), merged)
         self._draw_here(here)
@@ -114,11 +116,12 @@ class BoundaryFigure:
             marks += turn.marks
         return [
             *marks, *self._manual.marks, self._stops, *self._stop_words, *self._ends.marks,
-            self._answer, self._here, self._answer_words,
+            self._here, self._answer, self._answer_words,
             self._here_words, self._titles, self._foot,
         ]  # fmt: skip
 
-    def _set_limits(self, x: Floats, speeds: Sequence[Floats], here: Here | None) -> None:
+    def _set_limits(self, x: Floats, speeds: Sequence[Floats], lines: Sequence[Floats], here: Here | None) -> None:
+        """Round limits round everything shown, with room for words over all and under the ends of `lines`."""
         everything = np.concatenate([*speeds, _speeds(here)])
         finite = everything[np.isfinite(everything)]
         step = 10.0 if np.ptp(finite) <= 120.0 else 20.0
@@ -127,6 +130,9 @@ class BoundaryFigure:
             math.ceil((finite.max() + 0.13 * np.ptp(finite)) / step) * step,
         )
         area = self._area
+        stops = [float(speed[place]) for speed in lines for place in _stops(speed)]
+        while stops and low > 0.0 and (min(stops) - low) / (high - low) * area.height < _UNDER:
+            low -= step
         canvas.rescale(area, (float(x[0]), float(x[-1]), max(low, 0.0), high))
         canvas.set_ticks(self._x_axis, canvas.ticks(float(x[0]), float(x[-1]), 5))
         canvas.set_ticks(self._y_axis, canvas.ticks(max(low, 0.0), high, 6))
@@ -148,20 +154,19 @@ class BoundaryFigure:
         return self._middle.update(x, central) or missing > 0
 
     def _draw_turns(
-        self, x: Floats, turns: Sequence[tuple[float, Floats]], merged: Sequence[float], here: Here | None
+        self, x: Floats, turns: Sequence[tuple[str, Floats]], merged: Sequence[str], here: Here | None
     ) -> bool:
         """The computed lines; where one ends before the figure does, a bar across its end says so."""
         grown = False
         area = self._area
         bars_x, bars_y = [], []
-        ends: list[tuple[float, float, float]] = []
-        for curve, (bank, speeds) in zip(self._turns, turns, strict=True):
-            grown |= curve.update([], []) if bank in merged else curve.update(x, speeds)
-            finite = np.flatnonzero(np.isfinite(speeds))
-            if bank not in merged and finite.size and finite[-1] < x.size - 1:
-                end, speed = float(x[finite[-1]]), float(speeds[finite[-1]])
+        ends: list[tuple[str, float, float]] = []
+        for curve, (name, speeds) in zip(self._turns, turns, strict=True):
+            grown |= curve.update([], []) if name in merged else curve.update(x, speeds)
+            for place in [] if name in merged else _stops(speeds):
+                end, speed = float(x[place]), float(speeds[place])
                 across, down = area.across(end), area.down(speed)
-                ends.append((bank, across, down))
+                ends.append((name, across, down))
                 bars_x.append([end, end])
                 bars_y.append([area.y_at(down - 6.0), area.y_at(down + 6.0)])
         put(self._stops, bars_x, bars_y)
@@ -170,14 +175,14 @@ class BoundaryFigure:
         return grown
 
     def _write_stops(
-        self, ends: Sequence[tuple[float, float, float]], here: float | None, rings: Sequence[tuple[float, float]]
+        self, ends: Sequence[tuple[str, float, float]], here: float | None, rings: Sequence[tuple[float, float]]
     ) -> None:
-        """Words under the ends (bank, pixels across and down): heavier, higher or steeper only lowers a line."""
+        """Words under the ends (name, pixels across and down): heavier, higher or steeper only lowers a line."""
         area, width = self._area, canvas.text_width("chart ends")
         words: list[list[tuple[float, float, str]]] = [[], []]
         # Boxes (left, right, top, bottom) in pixels that words keep clear of.
         taken = [(across - 9.0, across + 9.0, down - 9.0, down + 9.0) for across, down in rings]
-        for bank, across, down in sorted(ends, key=lambda end: end[2]):
+        for name, across, down in sorted(ends, key=lambda end: end[2]):
             left = across > 0.6 * area.width or (here is not None and -8.0 < here - across < width)
             edge = across - width if left else across
             top = down + 16.0
@@ -185,7 +190,7 @@ class BoundaryFigure:
                 top += 2.0
             taken.append((edge, edge + width, top - 8.0, top + 22.0))
             place = area.x_at(across + (2.0 if left else -2.0))
-            rows = (_bank(bank) + ",", "chart ends")
+            rows = (name + ",", "chart ends")
             words[left] += [(place, area.y_at(top + 14.0 * row), text) for row, text in enumerate(rows)]
         for mark, places in zip(self._stop_words, words, strict=True):
             write(mark, places)
@@ -194,15 +199,15 @@ class BoundaryFigure:
         self,
         x: Floats,
         manual: Floats,
-        turns: Sequence[tuple[float, Floats]],
+        turns: Sequence[tuple[str, Floats]],
         band: tuple[Floats, Sequence[Floats]],
-        merged: Sequence[float],
+        merged: Sequence[str],
     ) -> None:
-        level = tuple(f"and {_bank(bank)}" for bank in merged)
+        level = tuple(f"and {name}" for name in merged)
         ends = [_end(x, manual, ("VNE, manual", *level), theme.INK, bold=True)]
-        for bank, speeds in turns:
+        for name, speeds in turns:
             if np.isfinite(speeds[-1]):
-                ends.append(_end(x, speeds, (_bank(bank),), theme.COMPUTED))
+                ends.append(_end(x, speeds, (name,), theme.COMPUTED))
         lower, _, upper = band[1]
         if np.any(np.isfinite(lower)):
             rows: tuple[str, ...] = ("onset band,", "softer than", "the chart")
@@ -234,6 +239,15 @@ class BoundaryFigure:
         )
 
 
+def _stops(speeds: Floats) -> list[int]:
+    """Where a line begins or ends inside the figure: the outer ends of its values, if not at the figure's own."""
+    finite = np.flatnonzero(np.isfinite(speeds))
+    if finite.size == 0:
+        return []
+    first, last = int(finite[0]), int(finite[-1])
+    return ([first] if first > 0 else []) + ([last] if last < speeds.size - 1 else [])
+
+
 def _speeds(here: Here | None) -> list[float]:
     return [] if here is None else [speed for speed in (here.speed, here.answer) if speed is not None]
 
@@ -249,10 +263,6 @@ def _top(x: Floats, upper: Floats, ceiling: float) -> tuple[Floats, Floats]:
     left, right = np.where(both, upper[:-1], ceiling), np.where(both, upper[1:], ceiling)
     across = np.stack([x[:-1], x[1:]], axis=1).ravel()
     return across, np.stack([left, right], axis=1).ravel()
-
-
-def _bank(bank: float) -> str:
-    return "level flight" if bank == 0.0 else f"{bank:g}° bank"
 
 
 def _end(x: Floats, y: Floats, rows: tuple[str, ...], colour: str, *, bold: bool = False) -> End:

@@ -49,8 +49,9 @@ class FlapCurveFigure:
         beta = b0_deg + b1c_deg * np.cos(psi) + b1s_deg * np.sin(psi)
         area = self._area
         step = 1.0 if np.ptp(beta) < 8.0 else 2.0
-        low = min(math.floor((beta.min() - 0.6 * step) / step) * step, 0.0)
-        high = math.ceil((beta.max() + 0.6 * step) / step) * step
+        room = 0.13 * max(float(np.ptp(beta)), step)  # for the words over the highest and under the lowest point
+        low = min(math.floor((beta.min() - room) / step) * step, 0.0)
+        high = math.ceil((beta.max() + room) / step) * step
         canvas.rescale(area, (0.0, 360.0, low, high))
         canvas.set_ticks(self._y_axis, canvas.ticks(low, high, 6))
         put(self._zero, [0.0, 360.0], [0.0, 0.0])

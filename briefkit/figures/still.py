@@ -51,8 +51,6 @@ def _exhibit(parts: StillParts, key: str) -> str:
     for name in ("title", "caption", "alt"):
         if not getattr(parts, name).strip():
             raise ValueError(f"an exhibit needs a {name} in words")
-    if not parts.drawings:
-        raise ValueError(f"the exhibit {parts.title!r} has no drawing")
     said = [drawing.desc for drawing in parts.drawings]
     label = None if parts.alt in said else parts.alt
     heading = element("span", {"class": "title"}, words(parts.title))
@@ -60,7 +58,7 @@ def _exhibit(parts: StillParts, key: str) -> str:
     body += [svg(drawing, f"{key}/{index}") for index, drawing in enumerate(parts.drawings)]
     if parts.inputs:
         body.append(_inputs(parts.inputs))
-    body.append(_table(parts.table))
+    body.append(table_html(parts.table))
     body += [element("p", {"class": "note"}, words(note)) for note in parts.notes]
     return element("figure", {"class": "exhibit", "aria-label": label}, *body)
 
@@ -72,7 +70,8 @@ def _inputs(pairs: tuple[tuple[str, str], ...] | list[tuple[str, str]]) -> str:
     return element("dl", {"class": "inputs"}, *lines)
 
 
-def _table(table: Table) -> str:
+def table_html(table: Table) -> str:
+    """A table as markup; a row that does not fit its headings, or no row, raises ValueError."""
     if not table.header or not table.rows:
         raise ValueError("an exhibit needs a table with a header and at least one row")
     for row in table.rows:

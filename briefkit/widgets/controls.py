@@ -11,6 +11,7 @@ from briefkit import units
 from briefkit.aircraft.model import Aircraft
 from briefkit.envelope import region
 from briefkit.errors import ReadingError
+from briefkit.physics import atmosphere
 from briefkit.widgets.words import Dial, text_of
 
 
@@ -87,7 +88,8 @@ def ranges(aircraft: Aircraft) -> dict[str, tuple[float, float]]:
     coldest, hottest = region.temperature_range(aircraft)
     hottest = min(hottest, units.read("55 degC", "temperature"))  # the hottest a condition may state
     low_k, high_k = limits.rotor_on
-    top = min(limits.max_altitude.value, chart.heights[-1])
+    foot = atmosphere.LOWEST if chart.density_altitude else chart.heights[0]
+    top = region.highest_altitude(aircraft)
     fastest = float(np.nanmax(chart.speeds))
     if aircraft.calibration.in_manual:
         fastest = min(1.25 * fastest, aircraft.calibration.highest_indicated)
@@ -99,7 +101,7 @@ def ranges(aircraft: Aircraft) -> dict[str, tuple[float, float]]:
 
     return {
         "mass": ends("mass", shown.mass, limits.min_mass.value, limits.max_mass.value),
-        "pressure_altitude": ends("height", shown.height, chart.heights[0], top),
+        "pressure_altitude": ends("height", shown.height, foot, top),
         "oat": ends("temperature", "°C", coldest, hottest),
         "ias": ends("speed", shown.speed, aircraft.calibration.lowest_indicated, fastest),
         "load_factor": ends("angle", "°", 0.0, bank),

@@ -28,6 +28,12 @@ STYLE = (
     f".briefkit .for{{color:{theme.GREY}}}"
     f".briefkit .word{{border-left:4px solid {theme.INK};padding-left:8px;font-weight:600}}"
     ".briefkit-old{opacity:.35;filter:grayscale(1)}"
+    ".briefkit table{border-collapse:collapse;font-size:14px;line-height:1.45}"
+    f".briefkit th,.briefkit td{{text-align:left;vertical-align:top;padding:3px 16px 3px 0;"
+    f"border:0;border-bottom:1px solid {theme.RULE};background:{theme.PAPER};color:{theme.INK};"
+    "white-space:normal}.briefkit th{font-weight:600}"
+    f".briefkit table caption{{text-align:left;color:{theme.GREY}}}"
+    f".briefkit tr.now th,.briefkit tr.now td{{border-bottom:3px solid {theme.INK};font-weight:600}}"
     ".briefkit .bqplot text{font-variant-numeric:tabular-nums}.briefkit .bqplot>svg{overflow:visible}"
     "</style>"
 )
@@ -70,7 +76,7 @@ class Exhibit(w.VBox):  # type: ignore[misc]  # ipywidgets carries no types
         self._source = _source(source, condition)
         self._parts: StillParts | None = None
         self._fault = ""
-        self._drawn_for: Condition | None = None
+        self._drawn_for = ""
         self._figures = self._build(self._source.answers.aircraft)
         self._caption, self._state = w.HTML(), w.HTML()
         style = w.HTML(STYLE, layout={"display": "none"})
@@ -98,6 +104,10 @@ class Exhibit(w.VBox):  # type: ignore[misc]  # ipywidgets carries no types
     def _draw(self, answers: Answers) -> StillParts:
         """Redraw the figures in place and return what they say."""
         raise NotImplementedError
+
+    def _for_words(self, answers: Answers) -> str:
+        """What the picture is drawn for, in one line."""
+        return words.sentence(answers.aircraft, answers.condition)
 
     def _spare(self) -> tuple[w.Widget, ...]:
         """Models the figures use that no trait of theirs leads to."""
@@ -135,9 +145,8 @@ class Exhibit(w.VBox):  # type: ignore[misc]  # ipywidgets carries no types
         self._fault = why
         self._picture.add_class("briefkit-old")
         shown = ""
-        if self._drawn_for is not None:
-            for_words = words.sentence(self._source.answers.aircraft, self._drawn_for)
-            shown = f"<p class='for'>The grey picture is for {escape(for_words)}.</p>"
+        if self._drawn_for:
+            shown = f"<p class='for'>The grey picture is for {escape(self._drawn_for)}.</p>"
         self._state.value = f"<p class='word'>Not current. {escape(why)}</p>{shown}"
 
     def close(self) -> None:
@@ -151,11 +160,10 @@ class Exhibit(w.VBox):  # type: ignore[misc]  # ipywidgets carries no types
     def _redraw(self) -> None:
         answers = self._source.answers
         parts = self._draw(answers)
-        self._parts, self._fault, self._drawn_for = parts, "", answers.condition
-        drawn_for = words.sentence(answers.aircraft, answers.condition)
+        self._parts, self._fault, self._drawn_for = parts, "", self._for_words(answers)
         self._caption.value = (
             f"<h4>{escape(parts.title)}</h4><p>{escape(parts.caption)}</p>"
-            f"<p class='for'>{escape(answers.aircraft.name)}: {escape(drawn_for)}</p>"
+            f"<p class='for'>{escape(answers.aircraft.name)}: {escape(self._drawn_for)}</p>"
         )
         self._state.value = "".join(f"<p class='for'>{escape(note)}</p>" for note in parts.notes)
         self._picture.remove_class("briefkit-old")

@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 
 from briefkit import units
 from briefkit.aircraft.model import Aircraft
-from briefkit.envelope.boundary import Against, Boundary, boundary
+from briefkit.envelope.boundary import Against, Boundary, EquivalentCurve, boundary
 from briefkit.envelope.condition import Condition
 from briefkit.errors import Reason, Refusal, SetBy
 from briefkit.figures.boundary import BoundaryFigure, Curves, Here
@@ -25,6 +25,20 @@ Floats = NDArray[np.float64]
 
 BANKS: Final = (0.0, 20.0, 30.0)
 _TABLE_ROWS: Final = 6
+_AXES: Final = {
+    Against.ALTITUDE: "pressure altitude",
+    Against.MASS: "mass",
+    Against.ROTOR_SPEED: "rotor speed",
+    Against.BANK: "bank",
+    Against.GUST: "speed of a rising gust",
+}
+# The field of a condition that an axis replaces, and any value of it to compare conditions without.
+_REPLACED: Final = {
+    Against.ALTITUDE: ("pressure_altitude", 0.0),
+    Against.MASS: ("mass", 1000.0),
+    Against.ROTOR_SPEED: ("rotor_speed", 1.0),
+    Against.BANK: ("load_factor", 1.0),
+}
 _SHORT: Final = {
     Reason.BEYOND_CHART: "beyond chart",
     Reason.TOO_COLD: "too cold",
@@ -34,10 +48,11 @@ _SHORT: Final = {
 
 
 class StallBoundary(Exhibit):
-    """Indicated speed against pressure altitude or mass, around one condition.
+    """Indicated speed against one quantity, around one condition.
 
-    `StallBoundary(aircraft, condition)` is fixed, `StallBoundary(live)` follows. `against` is "pressure altitude" or
-    "mass"; `banks` up to four banks in degrees, none above the manual's bank limit.
+    `StallBoundary(aircraft, condition)` is fixed, `StallBoundary(live)` follows. `against` is "pressure altitude",
+    "mass", "rotor speed", "bank" or "gust"; `banks` up to four banks in degrees, none above the manual's bank limit
+    (against bank or gust they are not used). Against a gust only the onset band is drawn.
     """
 
     def __init__(
@@ -57,12 +72,12 @@ class StallBoundary(Exhibit):
         if limit is not None:
             highest = units.from_si(limit.value, "angle", "deg")
             self._banks = tuple(bank for bank in self._banks if bank <= highest + 1e-9)
-        over_mass = self._against is Against.MASS
-        unit = aircraft.units.mass if over_mass else aircraft.units.height
+        lines = {Against.BANK: 1, Against.GUST: 0}.get(self._against, len(self._banks))
+        unit = self._axis(aircraft)[1]
         self._boundary = BoundaryFigure(
-            x_words=f"{self._against}, {unit}",
+            x_words=f"{_AXES[self._against]}, {units.SHOWN.get(unit, unit)}",
             speed_words=f"{aircraft.units.speed_label()}, power on",
-            banks=len(self._banks),
+            turns=lines,
         )
         return (self._boundary.figure,)
 
@@ -74,7 +89,7 @@ class StallBoundary(Exhibit):
             Curves(
                 x=curves.x,
                 manual=curves.vne,
-                turns=[(c.bank_deg, c.ias) for c in curves.equivalent if c.bank_deg is not None],
+                turns=[(_name(curve), curve.ias) for curve in curves.equivalent],
                 onset_x=curves.onset_x,
                 onset_lower=curves.onset_lower,
                 onset_central=curves.onset_central,
@@ -82,8 +97,8 @@ class StallBoundary(Exhibit):
             ),
             here,
         )
-        title = f"VNE and the equivalent level flight, against {self._against}"
-        desc = f"Indicated speed against {self._against}. {caption}"
+        title = f"VNE and the equivalent level flight, against {_AXES[self._against]}"
+        desc = f"Indicated speed against {_AXES[self._against]}. {caption}"
         return StillParts(
             title=title,
             caption=caption,
@@ -96,19 +111,36 @@ class StallBoundary(Exhibit):
 
     def _curves(self, aircraft: Aircraft, condition: Condition) -> Boundary:
         """The curves do not depend on the airspeed, nor on the number along the axis: kept while only those change."""
-        along = "mass" if self._against is Against.MASS else "pressure_altitude"
-        ends = aircraft.limits.max_mass.value if self._against is Against.MASS else aircraft.vne.heights[0]
-        key = condition.changed(**{"ias": None, along: ends})
+        moved: dict[str, float | None] = {"ias": None}
+        if self._against in _REPLACED:
+            field, anything = _REPLACED[self._against]
+            moved[field] = anything
+        key = condition.changed(**moved)
         if self._kept is None or self._kept[0] != key:
             self._kept = key, boundary(aircraft, condition, self._against, self._banks)
         return self._kept[1]
 
+    def _axis(self, aircraft: Aircraft) -> tuple[str, str]:
+        """Quantity and unit of the axis, in the units of the type's manual."""
+        shown = aircraft.units
+        return {
+            Against.ALTITUDE: ("height", shown.height),
+            Against.MASS: ("mass", shown.mass),
+            Against.ROTOR_SPEED: ("ratio", "%"),
+            Against.BANK: ("angle", "deg"),
+            Against.GUST: ("vertical speed", "ft/min" if shown.height == "ft" else "m/s"),
+        }[self._against]
+
     def _here(self, answers: Answers) -> tuple[Here, str]:
         aircraft, condition = answers.aircraft, answers.condition
-        quantity, unit = (
-            ("mass", aircraft.units.mass) if self._against is Against.MASS else ("height", aircraft.units.height)
-        )
-        value = condition.mass if self._against is Against.MASS else condition.pressure_altitude
+        quantity, unit = self._axis(aircraft)
+        value = {
+            Against.ALTITUDE: condition.pressure_altitude,
+            Against.MASS: condition.mass,
+            Against.ROTOR_SPEED: condition.rotor_speed,
+            Against.BANK: condition.bank,
+            Against.GUST: 0.0,
+        }[self._against]
         speed = None if condition.ias is None else float(units.from_si(condition.ias, "speed", aircraft.units.speed))
         label = aircraft.units.speed_label()
         words_here = "here" if speed is None else f"here, {units.show_number(speed)} {label}"
@@ -137,27 +169,31 @@ class StallBoundary(Exhibit):
         """A row at even steps of the axis; speeds floored to one unit, a refused cell says why."""
         label = aircraft.units.speed_label()
         turns = [c for c in curves.equivalent if not np.array_equal(c.ias, curves.vne, equal_nan=True)]
-        banks = tuple("Level" if c.bank_deg == 0.0 else f"{c.bank_deg:g}° bank" for c in turns)
-        header = (f"{curves.x_label}, {curves.x_unit}", f"VNE, {label}", *banks, "Onset band")
+        names = tuple(_name(c)[0].upper() + _name(c)[1:] for c in turns)
+        unit = units.SHOWN.get(curves.x_unit, curves.x_unit)
+        header = (f"{curves.x_label}, {unit}", f"VNE, {label}", *names, "Onset band")
         rows = []
         for index in np.linspace(0, curves.x.size - 1, _TABLE_ROWS).round().astype(int).tolist():
             cells = [_floored(curves.vne[index], "off the chart")]
             cells += [_floored(c.ias[index], _SHORT.get(c.reason[index], str(c.reason[index]))) for c in turns]
-            rows.append((units.show_number(curves.x[index]), *cells, _band(curves, float(curves.x[index]))))
+            x = float(curves.x[index])
+            rows.append(
+                (
+                    units.show_number(x, 0 if abs(x - round(x)) < 0.05 else 1),
+                    *cells,
+                    _band(curves, float(curves.x[index])),
+                )
+            )
         return Table(header, tuple(rows), f"{label}, power on, floored to 1 {curves.speed_unit}")
 
     def _notes(self, aircraft: Aircraft, curves: Boundary) -> tuple[str, ...]:
-        same = [
-            "level" if c.bank_deg == 0.0 else f"at {c.bank_deg:g}° bank"
-            for c in curves.equivalent
-            if np.array_equal(c.ias, curves.vne, equal_nan=True)
-        ]
+        same = [_name(c) for c in curves.equivalent if np.array_equal(c.ias, curves.vne, equal_nan=True)]
         notes = [
             "Black is the manual's. Blue is the manual's own chart read at the equivalent level flight. The grey band "
             "is the rotor model's absolute onset, softer than the chart; it is no speed to fly."
         ]
         if same:
-            notes.append(f"Nothing is taken off {' and '.join(same)}: the manual's VNE holds along the whole line.")
+            notes.append(f"Nothing is taken off in {' and '.join(same)}: the manual's VNE holds along the whole line.")
         if not np.all(np.isfinite(curves.onset_lower) & np.isfinite(curves.onset_upper)):
             notes.append(
                 "Where the band or its upper end is missing, that speed is outside the calibration or the model."
@@ -165,6 +201,12 @@ class StallBoundary(Exhibit):
         for reason in sorted({str(r) for curve in curves.equivalent for r in curve.reason if r}):
             notes.append(f"Where a blue line ends: {reason}.")
         return tuple(notes)
+
+
+def _name(curve: EquivalentCurve) -> str:
+    if curve.bank_deg is None:
+        return "equivalent VNE"
+    return "level flight" if curve.bank_deg == 0.0 else f"{curve.bank_deg:g}° bank"
 
 
 def _turn(condition: Condition) -> str:

@@ -183,12 +183,12 @@ NONE = np.full(X.size, np.nan)
 def curves(**more) -> Curves:
     ends = {"onset_x": X, "onset_lower": VNE + 5.0, "onset_central": VNE + 12.0, "onset_upper": VNE + 25.0}
     turn = np.where(X <= 6000.0, VNE - 8.0, np.nan)
-    settings = {"x": X, "manual": VNE, "turns": [(0.0, VNE), (30.0, turn)], **ends}
+    settings = {"x": X, "manual": VNE, "turns": [("level flight", VNE), ("30° bank", turn)], **ends}
     return Curves(**(settings | more))
 
 
 def boundary(shown: Curves | None = None, here: Here | None = None) -> BoundaryFigure:
-    made = BoundaryFigure(x_words="pressure altitude, ft", speed_words="KIAS", banks=2)
+    made = BoundaryFigure(x_words="pressure altitude, ft", speed_words="KIAS", turns=2)
     made.update(shown or curves(), here)
     return made
 
@@ -208,9 +208,22 @@ def test_a_line_that_ends_is_not_drawn_on():
     assert np.allclose(np.ravel(made._stops.x), 6000.0)
 
 
+def test_a_line_that_begins_inside_the_figure_has_a_bar_there_too():
+    late = np.where(X >= 3000.0, VNE - 8.0, np.nan)
+    made = boundary(curves(turns=[("level flight", VNE), ("30° bank", late)]))
+    assert np.allclose(np.ravel(made._stops.x), 3000.0)
+    assert "30° bank," in words(made.figure)
+
+
+def test_words_under_an_end_stay_inside_the_figure():
+    low = np.where(X <= 9500.0, VNE - 14.0, np.nan)
+    figure = boundary(curves(turns=[("level flight", VNE), ("30° bank", low)])).figure
+    assert place_of(figure, "chart ends")[1] < 330 - 30 - 44
+
+
 def test_a_gap_in_a_line_stays_a_gap():
     gap = np.where((X > 2000.0) & (X < 4000.0), np.nan, VNE - 8.0)
-    made = boundary(curves(turns=[(0.0, VNE), (30.0, gap)]))
+    made = boundary(curves(turns=[("level flight", VNE), ("30° bank", gap)]))
     drawn = [mark.x for mark in made._turns[1].marks if mark.x.size]
     assert [(run[0], run[-1]) for run in drawn] == [(0.0, 2000.0), (4000.0, 10_000.0)]
     assert all(mark in made.figure.marks for mark in made._turns[1].marks)
@@ -226,7 +239,7 @@ def test_a_band_without_an_upper_end_is_open_and_says_so():
 
 
 def test_a_level_line_that_is_not_the_manuals_stands_on_its_own():
-    made = boundary(curves(turns=[(0.0, VNE - 3.0), (30.0, NONE)]))
+    made = boundary(curves(turns=[("level flight", VNE - 3.0), ("30° bank", NONE)]))
     said = words(made.figure)
     assert "level flight" in said
     assert "and level flight" not in said
@@ -265,9 +278,9 @@ def test_a_figure_without_any_vne_is_refused():
 
 def test_banks_that_could_not_be_told_apart_are_refused():
     with pytest.raises(ValueError, match="told apart"):
-        BoundaryFigure(x_words="", speed_words="", banks=5)
-    with pytest.raises(ValueError, match="2 banks, not 1"):
-        boundary(curves(turns=[(0.0, VNE)]))
+        BoundaryFigure(x_words="", speed_words="", turns=5)
+    with pytest.raises(ValueError, match="2 computed lines, not 1"):
+        boundary(curves(turns=[("level flight", VNE)]))
 
 
 # --- chart and stairs ---

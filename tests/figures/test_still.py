@@ -83,9 +83,14 @@ def test_an_exhibit_without_words_is_refused(parts, name):
         still(Exhibit(dataclasses.replace(parts, **{name: " "})))
 
 
-def test_an_exhibit_without_a_picture_or_a_table_is_refused(parts):
-    with pytest.raises(ValueError, match="no drawing"):
-        still(Exhibit(dataclasses.replace(parts, drawings=())))
+def test_an_exhibit_may_be_a_table_alone(parts):
+    html = still(Exhibit(dataclasses.replace(parts, drawings=())))
+    assert "<svg" not in html
+    assert "<table" in html
+    assert "VNE 85 KIAS at 5,210 ft." in html
+
+
+def test_an_exhibit_without_a_table_is_refused(parts):
     with pytest.raises(ValueError, match="at least one row"):
         still(Exhibit(dataclasses.replace(parts, table=Table(("Hp ft",), ()))))
     with pytest.raises(ValueError, match="3 cells under 2"):

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import dataclasses
 import re
 
 import html5lib
@@ -9,6 +10,7 @@ import numpy as np
 import pytest
 
 from briefkit import units
+from briefkit.aircraft.load import load_aircraft
 from briefkit.envelope.condition import Condition
 from briefkit.envelope.equivalent import equivalent_vne
 from briefkit.envelope.solution import solve
@@ -17,6 +19,7 @@ from briefkit.figures.still import still
 from briefkit.widgets.disc import DiscMap
 from briefkit.widgets.exhibit import Exhibit
 from briefkit.widgets.flapping import Flapping
+from briefkit.widgets.live import LiveCondition
 from briefkit.widgets.stall_boundary import StallBoundary
 
 KINDS = [DiscMap, Flapping, StallBoundary]
@@ -110,11 +113,22 @@ def test_the_boundary_against_mass(fixed):
         fixed(StallBoundary, against="torque")
 
 
+@pytest.mark.slow
+@pytest.mark.parametrize(
+    ("against", "first", "last", "unit"),
+    [("rotor speed", "97", "102", "%"), ("bank", "0", "60", "°"), ("gust", "0", "1,968.5", "ft/min")],
+)
+def test_the_boundary_against_the_other_quantities(fixed, start, against, first, last, unit):
+    parts = fixed(StallBoundary, start.with_(bank="20 deg"), against=against).still_parts()
+    assert parts.table.header[0].endswith(f", {unit}")
+    assert (parts.table.rows[0][0], parts.table.rows[-1][0]) == (first, last)
+    assert ("gust" in parts.title) == (against == "gust")
+    assert ("Equivalent VNE" in parts.table.header) == (against == "bank")
+
+
 @pytest.mark.slow  # another aircraft, so another onset table
 def test_banks_above_the_manual_s_limit_do_not_exist(two_t, start, fixed):
     """page.md 3: nothing computed above a manual bank limit exists anywhere."""
-    import dataclasses
-
     limited = dataclasses.replace(
         two_t, limits=dataclasses.replace(two_t.limits, max_bank=dataclasses.replace(
             two_t.limits.max_mass, value=np.radians(20.0), text="20 deg")))  # fmt: skip
@@ -239,3 +253,44 @@ def test_kept_curves_are_those_of_a_fresh_exhibit(live, control, from_browser, f
 def test_the_base_class_draws_nothing_of_its_own(two_t, start):
     with pytest.raises(NotImplementedError):
         Exhibit(two_t, start)
+
+
+@pytest.mark.slow
+def test_a_chart_over_density_altitude_has_its_panel_and_its_boundary(two_t, start):
+    """The rows are density altitudes: the slider still shows pressure altitude, from below sea level."""
+    chart = dataclasses.replace(
+        two_t.vne, temperatures=(), speeds=two_t.vne.speeds[:, 2:3], density_altitude=True, printed=None, typed=()
+    )
+    cool = start.with_(pressure_altitude="3,000 ft", oat="10 degC")
+    live = LiveCondition(dataclasses.replace(two_t, vne=chart), cool)
+    slider = next(control.slider for control in live._controls if control.dial.field == "pressure_altitude")
+    assert slider.min < 0.0
+    assert slider.max == pytest.approx(10_000.0)
+    boundary = StallBoundary(live)
+    assert boundary.fault == ""
+    assert ("Pressure altitude", "3,000\u00a0ft") in boundary.still_parts().inputs
+    boundary.close()
+    live.close()
+
+
+@pytest.mark.slow
+@pytest.mark.parametrize("name", ["ormbrae-3f", "kvillarn-4h"])
+def test_the_other_invented_types_have_every_exhibit_in_their_own_units(examples, name):
+    aircraft = load_aircraft(examples / "aircraft" / f"{name}.toml")
+    metric = aircraft.units.speed == "km/h"
+    condition = Condition(
+        mass="2,000 kg" if metric else "3,000 kg",
+        pressure_altitude="2,000 m",
+        oat="10 degC",
+        ias="90 kt",
+        bank="20 deg",
+    )
+    live = LiveCondition(aircraft, condition)
+    for kind in KINDS:
+        exhibit = kind(live)
+        assert exhibit.fault == ""
+        html = still(exhibit)
+        assert ("km/h" in html) == metric
+        assert ("KIAS" in html) != metric
+        exhibit.close()
+    live.close()
