@@ -59,6 +59,8 @@ def test_usage_errors_are_2_and_say_what_is_meant(tmp_path):
         ["build"],
         ["build", tmp_path / "gone"],
         ["check", tmp_path / "gone"],
+        ["verify", tmp_path / "gone"],
+        ["compare", tmp_path / "gone", tmp_path],
         ["build", "--x"],
     ):
         done = briefkit(*arguments)
@@ -230,3 +232,103 @@ def test_live_needs_a_notebook_and_says_when_jupyterlab_is_missing(operator, tmp
     monkeypatch.setattr(lab, "find_spec", lambda _: None)
     done = CliRunner().invoke(app, ["live", str(operator / "vellmark-2t")])
     assert (done.exit_code, "install briefkit with its lab extra" in done.output) == (1, True)
+
+
+@pytest.fixture
+def company(operator):
+    """The operator as a real one: nothing says that it is invented."""
+    for path in (operator / "operation.toml", operator / "aircraft" / "pelquill-2t.toml"):
+        lines = path.read_text(encoding="utf-8").split("\n")
+        path.write_text("\n".join(line for line in lines if not line.startswith("invented")), encoding="utf-8")
+    return operator
+
+
+def run(*arguments):
+    done = CliRunner().invoke(app, list(map(str, arguments)))
+    assert done.exception is None or isinstance(done.exception, SystemExit), done.exception
+    assert "Traceback" not in done.output
+    return done
+
+
+def sign_all(folder):
+    for role, code in (("prepared", "NRC-17"), ("checked", "NRC-21"), ("approved", "NRC-02")):
+        done = run("sign", folder, "--role", role, "--code", code, "--date", "2030-03-05")
+        assert done.exit_code == 0, done.output
+
+
+def test_signing_by_hand_and_what_is_refused(company):
+    folder = company / "vellmark-2t"
+    done = run("sign", folder, "--role", "checked", "--code", "NRC-21", "--date", "2030-03-05")
+    assert (done.exit_code, "not prepared yet" in done.output) == (1, True)
+    sign_all(folder)
+    assert run("check", folder, "--date", "2030-06-01").exit_code == 0
+    assert run("sign", folder, "--role", "prepared", "--code", "NRC-17", "--date", "5 March").exit_code == 2
+    assert run("sign", folder, "--role", "prepared").exit_code == 2
+
+
+def test_check_has_exit_codes_and_json_for_scripts(company):
+    folder = company / "vellmark-2t"
+    done = run("check", folder, "--json", "--date", "2030-06-01")
+    said = json.loads(done.output)
+    assert (done.exit_code, said["stands_against_release"]) == (1, 1)
+    levels = {finding["level"] for finding in said["findings"]}
+    assert levels == {"blocks release", "note"}
+    assert {"level", "place", "text", "remedy"} == set(said["findings"][0])
+    sign_all(folder)
+    done = run("check", folder, "--json", "--date", "2030-06-01")
+    assert (done.exit_code, json.loads(done.output)["stands_against_release"]) == (0, 0)
+    assert run("check", folder, "--date", "2032-02-29").exit_code == 1
+    assert run("check", company / "operation.toml").exit_code == 2
+    (company / "empty").mkdir()
+    assert run("check", company / "empty").exit_code == 2
+
+
+def test_compare_lists_what_changed_and_exits_1_where_a_reason_is_missing(company, tmp_path):
+    old, new = company / "vellmark-2t", Path(shutil.copytree(company, tmp_path / "new")) / "vellmark-2t"
+    assert (run("compare", old, new).output, run("compare", old, new).exit_code) == ("nothing changed\n", 0)
+    file = new.parent / "aircraft" / "pelquill-2t.toml"
+    file.write_text(file.read_text(encoding="utf-8").replace('max_mass = "2,006 lb"', 'max_mass = "2,050 lb"'))
+    done = run("compare", old, new)
+    line = "limits, max_mass: 2,006 lb -> 2,050 lb: less conservative, no reason given"
+    assert (done.exit_code, line in done.output) == (1, True)
+    brief = new / "brief.toml"
+    # The chart has no mass axis, so a heavier maximum makes every turn look lighter: those need the reason too.
+    relaxed = [one["name"] for one in json.loads(run("compare", old, new, "--json").output) if one["less_conservative"]]
+    assert any(name.startswith("turn at") for name in relaxed)
+    figures = json.dumps(["limits", *(name for name in relaxed if not name.startswith("limits"))])
+    reason = f'text = "First issue"\nfigures = {figures}\nreason = "supplement 4"'
+    brief.write_text(brief.read_text(encoding="utf-8").replace('text = "First issue"', reason))
+    done = run("compare", old, new)
+    assert (done.exit_code, "less conservative (supplement 4)" in done.output) == (0, True)
+    found = {one["name"]: one for one in json.loads(run("compare", old, new, "--json").output)}["limits, max_mass"]
+    assert (found["less_conservative"], found["reason"]) == (True, "supplement 4")
+    (tmp_path / "x.zip").write_bytes(b"none")
+    assert run("compare", tmp_path / "x.zip", new).exit_code == 1
+
+
+def test_verify_without_a_register_is_a_sentence(tmp_path, monkeypatch):
+    monkeypatch.chdir(tmp_path)
+    page = tmp_path / "page.html"
+    page.write_text("<title>NB-2T-001 rev 0: x</title>")
+    done = run("verify", page)
+    assert (done.exit_code, "name it with --register" in done.output) == (1, True)
+    (tmp_path / "register.toml").write_text("")
+    done = run("verify", page, "--json")
+    assert (done.exit_code, json.loads(done.output)[0]["state"]) == (1, "not in this register")
+
+
+@pytest.mark.slow
+def test_issue_and_verify(company, tmp_path):
+    folder, out = company / "vellmark-2t", tmp_path / "out"
+    done = run("issue", folder, "--out", out, "--date", "2030-03-20")
+    assert (done.exit_code, "DRAFT" in done.output) == (1, True)
+    sign_all(folder)
+    done = run("issue", folder, "--out", out, "--date", "2030-03-20")
+    assert done.exit_code == 0, done.output
+    page = out / "NB-2T-001.html"
+    assert run("verify", page, "--register", company, "--date", "2030-06-01").exit_code == 0
+    done = run("verify", page, "--register", company, "--date", "2032-02-29")
+    assert (done.exit_code, f"{page}: expired: NB-2T-001 rev 0" in done.output) == (1, True)
+    page.write_text(page.read_text(encoding="utf-8").replace("87", "97"), encoding="utf-8")
+    done = run("verify", page, "--register", company, "--date", "2030-06-01")
+    assert (done.exit_code, "altered" in done.output) == (1, True)
