@@ -126,14 +126,15 @@ def _reduction(aircraft: Aircraft, fleet: FleetEntry, condition: Condition, answ
     reduction = units.round_up(answer.below_vne, aircraft.units.speed_step)
     if answer.set_by is SetBy.MANUAL_VNE or reduction <= 0.0:
         text = "Blade stall asks for nothing below the manual’s VNE here. VNE still limits."
-        return Computed(Says.MANUAL_VNE, text + _own_turn(aircraft, condition, 0.0), 0.0, max(answer.below_vne, 0.0))
+        text = _beside_own(aircraft, condition, 0.0, text)
+        return Computed(Says.MANUAL_VNE, text, 0.0, max(answer.below_vne, 0.0))
     how = _how(aircraft, condition, answer)
     if under := _under_floor(aircraft, fleet, answer, reduction):
         text = f"The answer is under {under}: {_not_this(condition)}."
         return Computed(Says.NO_TURN, text, exact=answer.below_vne, how=how)
     before = " before the turn" if condition.load_factor > 1.0 else ""
     text = f"Slow to VNE less {words.knots(aircraft, reduction)} or more{before}." + _not_briefed(fleet, condition)
-    text += _own_turn(aircraft, condition, reduction)
+    text = _beside_own(aircraft, condition, reduction, text)
     return Computed(Says.REDUCTION, text, reduction, answer.below_vne, how=how)
 
 
@@ -155,7 +156,7 @@ def _covered(aircraft: Aircraft, fleet: FleetEntry, condition: Condition, covere
         return Computed(Says.NO_TURN, text, exact=answer.below_vne, how=how)
     slow = f"slow to VNE less {words.knots(aircraft, reduction)} or more before it" if reduction else "VNE still limits"
     text = f"Beyond the manual’s chart at {words.degrees(condition.bank)}. At most {bank}°, and {slow}."
-    text += _not_briefed(fleet, at) + _own_turn(aircraft, at, reduction)
+    text = _beside_own(aircraft, at, reduction, text + _not_briefed(fleet, at))
     return Computed(Says.COVERED_BANK, text, reduction, answer.below_vne, bank, how)
 
 
@@ -179,16 +180,16 @@ def _not_briefed(fleet: FleetEntry, condition: Condition) -> str:
     return f" Over {words.degrees(brief.value)} of bank is not briefed."
 
 
-def _own_turn(aircraft: Aircraft, condition: Condition, reduction: float) -> str:
-    """What the manual itself says of this turn; where it takes off as much or more, that it holds."""
+def _beside_own(aircraft: Aircraft, condition: Condition, reduction: float, text: str) -> str:
+    """The computed sentence beside what the manual itself says of this turn; the larger of the two comes first."""
     said = [speed for speed in aircraft.speeds if _applies(speed, condition)]
     if not said:
-        return ""
+        return text
     texts = "; ".join(f"{speed.text} ({speed.source})" for speed in said)
     largest = max((speed.less_than_vne or 0.0) for speed in said)
     if units.from_si(largest, "speed", aircraft.units.speed) >= max(reduction, 1e-9):
-        return f" The manual’s own holds: {texts}."
-    return f" The manual’s own: {texts}. The slower of the two holds."
+        return f"The manual’s own holds: {texts}. Computed alone: {text[:1].lower()}{text[1:]}"
+    return f"{text} The manual’s own: {texts}. The slower of the two holds."
 
 
 def _applies(speed: ManualSpeed, condition: Condition) -> bool:

@@ -189,7 +189,8 @@ def _case(document: Document, name: str, entry: _CaseTable) -> Case | None:
     if at_start is None:
         return None
     made = _condition(document, f"{name}.change", _with(typed, changes))
-    if made is None or len(document.faults) > before or entry.says is None:
+    texts = (entry.name, entry.prompt, entry.teaching, entry.expected, entry.says)
+    if made is None or len(document.faults) > before or None in texts:
         return None
     if made == at_start:
         document.fault(f"{name}.change.{changed}", changes[changed], "another value than at the start")
@@ -204,7 +205,7 @@ def _case(document: Document, name: str, entry: _CaseTable) -> Case | None:
         prompt=needed(entry.prompt),
         teaching=needed(entry.teaching),
         expected=needed(entry.expected),
-        says=Says(entry.says),
+        says=Says(needed(entry.says)),
         source=entry.source,
     )
 

@@ -161,15 +161,19 @@ def _not_stall(aircraft: Aircraft, fleet: FleetEntry, areas: list[WorkArea], day
     Level at 100 % it does so by definition: true of every type, on any day it may fly.
     """
     bank = {"bank": fleet.brief_bank.text}
-    found = [
-        (area, cold)
-        for area, cold in _cold_days(aircraft, fleet, areas)
-        if (said := _ask(aircraft, fleet, cold | bank)) is not None and said.computed.says is Says.MANUAL_VNE
-    ]
-    freezing = [one for one in found if _condition(one[1]).oat <= units.ZERO_CELSIUS]
-    for area, cold in (freezing or found)[:1]:
-        name = f"{area.name}: {'cold, and ' if freezing else ''}stall is not what decides"
-        return _no_reduction(aircraft, name, cold, bank)
+    mild: _Draft | None = None
+    for area, cold in _cold_days(aircraft, fleet, areas):
+        freezing = _condition(cold).oat <= units.ZERO_CELSIUS
+        if mild is not None and not freezing:
+            continue
+        said = _ask(aircraft, fleet, cold | bank)
+        if said is not None and said.computed.says is Says.MANUAL_VNE:
+            name = f"{area.name}: {'cold, and ' if freezing else ''}stall is not what decides"
+            mild = _no_reduction(aircraft, name, cold, bank)
+            if freezing:
+                return mild
+    if mild is not None:
+        return mild
     cooler = day | {"oat": _temperature(_condition(day).oat - 10.0)}
     start, change = (cooler, {"oat": day["oat"]}) if _manual_permits(aircraft, fleet, cooler) else (
         day | bank, {"bank": "0 deg"})  # fmt: skip

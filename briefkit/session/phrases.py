@@ -40,11 +40,15 @@ def value_text(key: str, typed: str) -> str:
 
 def condition_text(typed: Mapping[str, str]) -> str:
     """A condition in one line: "2,006 lb, Hp 8,000 ft, +30 °C, level, rotor 100 %"."""
-    parts = [value_text(key, typed[key]) for key in _FRAMES if key in typed]
-    if "bank" not in typed and "load_factor" not in typed:
-        parts.append("level")
-    if "rotor_speed" not in typed:
-        parts.append("rotor 100 %")
+    level = "bank" not in typed and "load_factor" not in typed
+    parts = []
+    for key in _FRAMES:
+        if key in typed:
+            parts.append(value_text(key, typed[key]))
+        elif key == "bank" and level:
+            parts.append("level")
+        elif key == "rotor_speed":
+            parts.append("rotor 100 %")
     return ", ".join(parts)
 
 
