@@ -120,3 +120,16 @@ def test_rows_of_density_altitude_stand_lower_on_a_warm_day_and_stay_inside_the_
     assert warm[0] == pytest.approx(-1000.0)
     plain = chart([60.0, 30.0], heights=(0.0, 3000.0))
     assert plain.node_heights(303.15).tolist() == [0.0, 3000.0]
+
+
+def test_a_point_a_hair_inside_a_cell_takes_its_lowest_corner_and_a_node_is_a_node() -> None:
+    made = chart([60.0, 50.0, 40.0], ReadingRule.NEXT_LOWER, heights=(0.0, 1000.0, 2000.0))
+    assert made.indicated(np.array([1.0, 999.0]), 288.0, 900.0).tolist() == [50.0, 50.0]
+    # 1,000 m typed in feet and converted back differs in the last digit: it is still 1,000 m
+    assert made.indicated(np.array([1000.0 * (1 - 1e-12), 1000.0 * (1 + 1e-12)]), 288.0, 900.0).tolist() == [50.0, 50.0]
+
+
+def test_a_mixed_chart_takes_the_lower_line_however_near_the_other() -> None:
+    cells = [[60.0, 58.0], [40.0, 30.0]]
+    made = chart(cells, ReadingRule.NEXT_LOWER, temperatures=(273.0, 293.0), straight=(Axis.HEIGHT,))
+    assert made.indicated(1000.0, 273.2, 900.0) == 30.0

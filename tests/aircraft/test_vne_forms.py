@@ -317,3 +317,21 @@ def test_every_unit_a_manual_may_use(file_3f):
     assert aircraft.units.speed == "mph"
     speed = aircraft.vne.indicated(1000.0, OAT, 2000.0)
     assert float(speed) == pytest.approx(269 * 0.44704, rel=2e-4)
+
+
+def test_a_density_altitude_slope_runs_to_the_hottest_day_at_the_highest_height(file_2t):
+    dense = power_on('base = "112 kt"\nless = "3 kt per 1,000 ft density altitude above 3,000 ft"')
+    vne = file_2t.table("vne.power_on", dense).load().vne
+    hottest = 15.0 - 0.0065 * 10_000 * FOOT + 35.0 + ZERO_CELSIUS  # ISA+35 at 10,000 ft
+    at = float(density_altitude_of(np.array(10_000 * FOOT), np.array(hottest))) / FOOT
+    assert at > 13_000
+    assert kt(vne.indicated(10_000 * FOOT, hottest, ANY)) == [
+        pytest.approx(112.0 - 3.0 * (at - 3000.0) / 1000.0, abs=0.01)
+    ]
+
+
+def test_a_temperature_colder_than_any_air_is_named_at_the_header(file_2t):
+    fault = file_2t.replaced(("-20     0    +20    +40     kt", "-200     0    +20    +40     kt")).fault()
+    assert fault.key == "vne.power_on.chart, header"
+    assert fault.read == "-200 degC"
+    assert "kt indicated" in file_2t.text.split("\n")[fault.line - 1]
