@@ -29,6 +29,11 @@ class _Picture:
 
 def stairs(aircraft: Aircraft, table: ReductionTable) -> str:
     """The reduction against mass as stairs, the far side hatched: an HTML fragment."""
+    return still(_Picture(stairs_parts(aircraft, table)))
+
+
+def stairs_parts(aircraft: Aircraft, table: ReductionTable) -> StillParts:
+    """The same as parts, for a live exhibit too."""
     unit, kind = aircraft.units.mass, aircraft.units.speed_label()
     rows = table.rows[::-1]
     edges = [aircraft.limits.min_mass.value, *(row.mass.value for row in rows)]
@@ -52,9 +57,7 @@ def stairs(aircraft: Aircraft, table: ReductionTable) -> str:
         "The same as a table",
     )
     caption = f"Slow to the left of the stairs before a turn of up to {bank} of bank. Hatched: not briefed."
-    return still(
-        _Picture(StillParts("Section 2 as stairs", caption, alt, (), (Drawing(figure, caption, alt),), listed))
-    )
+    return StillParts("Section 2 as stairs", caption, alt, (), (Drawing(figure, caption, alt),), listed)
 
 
 def row_on_chart(aircraft: Aircraft, row: ReductionRow) -> str:
@@ -66,7 +69,7 @@ def row_on_chart(aircraft: Aircraft, row: ReductionRow) -> str:
         raise ValueError("only a row with an answer has a place on the chart")
     chart, shown, at, point = aircraft.vne, aircraft.units, row.at, row.answer.chart_point
     hand = work_by_hand(aircraft, at, row.answer)
-    heights, columns, names = _chart_lines(aircraft, at.mass)
+    heights, columns, names = chart_lines(aircraft, at.mass)
     kind = shown.speed_label()
     x_words = f"{'Density' if chart.density_altitude else 'Pressure'} altitude, {shown.height}"
     figure = ChartFigure(
@@ -79,8 +82,8 @@ def row_on_chart(aircraft: Aircraft, row: ReductionRow) -> str:
     loaded = words.height(aircraft, point.pressure_altitude, 10.0)
     here_words = (f"{row.mass.text}, {row.bank_deg}°", f"VNE {words.number(hand.vne_here)} here")
     there_words = (f"as loaded at {loaded}", f"{words.number(point.vne)} on the chart")
-    here = Mark(_along(aircraft, at.pressure_altitude, at.oat), hand.vne_here, here_words)
-    there = Mark(_along(aircraft, point.pressure_altitude, point.temperature), point.vne, there_words)
+    here = Mark(along(aircraft, at.pressure_altitude, at.oat), hand.vne_here, here_words)
+    there = Mark(along(aircraft, point.pressure_altitude, point.temperature), point.vne, there_words)
     figure.update(here, there)
     alt = (
         f"{row.mass.text} at {words.place(aircraft, at)} with {row.bank_deg}° of bank is as loaded as level flight at "
@@ -106,7 +109,7 @@ def row_on_chart(aircraft: Aircraft, row: ReductionRow) -> str:
     return still(_Picture(parts))
 
 
-def _chart_lines(aircraft: Aircraft, mass: float) -> tuple[Floats, Floats, list[str]]:
+def chart_lines(aircraft: Aircraft, mass: float) -> tuple[Floats, Floats, list[str]]:
     """Heights [m] (n,) as the chart has them, speeds [m/s] (n, m) and the names of the columns.
 
     A third variable is held: at the first mass not lighter than `mass`, at the rotor speed nearest 100 %.
@@ -127,7 +130,7 @@ def _chart_lines(aircraft: Aircraft, mass: float) -> tuple[Floats, Floats, list[
     return heights, chart.speeds[first:, 0, 0, :], names
 
 
-def _along(aircraft: Aircraft, altitude: float, oat: float) -> float:
+def along(aircraft: Aircraft, altitude: float, oat: float) -> float:
     """A place along the chart's heights, in its unit."""
     height = altitude
     if aircraft.vne.density_altitude:

@@ -9,6 +9,7 @@ from typing import Final
 from briefkit import units
 from briefkit.aircraft.model import Aircraft
 from briefkit.envelope.condition import Condition
+from briefkit.errors import BeyondChart, Refusal
 
 _TIE: Final = "\u00a0"  # a number and its unit stay on one line
 
@@ -96,3 +97,18 @@ def level_point(aircraft: Aircraft, mass: float, pressure_altitude: float, tempe
 def angle(degrees: float) -> str:
     """An angle to a tenth of a degree, with a true minus sign."""
     return f"{units.show_number(degrees, 1)}°"
+
+
+def turn(condition: Condition) -> str:
+    """What takes a condition away from level flight at 100 %: "30° bank, rotor at 97 %"; nothing where it is that."""
+    parts = []
+    if condition.load_factor > 1.0 + 1e-12:
+        parts.append(f"{units.show_number(math.degrees(condition.bank))}° bank")
+    if abs(condition.rotor_speed - 1.0) > 1e-12:
+        parts.append(f"rotor at {100.0 * condition.rotor_speed:.4g} %")
+    return ", ".join(parts)
+
+
+def why(refusal: Refusal) -> str:
+    """A refusal in words. Beyond the chart the covered bank is left out: no bank without its own reduction."""
+    return str(refusal.reason) if isinstance(refusal, BeyondChart) else str(refusal)
