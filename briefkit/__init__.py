@@ -11,14 +11,22 @@ __version__ = "0.1.0"
 
 __all__ = [
     "Condition",
+    "CueCard",
     "DiscMap",
+    "EquivalentChart",
     "Flapping",
     "LiveCondition",
+    "Reductions",
+    "RulesOfThumb",
+    "SetByTable",
     "StallBoundary",
+    "ToPaper",
+    "WhatIf",
     "covered_bank",
     "equivalent_vne",
     "equivalent_vnes",
     "load_aircraft",
+    "load_deck",
     "load_operation",
     "onset_band",
     "solve",
@@ -34,10 +42,18 @@ if TYPE_CHECKING:
     from briefkit.envelope.solution import solve, solve_many
     from briefkit.envelope.spread import onset_band
     from briefkit.figures.still import still
+    from briefkit.session.deck import load_deck
+    from briefkit.widgets.cue_card import CueCard
     from briefkit.widgets.disc import DiscMap
+    from briefkit.widgets.equivalent_chart import EquivalentChart
     from briefkit.widgets.flapping import Flapping
     from briefkit.widgets.live import LiveCondition
+    from briefkit.widgets.paper import ToPaper
+    from briefkit.widgets.reductions import Reductions
+    from briefkit.widgets.rules_of_thumb import RulesOfThumb
+    from briefkit.widgets.set_by import SetByTable
     from briefkit.widgets.stall_boundary import StallBoundary
+    from briefkit.widgets.what_if import WhatIf
 else:
     _HOME = {
         "load_aircraft": "briefkit.aircraft.load",
@@ -54,6 +70,14 @@ else:
         "Flapping": "briefkit.widgets.flapping",
         "LiveCondition": "briefkit.widgets.live",
         "StallBoundary": "briefkit.widgets.stall_boundary",
+        "load_deck": "briefkit.session.deck",
+        "CueCard": "briefkit.widgets.cue_card",
+        "EquivalentChart": "briefkit.widgets.equivalent_chart",
+        "Reductions": "briefkit.widgets.reductions",
+        "RulesOfThumb": "briefkit.widgets.rules_of_thumb",
+        "SetByTable": "briefkit.widgets.set_by",
+        "ToPaper": "briefkit.widgets.paper",
+        "WhatIf": "briefkit.widgets.what_if",
     }
 
     def __getattr__(name: str) -> object:

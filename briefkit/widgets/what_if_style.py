@@ -1,0 +1,49 @@
+"""How the what-if panel looks to a room: large type, black and one blue, nothing that looks like a go or no-go."""
+
+from __future__ import annotations
+
+from typing import Final
+
+from briefkit.figures import theme
+
+WHAT_IF_STYLE: Final = (
+    "<style>"
+    ".briefkit-what-if{width:100%;box-sizing:border-box;padding:.8em 1em}"
+    ".briefkit-what-if,.briefkit-what-if .widget-html-content,.briefkit-what-if .jupyter-widgets,"
+    ".briefkit-what-if .widget-label,.briefkit-what-if input[type=text]"
+    "{font-size:clamp(20px,1.9vw,40px);line-height:1.35}"
+    ".briefkit-what-if .widget-html,.briefkit-what-if .widget-html-content"
+    "{height:auto;width:100%;max-width:100%;white-space:normal;overflow-wrap:anywhere}"
+    ".briefkit-what-if h2{font-size:1em;font-weight:600;margin:0}"
+    ".briefkit-what-if h3{font-size:.8em;font-weight:600;margin:.7em 0 0}"
+    ".briefkit-what-if p{margin:.15em 0;max-width:46em}"
+    ".briefkit-what-if .large{font-size:1.35em;font-weight:600;line-height:1.25}"
+    f".briefkit-what-if .computed{{color:{theme.COMPUTED}}}"
+    f".briefkit-what-if .small{{font-size:.7em;color:{theme.GREY}}}"
+    ".briefkit-what-if .widget-text{height:auto;width:auto;flex:1 1 15em;min-width:0;margin:2px 1em 2px 0}"
+    ".briefkit-what-if .widget-text .widget-label{width:auto;min-width:7em;height:auto}"
+    f".briefkit-what-if input[type=text]{{height:auto;padding:.15em .4em;min-width:0;color:{theme.INK};"
+    f"background:{theme.PAPER};border:1px solid {theme.GREY}}}"
+    ".briefkit-what-if .jupyter-button{font-size:clamp(16px,1.3vw,28px);height:auto;line-height:1.5;width:auto;"
+    f"padding:.1em .8em;margin:3px 8px 3px 0;color:{theme.INK};background:{theme.PAPER};"
+    f"border:1px solid {theme.GREY}}}"
+    f".briefkit-what-if .jupyter-button:disabled{{color:{theme.GREY};border-color:{theme.RULE};opacity:1}}"
+    f".briefkit-what-if .jupyter-button:focus,.briefkit-what-if input:focus{{outline:4px solid {theme.INK};"
+    "outline-offset:1px}"
+    # Filled or blank it covers menus, code and cell numbers. JupyterLab confines what a cell shows to the cell
+    # (contain, and a transform in long notebooks); the confinement is lifted only while the panel fills the window.
+    ".briefkit-fill,.briefkit-blank{position:fixed!important;inset:0;z-index:100000;overflow:auto;margin:0;"
+    "max-width:none;width:100vw!important;height:100vh!important}"
+    ":is(div,main,section):has(.briefkit-fill),:is(div,main,section):has(.briefkit-blank)"
+    "{contain:none!important;transform:none!important;filter:none!important;will-change:auto!important;"
+    "content-visibility:visible!important;z-index:auto}"
+    ":is(.jp-LabShell,#main,#jp-main-content-panel) :has(.briefkit-fill),"
+    ":is(.jp-LabShell,#main,#jp-main-content-panel) :has(.briefkit-blank){z-index:100000;overflow:visible!important}"
+    ".briefkit-blank{background:#000!important}"
+    ".briefkit-blank .screen,.briefkit-blank .moves .jupyter-button:not(.blanker){display:none!important}"
+    f".briefkit-blank .jupyter-widgets,.briefkit-blank .widget-label{{color:#8a8a8a}}"
+    ".briefkit-blank input[type=text],.briefkit-blank .jupyter-button"
+    "{background:#000!important;color:#8a8a8a;border-color:#3a3a3a}"
+    ".briefkit-blank input:focus,.briefkit-blank .jupyter-button:focus{outline:1px solid #8a8a8a}"
+    "</style>"
+)
