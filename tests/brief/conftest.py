@@ -61,10 +61,12 @@ STAFF = {"prepared": "NRC-17", "checked": "NRC-21", "approved": "NRC-02"}
 
 @pytest.fixture
 def complete(operator: Path) -> Path:
-    """The operator's folder as a real one: nothing says that it is invented. Nobody has signed."""
+    """The operator's folder as a real one: nothing says that it is invented. No register yet, nobody has signed."""
+    (operator / "register.toml").unlink()
     for path in (operator / "operation.toml", operator / "aircraft" / "pelquill-2t.toml"):
         lines = path.read_text(encoding="utf-8").split("\n")
-        path.write_text("\n".join(line for line in lines if not line.startswith("invented")), encoding="utf-8")
+        kept = [line for line in lines if not line.startswith(("invented", "approvers", "limit_approvers"))]
+        path.write_text("\n".join(kept), encoding="utf-8")
     return operator
 
 

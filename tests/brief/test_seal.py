@@ -42,7 +42,7 @@ EDITS = {
     "aircraft/pelquill-2t.toml": lambda f, e: e(f.parent / "aircraft" / "pelquill-2t.toml", ("2,006 lb", "2,007 lb")),
     "brief.ipynb": lambda f, e: in_notebook(f, lambda n: n["cells"][0].update(source="Other words")),
     "cases.csv (new)": lambda f, e: (f / "cases.csv").write_text("1,2\n"),
-    "deck.toml (new)": lambda f, e: (f / "deck.toml").write_text("[deck]\n"),
+    "notes.toml (new)": lambda f, e: (f / "notes.toml").write_text("[deck]\n"),
     "helpers/maths.py (new)": lambda f, e: (
         (f / "helpers").mkdir(),
         (f / "helpers" / "maths.py").write_text("x = 1\n"),
