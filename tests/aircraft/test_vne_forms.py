@@ -4,8 +4,13 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
+from hypothesis import HealthCheck, given, settings
+from hypothesis import strategies as st
 
 from briefkit.aircraft.chart import Axis, ReadingRule, density_altitude_of
+from briefkit.aircraft.line_text import read_lines
+from briefkit.aircraft.slope_text import read_slope
+from briefkit.reading.document import Document
 from briefkit.units import FOOT, KNOT, POUND, ZERO_CELSIUS
 
 OAT = 15.0 + ZERO_CELSIUS
@@ -335,3 +340,33 @@ def test_a_temperature_colder_than_any_air_is_named_at_the_header(file_2t):
     assert fault.key == "vne.power_on.chart, header"
     assert fault.read == "-200 degC"
     assert "kt indicated" in file_2t.text.split("\n")[fault.line - 1]
+
+
+ANYTHING = st.text(alphabet=st.sampled_from("0129.,;:-+ \t\nkftdegCindicatedlbDA%at≤'\\ \u2212"), max_size=60)
+OPEN = settings(max_examples=80, deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture])
+
+
+@OPEN
+@given(text=ANYTHING, at=st.integers(0, len(LINES)))
+def test_any_text_among_lines_is_a_chart_or_has_a_fault(tmp_path, text, at):
+    block = LINES[:at] + text.replace("'''", "") + LINES[at:]
+    path = tmp_path / "lines.toml"
+    path.write_text(f"[vne.power_on]\nlines = '''\n{block}\n'''\n", encoding="utf-8")
+    document = Document(path)
+    read = read_lines(document, "vne.power_on.lines", document.data["vne"]["power_on"]["lines"])
+    assert (read is None) == bool(document.faults)
+    if read is not None:
+        assert not np.any(read.speeds <= 0.0)
+        assert all(np.all(np.diff(axis.values) > 0.0) for axis in read.axes)
+
+
+@OPEN
+@given(text=ANYTHING, at=st.integers(0, 33))
+def test_any_text_in_a_slope_is_a_slope_or_a_fault(tmp_path, text, at):
+    path = tmp_path / "slope.toml"
+    path.write_text("[vne.power_on]\n", encoding="utf-8")
+    document = Document(path)
+    slope = read_slope(document, "vne.power_on.less", "3 kt per 1,000 ft above 3,000 ft"[:at] + text)
+    assert (slope is None) == bool(document.faults)
+    if slope is not None:
+        assert slope.rate > 0.0
