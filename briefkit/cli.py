@@ -52,6 +52,10 @@ def top(version: Annotated[bool, typer.Option("--version", help="Print the versi
 def build_command(
     paths: Paths,
     out: Annotated[Path, typer.Option("--out", file_okay=False, help="Folder for the pages.")] = Path("out"),
+    pdf: Annotated[
+        bool, typer.Option("--pdf", help="Print each page to PDF too, where a Chromium is installed.")
+    ] = False,
+    paper: Annotated[str, typer.Option(help="Paper of the PDF: A4, A5 or Letter.")] = "A4",
 ) -> None:
     """Make the page of every brief.
 
@@ -75,6 +79,11 @@ def build_command(
                 progress.advance(bar)
 
             results = build(paths, out, tell, deck_pages)
+        if pdf:
+            from briefkit.brief.pdf import print_pdfs
+
+            for file in print_pdfs(results, paper):
+                typer.echo(file)
         failed = sum(bool(result.error) for result in results)
         if failed:
             typer.echo(

@@ -85,10 +85,16 @@ def first_sheet(brief: Brief, table: ReductionTable) -> CrewPage:
 
 def _analysis(aircraft: Aircraft, table: ReductionTable) -> tuple[Section, ...]:
     """Sheet 3 before the author's own analysis: the method, each row, the pictures, the chart, the assumptions."""
-    row = derivation.worked_row(table)
-    on_chart = (Section("One row on the chart", figure=pictures.row_on_chart(aircraft, row)),) if row else ()
+    row, read = derivation.worked_row(table), (aircraft.vne.source, aircraft.calibration.source)
+    on_chart = (
+        (Section("One row on the chart", figure=pictures.row_on_chart(aircraft, row), sources=read),) if row else ()
+    )
     taken_off = any(one.kind is not RowKind.VNE_LIMITS for one in table.rows)
-    stairs = (Section("The reduction as a picture", figure=pictures.stairs(aircraft, table)),) if taken_off else ()
+    stairs = (
+        (Section("The reduction as a picture", figure=pictures.stairs(aircraft, table), sources=read),)
+        if taken_off
+        else ()
+    )
     return (
         derivation.method(aircraft, table),
         *on_chart,

@@ -156,6 +156,7 @@ def rows_section(aircraft: Aircraft, table: ReductionTable) -> Section:
         heading,
         grid=Grid(header, tuple(rows), "What sets each row of section 2", Ink.COMPUTED, numbers=False),
         after=after,
+        sources=(aircraft.vne.source, aircraft.calibration.source),
     )
 
 

@@ -18,7 +18,7 @@ from briefkit.brief.crew_page import crew_page
 from briefkit.brief.harden import harden
 from briefkit.brief.identity import BRIEF_FILE, NOTEBOOK, Brief, Identity, load_brief
 from briefkit.brief.pages import CrewPage, Section, render
-from briefkit.brief.prose import set_words
+from briefkit.brief.prose import in_order, set_words
 from briefkit.brief.release import standing
 from briefkit.brief.run import Ran, Words, read_notebook, run_node
 from briefkit.brief.seal import seal_of
@@ -70,7 +70,8 @@ def compose(page: CrewPage, ran: Ran, folder: Path) -> str:
     Raises:
         BuildError: what the notebook wrote or shows cannot be put on paper; see `set_words` and `harden`.
     """
-    blocks = (set_words(block, folder) if isinstance(block, Words) else block.html for block in ran.blocks)
+    words = iter(in_order(set_words(block, folder) for block in ran.blocks if isinstance(block, Words)))
+    blocks = (next(words) if isinstance(block, Words) else block.html for block in ran.blocks)
     return harden(link(render(page, tuple(blocks)), page.sources))
 
 

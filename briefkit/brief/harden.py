@@ -30,6 +30,7 @@ _HTML: Final = _VOID | _names(
     b i s u small sub sup abbr code pre kbd samp var cite q dfn del ins time blockquote ul ol li dl dt dd table caption
     colgroup thead tbody tfoot tr th td figure figcaption details summary"""
 )
+_FRAME: Final = _names("html head title body meta")  # of the page itself, once and in their places
 _SVG: Final = _names(
     """svg g path line rect circle ellipse polygon polyline text tspan title desc defs clippath pattern marker image
     lineargradient radialgradient stop"""
@@ -121,7 +122,8 @@ class _Cleaner(HTMLParser):
         policy = f"default-src 'none'; style-src 'sha256-{digest}'; img-src data:; base-uri 'none'; form-action 'none'"
         head = f'\n<meta http-equiv="Content-Security-Policy" content="{policy}">\n'
         body = "".join(head if part == self._HEAD_MARK else part for part in self._out)
-        whole = body.replace("\0style", style).strip()
+        ends = "".join(f"</{tag}>" for tag in reversed(self._open) if tag != "style")
+        whole = body.replace("\0style", style).strip() + ends
         return "<!DOCTYPE html>\n" + _NO_LETTER.sub("\ufffd", whole) + "\n"
 
     def handle_starttag(self, tag: str, attrs: list[tuple[str, str | None]]) -> None:
@@ -147,6 +149,8 @@ class _Cleaner(HTMLParser):
             return
         if tag not in (_SVG if drawing or tag == "svg" else _HTML):
             return
+        if tag in _FRAME and "body" in self._open and not drawing:
+            return
         if tag == "meta" and any(name == "http-equiv" for name, _ in attrs):
             return
         kept = self._attributes(tag, attrs, drawing=drawing or tag == "svg")
@@ -164,7 +168,7 @@ class _Cleaner(HTMLParser):
             if tag == self._dropping[0]:
                 self._dropping.pop()
             return
-        if tag not in self._open:
+        if tag not in self._open or tag in ("body", "html"):  # a page ends where it ends: see page()
             return
         while self._open:  # close what was left open inside, so that the page stays well nested
             inner = self._open.pop()

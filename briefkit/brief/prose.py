@@ -8,6 +8,7 @@ from __future__ import annotations
 import base64
 import mimetypes
 import re
+from collections.abc import Iterable
 from pathlib import Path
 from typing import Final
 from urllib.parse import unquote
@@ -20,6 +21,8 @@ from briefkit.errors import BuildError
 
 _PICTURES: Final = ("image/png", "image/jpeg", "image/gif", "image/webp")
 _DEEPEST: Final = 6
+_HEADING: Final = re.compile(r"<h([1-6])>")
+_HEADING_TAG: Final = re.compile(r"</?h([1-6])>")
 _BELOW: Final = 2  # the page has h1 and its sheets h2, so an author's first level is h3
 
 
@@ -44,6 +47,24 @@ def set_words(words: Words, folder: Path) -> str:
         heading.name = f"h{min(int(heading.name[1]) + _BELOW, _DEEPEST)}"
         heading.attrs.pop("id", None)  # two cells may carry the same heading; ids on a page are single
     return f'<div class="words">{fragment}</div>\n'
+
+
+def in_order(fragments: Iterable[str]) -> tuple[str, ...]:
+    """The author's fragments with headings that never skip a level, whatever level the author began with.
+
+    The highest level used comes next below the page's own; a deeper one is at most one below the heading before it.
+    """
+    parts = tuple(fragments)
+    levels = [int(level) for part in parts for level in _HEADING.findall(part)]
+    shift, above, last = min(levels, default=0), _BELOW + 1, _BELOW
+
+    def next_level(match: re.Match[str]) -> str:
+        nonlocal last
+        if match[0].startswith("<h"):
+            last = min(int(match[1]) - shift + above, last + 1)
+        return match[0].replace(match[1], str(last), 1)
+
+    return tuple(_HEADING_TAG.sub(next_level, part) for part in parts)
 
 
 class _PageRenderer(IPythonRenderer):

@@ -43,7 +43,7 @@ def which_one(aircraft: Aircraft) -> Section:
         f"shake at once per revolution alone, {shake.once:.1f} Hz, points to track and balance †.",
         *((f"Left and right are {mirrored}.",) if mirrored else ()),
     )
-    return Section("Which one is it?", grid=grid, after=after)
+    return Section("Which one is it?", grid=grid, after=after, sources=(cues.HANDBOOK,))
 
 
 def _marked(one: cues.Likeness) -> str:

@@ -22,7 +22,7 @@ _WORDS: Final = {
     "isa_deviation": "hottest day", "recovery": "recovery",
 }  # fmt: skip
 # Not put there as text of a source: a head, a drawing, another link, what is hidden from the eye.
-_SKIPPED: Final = re.compile(r"<(head|svg|a|h1)\b|<caption class=\"said\"")
+_SKIPPED: Final = re.compile(r"<(head|svg|a|h1)\b|<caption class=\"(?:said|plain)\"")
 _LEAST: Final = 4  # letters and digits: less is no name of a document, and stands in too many words
 _SHORT: Final = 24  # letters that may stand together on a line of the narrowest telephone
 _TOKEN: Final = re.compile(r"(<[^>]*>)")

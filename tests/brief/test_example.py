@@ -3,6 +3,10 @@
 from __future__ import annotations
 
 import re
+import shutil
+import socket
+import tempfile
+from pathlib import Path
 
 import pytest
 
@@ -12,13 +16,30 @@ from briefkit.brief.run import Picture, Words
 pytestmark = pytest.mark.slow
 
 
-def test_built_twice_the_same_bytes_and_under_300_kilobytes(examples, exported, tmp_path):
-    (result,) = build([examples], tmp_path)
-    assert not result.error
-    assert result.notes == ()
-    assert result.page is not None
-    assert result.page.read_text(encoding="utf-8") == exported.html
-    assert 20_000 < result.size < 300_000
+def test_guard_g34_built_twice_and_from_two_folders_the_same_bytes(examples, exported, tmp_path):
+    """Three pages, each under 400 kB; nothing of the folder, the machine or the notebook's own data is in them."""
+    elsewhere = tmp_path / "another folder"
+    shutil.copytree(examples, elsewhere, ignore=shutil.ignore_patterns(".*", "__pycache__"))
+    first, second = build([examples], tmp_path / "one"), build([elsewhere], tmp_path / "two")
+    assert [result.error for result in first + second] == [""] * 6
+    assert [result.notes for result in first] == [()] * 3
+    ours = {file.name: file.read_bytes() for file in (tmp_path / "one").iterdir()}
+    assert {file.name: file.read_bytes() for file in (tmp_path / "two").iterdir()} == ours
+    assert ours["NB-2T-001.html"].decode("utf-8") == exported.html
+    assert all(20_000 < result.size < 400_000 for result in first)
+    told = (
+        str(tmp_path),
+        str(examples),
+        str(Path.home()),
+        tempfile.gettempdir(),
+        socket.gethostname(),
+        "widget",
+        "ipynb",
+    )
+    for name, content in ours.items():
+        text = content.decode("utf-8")
+        assert [word for word in told if len(word) > 4 and word in text] == [], name
+        assert not re.search(r"kernelspec|nbformat|execution_count|model_id|/home/|/Users/|[A-Z]:\\\\", text), name
 
 
 def test_every_exhibit_has_its_drawings_named_in_words_and_a_table(exported):

@@ -81,6 +81,10 @@ HOSTILE = {
         "<table><tr><td>a</td></tr></table>",
     ),
     "video": ("<video src='x' poster='y'>z</video>a", "a"),
+    "a page in the page": (
+        "<body class='x'><title>x</title><meta name='x' content='y'>a</body></html><p>b</p>",
+        "xa<p>b</p>",
+    ),
     "what the author left open": ("<div><p>a<b>b</div>", "<div><p>a<b>b</b></p></div>"),
     "an end without a start": ("a</main></div>b", "ab"),
     "text that looks like code": ("&lt;script&gt; 3 &lt; 4 &amp; so", "&lt;script&gt; 3 &lt; 4 &amp; so"),

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import datetime as dt
 import io
+import itertools
 import re
 import warnings
 from collections import Counter
@@ -12,13 +14,15 @@ from functools import cache
 from pathlib import Path
 from typing import Any
 
+import hostile
 import html5lib
 import pypdf
 import pytest
 
-from briefkit.brief import fit
+from briefkit.brief import fit, pdf
 from briefkit.brief.build import build
 from briefkit.brief.harden import harden
+from briefkit.brief.identity import load_brief
 from briefkit.brief.pages import Section, render
 
 pytestmark = [pytest.mark.browser, pytest.mark.slow]
@@ -26,6 +30,7 @@ pytestmark = [pytest.mark.browser, pytest.mark.slow]
 # ISO 216 and ANSI/ASME Y14.1, in millimetres.
 PAPERS = {"A5": (148, 210), "A4": (210, 297), "Letter": (215.9, 279.4)}
 MILLIMETRE = 72 / 25.4
+NUMBERS = {"handout": "2T", "load": "3F", "cold": "4H"}
 
 
 @dataclass
@@ -39,12 +44,13 @@ class Seen:
 
 @pytest.fixture(scope="module")
 def files(exported: Any, examples: Path, tmp_path_factory: pytest.TempPathFactory) -> dict[str, Path]:
-    """The page, its read-back sheet and the index, as a build writes them."""
+    """Three pages, a read-back sheet and the index, as a build writes them."""
     out = tmp_path_factory.mktemp("pages")
-    (result,) = build([examples], out)
-    assert result.page is not None
-    assert result.page.read_text(encoding="utf-8") == exported.html
-    return {"handout": result.page, "readback": out / "NB-2T-001.readback.html", "index": out / "index.html"}
+    results = build([examples], out)
+    assert [result.error for result in results] == ["", "", ""]
+    assert (out / "NB-2T-001.html").read_text(encoding="utf-8") == exported.html
+    names = {name: out / f"NB-{number}-001.html" for name, number in NUMBERS.items()}
+    return names | {"readback": out / "NB-3F-001.readback.html", "index": out / "index.html"}
 
 
 @pytest.fixture
@@ -67,7 +73,7 @@ def show(chromium: Any, files: dict[str, Path]) -> Iterator[Callable[..., Seen]]
         context.close()
 
 
-@pytest.mark.parametrize("name", ["handout", "readback", "index"])
+@pytest.mark.parametrize("name", [*NUMBERS, "readback", "index"])
 def test_valid_silent_and_alone(show, files, name):
     with warnings.catch_warnings():
         warnings.simplefilter("ignore", DeprecationWarning)
@@ -93,8 +99,8 @@ def test_every_figure_is_shown(show, exported):
     assert seen.page.evaluate(broken) == 0
 
 
-@pytest.mark.parametrize("name", ["handout", "readback", "index"])
-@pytest.mark.parametrize("width", [320, 390, 768])
+@pytest.mark.parametrize("name", [*NUMBERS, "readback", "index"])
+@pytest.mark.parametrize("width", [320, 390])
 def test_nothing_is_wider_than_the_screen(show, name, width):
     """390 px is a common telephone; 320 px is WCAG 2.2, 1.4.10 (reflow)."""
     seen = show(name, width)
@@ -102,8 +108,9 @@ def test_nothing_is_wider_than_the_screen(show, name, width):
     assert scroll <= client
 
 
-def test_the_first_answer_is_on_the_first_screen(show):
-    seen = show(width=390)
+@pytest.mark.parametrize("name", NUMBERS)
+def test_the_first_answer_is_on_the_first_screen(show, name):
+    seen = show(name, width=390)
     cell = seen.page.locator(".front td").first
     assert re.fullmatch(r"\d{2,3}\*?", cell.inner_text())
     box = cell.bounding_box()
@@ -128,6 +135,7 @@ def test_the_dark_scheme_is_dark_and_says_the_same(show):
         ("readback", 1280, "dark"),
         ("readback", 390, "light"),
         ("index", 390, "light"),
+        ("load", 390, "light"),
     ],
 )
 def test_accessibility(show, name, width, scheme):
@@ -185,7 +193,7 @@ def sizes(page: pypdf.PageObject) -> Counter[float]:
 
 
 @pytest.mark.parametrize("paper", PAPERS)
-def test_every_sheet_carries_its_marks(printed, paper):
+def test_guard_g39_every_sheet_carries_its_marks(printed, paper):
     sheets = printed(paper)
     width, height = PAPERS[paper]
     assert float(sheets[0].mediabox.width) == pytest.approx(width * MILLIMETRE, abs=1)
@@ -197,7 +205,9 @@ def test_every_sheet_carries_its_marks(printed, paper):
         assert "DRAFT: not for crews | NB-2T-001 rev 0 | expires 29 Feb 2032" in text
         assert f"page {at} of {total}" in text
         # and again at the foot, for a browser that knows no margin boxes
-        assert "NB-2T-001 rev 0 | DRAFT: not for crews | Invented" in text
+        running = "DRAFT: not for crews | NB-2T-001 rev 0 | expires 29 Feb 2032"
+        assert f"{running} | Uncontrolled when printed" in text
+        assert "Do not use for flight" in text
 
 
 def test_the_crews_sheet_is_one_a5_sheet_in_type_that_can_be_read(printed, exported):
@@ -211,10 +221,23 @@ def test_the_crews_sheet_is_one_a5_sheet_in_type_that_can_be_read(printed, expor
     found = sizes(sheets[0])
     assert found[14.0] > 60
     assert found[11.0] > 300
-    assert {size for size in found if size < 10.9} <= {7.5, 9.0}  # the foot line and the header line
+    # the foot, the numbers of sources, the header line
+    assert {size for size in found if size < 10.9} <= {6.5, 7.0, 9.0}
+    assert found[6.5] < 20
     assert found[9.0] == pytest.approx(
         len("DRAFT: not for crews | NB-2T-001 rev 0 | expires 29 Feb 2032page 1 of 14"), abs=12
     )
+
+
+@pytest.mark.parametrize("name", NUMBERS)
+def test_on_a5_the_crew_needs_two_sheets(printed, name):
+    """Sheet 1 and recognition are one sheet each, back to back; what follows is for the briefing room."""
+    first, second, third = (plain(sheet.extract_text()) for sheet in printed("A5", name)[:3])
+    assert "4. If it starts" in first
+    assert "Which one is it?" in second
+    assert "Cautions" in second
+    assert "Hover at" in second
+    assert "How the reduction was found" in third[:200]
 
 
 FULLER = {
@@ -242,7 +265,9 @@ def test_the_author_hears_when_sheet_1_is_more_than_one_sheet(chromium, exported
     crew = replace(exported.crew, front=FULLER[case](exported.crew.front))
     file = tmp_path / "page.html"
     file.write_text(harden(render(crew, ())), encoding="utf-8")
-    context = chromium.new_context(viewport={"width": round(fit.WIDTH / 72 * 96), "height": 844}, offline=True)
+    margin = 4 / 25.4 * 96  # the change bars' own, inside the page area
+    width = round(fit.WIDTH / 72 * 96 + margin)
+    context = chromium.new_context(viewport={"width": width, "height": 844}, offline=True)
     page = context.new_page()
     page.goto(file.as_uri())
     sheets = pypdf.PdfReader(io.BytesIO(page.pdf(format="A5"))).pages
@@ -261,7 +286,8 @@ def test_no_figure_and_no_table_is_cut(show, printed, paper):
     """All words of a figure, its table and notes come out on one sheet; so do those of a table."""
     seen = show()
     pieces = seen.page.evaluate(
-        """[...document.querySelectorAll('figure.exhibit, .block table')].map(it =>
+        """[...document.querySelectorAll('figure.exhibit, .block table')]
+          .filter(it => !it.closest('.slip')).map(it =>
           [...it.querySelectorAll('.title, caption, thead th, tbody th, tbody td, .note')]
             .filter(part => getComputedStyle(part).clipPath === 'none')
             .map(part => part.innerText).filter(text => text.trim()))"""
@@ -282,8 +308,139 @@ def test_no_figure_and_no_table_is_cut(show, printed, paper):
 
 
 def test_the_read_back_sheet_prints_its_answers_on_a_sheet_of_their_own(printed):
-    first, second = (plain(sheet.extract_text()) for sheet in printed("A4", "readback"))
+    first, *_, second = sheets = [plain(sheet.extract_text()) for sheet in printed("A4", "readback")]
     assert "The numbered cells, as typed" in second
     assert "The numbered cells, as typed" not in first
     assert "read-back sheet, not for crews" in first
-    assert "page 2 of 2" in second
+    assert f"page {len(sheets)} of {len(sheets)}" in second
+
+
+def test_a_bar_on_paper_shows_whether_the_print_is_full_size(show):
+    """50 mm at 96 CSS pixels to the inch (CSS Values 4, section 6.2)."""
+    for name in ("handout", "readback"):
+        seen = show(name)
+        assert seen.page.locator(".scale span").bounding_box() is None  # a screen has no true size
+        seen.page.emulate_media(media="print")
+        assert seen.page.locator(".scale span").bounding_box()["width"] == pytest.approx(50 / 25.4 * 96, abs=0.5)
+
+
+def test_what_changed_has_a_bar_in_the_margin(show):
+    """Two sections of the load brief changed in its revision 1; the others carry no bar."""
+    seen = show("load")
+    bars = seen.page.evaluate(
+        """[...document.querySelectorAll('.part')].map(it => {
+             const bar = getComputedStyle(it, '::before');
+             const heading = it.querySelector('h2');
+             return [heading ? heading.innerText : '', parseFloat(bar.borderLeftWidth) || 0, parseFloat(bar.left)];
+           }).filter(it => it[1] > 0)"""
+    )
+    assert [heading[:2] for heading, _, _ in bars] == ["1.", "2."]
+    assert all(left < 0 for _, _, left in bars)  # outside the text
+    assert seen.page.locator(".changed .said").all_inner_texts()[0].strip() == "(changed in this revision)"
+
+
+# --- sources, readers that do not see, readers without style ------------------------------------------------------
+
+
+@pytest.mark.parametrize("name", NUMBERS)
+def test_from_each_number_to_its_source_in_one_tap(show, name):
+    """Every table of figures stands in a part that links to the list; every link arrives at a line that says more."""
+    seen = show(name, 390)
+    bare = seen.page.evaluate(
+        """[...document.querySelectorAll('.front .part, .recognition .part, .block, figure.exhibit')].filter(it => {
+             const part = it.closest('.part') || it;
+             const words = it.innerText.replace(/^[0-9][.]/, '');
+             return /[0-9]/.test(words) && !part.closest('.control, .slip')
+               && !part.querySelector('a[href^="#source-"]') && !part.classList.contains('notebook');
+           }).map(it => it.innerText.slice(0, 60))"""
+    )
+    assert [text for text in bare if not text.startswith(("4. If it starts", "Cautions"))] == []
+    targets = seen.page.evaluate(
+        """[...document.querySelectorAll('main a[href^="#"]')].map(it => {
+             const line = document.querySelector(it.getAttribute('href'));
+             return [it.innerText, line ? line.innerText.trim().length : 0];
+           })"""
+    )
+    assert len(targets) > 20
+    assert all(length > 10 for _, length in targets)
+    link = seen.page.locator('.front a[href^="#source-"]').first
+    link.click()
+    assert seen.page.url.partition("#")[2] == link.get_attribute("href")[1:]
+    box = seen.page.locator(link.get_attribute("href")).bounding_box()
+    assert -1 <= box["y"] < 844
+
+
+@pytest.mark.parametrize("name", NUMBERS)
+def test_every_number_of_every_table_is_in_the_accessibility_tree(show, name):
+    seen = show(name)
+    cells = seen.page.evaluate("[...document.querySelectorAll('main td, main tbody th')].map(it => it.textContent)")
+    numbers = [number for cell in cells for number in re.findall(r"\d[\d,.]*", cell)]
+    assert len(numbers) > 60
+    tree = seen.page.context.new_cdp_session(seen.page).send("Accessibility.getFullAXTree")["nodes"]
+    said = " ".join(str(node.get("name", {}).get("value", "")) for node in tree if not node.get("ignored"))
+    missing = Counter(numbers) - Counter(re.findall(r"\d[\d,.]*", said))
+    assert not missing
+
+
+@pytest.mark.parametrize("name", [*NUMBERS, "readback", "index"])
+def test_readable_with_styles_off(files, name):
+    """Headings in order and words apart from one another, from the mark-up alone."""
+    with warnings.catch_warnings():
+        warnings.simplefilter("ignore", DeprecationWarning)
+        tree = html5lib.parse(files[name].read_text(encoding="utf-8"), namespaceHTMLElements=False)
+    assert tree.get("lang") == "en-GB"
+    levels = [int(node.tag[1]) for node in tree.iter() if re.fullmatch("h[1-6]", str(node.tag))]
+    assert levels[0] == 1
+    assert levels.count(1) == 1
+    assert all(later <= earlier + 1 for earlier, later in itertools.pairwise(levels))
+    keys = [node.text for node in tree.iter("span") if node.get("class") == "key"]
+    assert all(key.endswith(": ") for key in keys)
+    assert bool(keys) == (name != "index")
+
+
+def test_guard_g33_with_scripts_off_every_figure_is_there(chromium, files, exported):
+    context = chromium.new_context(offline=True, java_script_enabled=False)
+    page = context.new_page()
+    page.goto(files["handout"].as_uri())
+    drawings = page.locator("svg")
+    assert drawings.count() == exported.pictures
+    assert all(drawings.nth(at).bounding_box()["width"] > 200 for at in range(drawings.count()))
+    context.close()
+
+
+def test_guard_g33_500_hostile_strings_ask_for_nothing(chromium, examples, tmp_path):
+    """Every page of tests/hostile.py opened: nothing runs, nothing is asked for, the policy has nothing to forbid."""
+    context = chromium.new_context(offline=True)
+    page = context.new_page()
+    said: list[str] = []
+    asked: list[str] = []
+    page.on("console", lambda message: said.append(message.text))
+    page.on("pageerror", lambda error: said.append(str(error)))
+    page.on("dialog", lambda dialog: (said.append(dialog.message), dialog.dismiss()))
+    page.on("request", lambda request: asked.append(request.url))
+    opened = 0
+    for opened, (html, _) in enumerate(hostile.pages(load_brief(examples / "ysbrane-4h")), start=1):
+        file = tmp_path / f"page-{opened}.html"
+        file.write_text(html, encoding="utf-8")
+        page.goto(file.as_uri())
+        assert page.evaluate("document.scripts.length + document.querySelectorAll('iframe, object, form').length") == 0
+    context.close()
+    assert opened == hostile.PAGES
+    assert said == []
+    assert [url for url in asked if not url.startswith(("file:", "data:"))] == []
+    assert len([url for url in asked if url.startswith("file:")]) == opened
+
+
+def test_the_pdf_is_the_page_and_says_nothing_of_clock_or_machine(chromium, files, tmp_path):
+    page = tmp_path / "NB-4H-001.html"
+    page.write_bytes(files["cold"].read_bytes())
+    made = pdf.print_pdf(page, "A5", dt.date(2030, 9, 2))
+    assert made == page.with_suffix(".pdf")
+    content = made.read_bytes()
+    assert set(re.findall(rb"\(D:(\d+)", content)) == {b"20300902000000"}
+    assert b"file:" not in content
+    sheets = pypdf.PdfReader(made).pages
+    expected = [side * MILLIMETRE for side in PAPERS["A5"]]
+    assert [float(side) for side in sheets[0].mediabox[2:]] == pytest.approx(expected, abs=1.0)
+    assert f"page 1 of {len(sheets)}" in sheets[0].extract_text()
+    assert "Kvillarn 4H" in sheets[0].extract_text()
