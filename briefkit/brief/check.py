@@ -36,6 +36,7 @@ from briefkit.brief.identity import (
 from briefkit.brief.register import REGISTER_FILE
 from briefkit.brief.seal import seal_of
 from briefkit.brief.sign import problems
+from briefkit.brief.sources import sources
 from briefkit.envelope.reductions import ReductionTable
 from briefkit.errors import BriefkitError, Fault, FaultyFile
 
@@ -119,6 +120,7 @@ def _brief(folder: Path, today: dt.date, page: bool) -> tuple[Brief | None, list
     crossed = cross_check(operation, aircraft, [identity.work_area])
     found += map(from_fault, crossed)
     brief = Brief(identity, aircraft, operation)
+    found += _twins(identity, folder) + _people_in_sources(brief, folder)
     unread = any(one.level is Level.BLOCKS and one.place == str(folder / NOTEBOOK) for one in found)
     found += [] if unread else _signatures(brief, folder)
     if crossed or disagreements(identity, aircraft, operation):
@@ -179,6 +181,30 @@ def _months_after(day: dt.date, months: int) -> dt.date:
     """The same day so many months on, or the last of that month where it is shorter."""
     year, month = divmod(day.year * 12 + day.month - 1 + months, 12)
     return dt.date(year, month + 1, min(day.day, calendar.monthrange(year, month + 1)[1]))
+
+
+def _twins(identity: Identity, folder: Path) -> list[Finding]:
+    """Another brief of the operator with this number and revision: crews could not tell their pages apart."""
+    found = []
+    for file in sorted(identity.operator.rglob(BRIEF_FILE)):
+        if file.parent.resolve() == folder.resolve() or _hidden(file.relative_to(identity.operator)):
+            continue
+        try:
+            other = load_identity(file.parent)
+        except FaultyFile:
+            continue
+        if (other.number, other.revision) == (identity.number, identity.revision):
+            text = f"{other.number} rev {other.revision} is also the brief in {shown_path(file.parent)}"
+            place = f"{folder / BRIEF_FILE}: document.number"
+            found.append(Finding(Level.BLOCKS, place, text, "give each its own number, or the later one a revision"))
+    return found
+
+
+def _people_in_sources(brief: Brief, folder: Path) -> list[Finding]:
+    """Sources and the manual's own words are printed as typed."""
+    said = [source.text for source in sources(brief)]
+    said += [speed.text for speed in brief.aircraft.speeds] + [brief.aircraft.recovery, brief.operation.name]
+    return personal_data(f"{folder}: sources", "\n".join(said))
 
 
 def _signatures(brief: Brief, folder: Path) -> list[Finding]:

@@ -91,7 +91,7 @@ def sources(listed: tuple[Source, ...], identity: Identity) -> Section:
 
 def made_from(brief: Brief, version: str, standing: Standing | None = None) -> Section:
     """The versions and data this page was made from, so that it can be made again."""
-    content = (("content, as signed", standing.seal.content[:_HASH_SHOWN]),) if standing is not None else ()
+    content = (("content (what a signature covers)", standing.seal.content[:_HASH_SHOWN]),) if standing is not None else ()
     rows = (
         ("briefkit", version),
         (brief.aircraft.file, brief.aircraft.data_hash[:_HASH_SHOWN]),

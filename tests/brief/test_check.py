@@ -200,6 +200,28 @@ def test_a_whole_operator_folder_lists_a_shared_finding_once(world: Path) -> Non
     assert len(found) == 1
 
 
+def test_two_briefs_of_one_number_and_revision_block(world: Path) -> None:
+    second = Path(shutil.copytree(world / "vellmark-2t", world / "second"))
+    assert "NB-2T-001 rev 0 is also the brief in" in only(world).text
+    edit(second / "brief.toml", ("revision = 0\nissued", "revision = 1\nissued"))
+    assert serious(world) == []
+
+
+@pytest.mark.parametrize(
+    ("file", "old", "new", "place"),
+    [
+        ("vellmark-2t/brief.toml", "First issue", "First issue, ask ops@norrabeck.example", "brief.toml"),
+        ("aircraft/pelquill-2t.toml", "order 2231", "order 2231, tel 555 0123 45", "vellmark-2t: sources"),
+        ("operation.toml", "Norrabeck Rotor Charter", "Norrabeck, licence 4471882", "vellmark-2t: sources"),
+    ],
+)
+def test_peoples_data_in_the_typed_files_block(world: Path, file: str, old: str, new: str, place: str) -> None:
+    edit(world / file, (old, new))
+    found = serious(world)
+    assert found
+    assert all(one.place.endswith(place) and "people are not on a brief" in one.remedy for one in found)
+
+
 def test_an_aircraft_file_alone(world: Path) -> None:
     path = world / "aircraft" / "pelquill-2t.toml"
     assert [finding.level for finding in findings(path)] == [Level.NOTE]
