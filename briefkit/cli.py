@@ -246,6 +246,7 @@ def new_command(
     rotation: Annotated[str, typer.Option(help="Seen from above: anticlockwise or clockwise.")] = "",
     airspeed_unit: Annotated[str, typer.Option(help="kt, km/h or mph.")] = "",
     mass_unit: Annotated[str, typer.Option(help="kg or lb.")] = "",
+    starter: Annotated[str, typer.Option(help="type, hot-and-high or recurrent-check (with a first deck).")] = "type",
 ) -> None:
     """Make a brief for a type of yours.
 
@@ -260,15 +261,21 @@ def new_command(
         "mass_unit": mass_unit,
     }
     with _plain_errors():
-        from briefkit.brief.new import QUESTIONS, Answers, new
+        from briefkit.brief.new import QUESTIONS, Answers, Starter, new
 
+        if starter not in tuple(Starter):
+            raise typer.BadParameter(f"{starter!r} is not one of {', '.join(Starter)}", param_hint="--starter")
         for question in QUESTIONS:
             if not given[question.name]:
                 choices = f" ({', '.join(question.choices)})" if question.choices else ""
                 given[question.name] = typer.prompt(question.text + choices)
-        made = new(folder, Answers(**given))
+        made = new(folder, Answers(**given), starter=starter)
         for file in made.written:
             typer.echo(f"written: {file}")
+        if starter == Starter.RECURRENT_CHECK:
+            from briefkit.session.generate import write_deck
+
+            typer.echo(f"written: {write_deck(made.folder)}; edit every case before use")
         if made.added_to is not None:
             typer.echo(f"lines added: {made.added_to}")
         where = shlex.quote(str(made.folder))

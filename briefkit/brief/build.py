@@ -13,7 +13,7 @@ from dataclasses import dataclass
 from pathlib import Path
 from typing import Final
 
-from briefkit.brief.export import compose, contents, unchanged
+from briefkit.brief.export import compose, contents, stays_inside, unchanged
 from briefkit.brief.fit import complaint
 from briefkit.brief.harden import harden
 from briefkit.brief.identity import BRIEF_FILE, Brief, load_brief
@@ -121,6 +121,7 @@ async def _build_one(folder: Path, out: Path, taken: dict[str, Path], beside: Be
     try:
         brief = load_brief(folder)
         target = _target(brief, folder, out, taken)
+        stays_inside(brief.identity)
         node = read_notebook(brief.identity.notebook)
         page = contents(brief, node)
         title, mark = page.heading, page.mark

@@ -32,8 +32,17 @@ def contents(brief: Brief, node: NotebookNode | None = None, today: dt.date | No
 
     Raises BriefkitError where the operation asks for what cannot be answered.
     """
+    stays_inside(brief.identity)
     known = standing(brief, None if node is None else node.cells, today)
     return mark_changes(crew_page(brief, version("briefkit"), known), brief.identity)
+
+
+def stays_inside(identity: Identity) -> None:
+    """Raise `BuildError` where a link leads a file of the brief out of the operator folder."""
+    operator = identity.operator.resolve()
+    for file in (identity.folder / BRIEF_FILE, identity.notebook, identity.aircraft_path):
+        if file.exists() and not file.resolve().is_relative_to(operator):
+            raise BuildError(f"{file.name}: a link out of the operator folder; keep the file itself in it")
 
 
 def mark_changes(page: CrewPage, identity: Identity) -> CrewPage:
@@ -50,12 +59,19 @@ def mark_changes(page: CrewPage, identity: Identity) -> CrewPage:
         found.update(here)
         return replace(part, changed=True) if here else part
 
-    rooms = {room: tuple(map(marked, getattr(page, room))) for room in ("front", "recognition", "analysis", "control")}
+    barred = replace(
+        page,
+        front=tuple(map(marked, page.front)),
+        recognition=tuple(map(marked, page.recognition)),
+        analysis=tuple(map(marked, page.analysis)),
+        control=tuple(map(marked, page.control)),
+    )
     missing = [name for name in named if name not in found]
     if missing:
-        known = "; ".join(part.heading for room in rooms.values() for part in room)
+        parts = (*page.front, *page.recognition, *page.analysis, *page.control)
+        known = "; ".join(part.heading for part in parts)
         raise BuildError(f"{identity.file}: changes: no section {missing[0]!r} on the page; there is: {known}")
-    return replace(page, **rooms)
+    return barred
 
 
 def _is_called(heading: str, name: str) -> bool:
@@ -86,6 +102,7 @@ def export(notebook: Path, node: NotebookNode | None = None) -> str:
             f"{notebook.name}: a brief is {NOTEBOOK} beside its {BRIEF_FILE}; no other notebook is its page"
         )
     brief = load_brief(notebook.parent)
+    stays_inside(brief.identity)
     node = read_notebook(notebook) if node is None else node
     page = contents(brief, node)
     ran = run_node(node, notebook)
@@ -95,6 +112,7 @@ def export(notebook: Path, node: NotebookNode | None = None) -> str:
 
 def released(brief: Brief, day: dt.date) -> tuple[str, str, ReductionTable]:
     """Run a brief's notebook on a day: the page, its mark ("" where it is released), its table of turns."""
+    stays_inside(brief.identity)
     node = read_notebook(brief.identity.notebook)
     known = standing(brief, node.cells, day)
     page = mark_changes(crew_page(brief, version("briefkit"), known), brief.identity)

@@ -120,8 +120,8 @@ def turn_section(
         f"no {table.brief_bank_deg:.0f}-degree turn."
     )
     after = (*cold, method, f"{where} {floor} Over {bank}: not briefed.")
-    sources = (*sources, aircraft.vne.source, aircraft.limits.climb_speed.source, aircraft.calibration.source)
-    return Section(heading, before=own, grid=grid, after=after, sources=sources)
+    read = (aircraft.vne.source, aircraft.limits.climb_speed.source, aircraft.calibration.source)
+    return Section(heading, before=own, grid=grid, after=after, sources=(*sources, *read))
 
 
 def _where(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea) -> str:

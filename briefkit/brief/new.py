@@ -12,6 +12,7 @@ import os
 import re
 import tomllib
 from dataclasses import dataclass
+from enum import StrEnum
 from pathlib import Path
 from string import Template
 from typing import Final
@@ -114,16 +115,29 @@ class Made:
     added_to: Path | None
 
 
-def new(folder: Path | str, answers: Answers, today: dt.date | None = None) -> Made:
+class Starter(StrEnum):
+    """What a brief begins as: its notebook, and the example work area it is made for."""
+
+    TYPE = "type"
+    HOT_AND_HIGH = "hot-and-high"
+    RECURRENT_CHECK = "recurrent-check"
+
+
+def new(
+    folder: Path | str, answers: Answers, today: dt.date | None = None, starter: Starter | str = Starter.TYPE
+) -> Made:
     """Make a brief for one type.
 
     Below an operator folder `folder` becomes the brief's own folder. Where there is none, `folder` becomes the operator
-    folder and the brief a folder in it. `today` is the day of issue, by default the clock's. Raises `FaultyFile` where
-    a file to be written exists, or where the operator's own file has faults; then nothing has been written.
+    folder and the brief a folder in it. `today` is the day of issue, by default the clock's; `starter` is one of
+    `Starter`. Raises `FaultyFile` where a file to be written exists, or where the operator's own file has faults; then
+    nothing has been written.
     """
-    folder, today = Path(folder), today or dt.date.today()
+    folder, today, starter = Path(folder), today or dt.date.today(), Starter(starter)
     operator = _operator_above(folder)
     values = _values(answers, today)
+    if starter is Starter.HOT_AND_HIGH:
+        values |= _HOT_METRES if answers.airspeed_unit == "km/h" else _HOT_FEET
     aircraft_folder = (operator or folder) / "aircraft"
     brief_folder = folder if operator is not None and folder.resolve() != operator else folder / answers.stem
     to_aircraft = os.path.relpath(aircraft_folder / f"{answers.stem}.toml", brief_folder)
@@ -133,15 +147,17 @@ def new(folder: Path | str, answers: Answers, today: dt.date | None = None) -> M
         added_to = operator / OPERATION_FILE
         known = load_operation(added_to)
         fitting = (key for key, area in known.work_areas.items() if _fits(area))
-        area = EXAMPLE_AREA if EXAMPLE_AREA in known.work_areas else next(fitting, None)
-        values["area"] = area or EXAMPLE_AREA
+        area = values["area"] if values["area"] in known.work_areas else None
+        if starter is not Starter.HOT_AND_HIGH:  # which asks for a hot and high area, not for any that fits
+            area = area or next(fitting, None)
+        values["area"] = area or values["area"]
         addition = ("" if area else _filled("work_area.toml", values)) + (
             "" if answers.stem in known.fleet else _filled("fleet.toml", values)
         )
     files = {
         aircraft_folder / f"{answers.stem}.toml": _filled("aircraft.toml", values),
         brief_folder / BRIEF_FILE: _filled("brief.toml", values),
-        brief_folder / NOTEBOOK: _filled_notebook(values),
+        brief_folder / NOTEBOOK: _filled_notebook(_BOOKS[starter], values),
     }
     if operator is None:
         parts = ("operation.toml", "work_area.toml", "fleet.toml")
@@ -150,6 +166,21 @@ def new(folder: Path | str, answers: Answers, today: dt.date | None = None) -> M
     if added_to is not None and addition:
         _add(added_to, addition)
     return Made(brief_folder, tuple(files), added_to if addition else None)
+
+
+_BOOKS: Final = {
+    Starter.TYPE: NOTEBOOK,
+    Starter.HOT_AND_HIGH: "hot-and-high.ipynb",
+    Starter.RECURRENT_CHECK: "recurrent-check.ipynb",
+}
+_HOT: Final = {
+    "area": "example_hot",
+    "area_name": "Hot and high work area",
+    "low_oat": "+15 degC",
+    "high_oat": "+30 degC",
+}
+_HOT_FEET: Final = _HOT | {"low_altitude": "6,000 ft", "high_altitude": "8,000 ft", "planned_altitude": "8,000 ft"}
+_HOT_METRES: Final = _HOT | {"low_altitude": "1,800 m", "high_altitude": "2,400 m", "planned_altitude": "2,400 m"}
 
 
 def _fits(area: WorkArea) -> bool:
@@ -192,6 +223,9 @@ def _values(answers: Answers, today: dt.date) -> dict[str, str]:
         "chord": f"{chord:.0f} mm",
         "hinge": _HINGES[answers.hub],
         "area": EXAMPLE_AREA,
+        "area_name": "Work area",
+        "low_oat": "+10 degC",
+        "high_oat": "+30 degC",
         "number": re.sub(r"[^A-Z0-9]+", "-", answers.stem.upper()).strip("-")[:20] + "-001",
         "issued": today.isoformat(),
         "effective": today.isoformat(),
@@ -209,9 +243,9 @@ def _filled(name: str, values: dict[str, str]) -> str:
     return re.sub(r"(?m)^([a-z\[].*?) {2,}(#.*)$", lambda line: f"{line[1]:<{_COMMENT_COLUMN}} {line[2]}", text)
 
 
-def _filled_notebook(values: dict[str, str]) -> str:
+def _filled_notebook(name: str, values: dict[str, str]) -> str:
     """The starter notebook with its code cells filled in; markdown stays as it is, dollars and all."""
-    notebook = json.loads((starter_folder() / NOTEBOOK).read_text(encoding="utf-8"))
+    notebook = json.loads((starter_folder() / name).read_text(encoding="utf-8"))
     for cell in notebook["cells"]:
         if cell["cell_type"] == "code":
             cell["source"] = [Template(line).substitute(values) for line in cell["source"]]

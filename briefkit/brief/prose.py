@@ -19,6 +19,7 @@ from nbconvert.filters.markdown_mistune import InvalidNotebook, IPythonRenderer,
 from briefkit.brief.run import Words
 from briefkit.errors import BuildError
 
+LARGEST_PICTURE: Final = 1_000_000
 _PICTURES: Final = ("image/png", "image/jpeg", "image/gif", "image/webp")
 _DEEPEST: Final = 6
 _HEADING: Final = re.compile(r"<h([1-6])>")
@@ -110,4 +111,6 @@ def _embedded(source: str, words: Words, folder: Path) -> str:
         raise BuildError(f"{words.place}: the picture {source[:60]!r} is not PNG, JPEG, GIF or WebP")
     if not file.is_relative_to(folder.resolve()) or not file.is_file():
         raise BuildError(f"{words.place}: the picture {source[:60]!r} is not a file in the brief's folder")
+    if file.stat().st_size > LARGEST_PICTURE:
+        raise BuildError(f"{words.place}: the picture {source[:60]!r} is larger than {LARGEST_PICTURE:,} bytes")
     return f"data:{kind};base64,{base64.b64encode(file.read_bytes()).decode('ascii')}"
