@@ -140,7 +140,7 @@ def page_standing(brief: Brief) -> tuple[ReductionTable | None, tuple[Difference
     try:
         table = table_of(brief)
     except BriefkitError as error:
-        place = f"{brief.identity.operator / brief.operation.file}: work_areas.{brief.identity.work_area}"
+        place = f"{shown_path(brief.identity.operator / brief.operation.file)}: work_areas.{brief.identity.work_area}"
         return None, (), [Finding(Level.BLOCKS, place, str(error), "a work area or a mass the manual does not cover")]
     found = page_findings(brief, table)
     register, _ = check_register.read_register(brief.identity.operator)

@@ -52,6 +52,8 @@ def seal_of(identity: Identity, cells: Iterable[Any] | None = None) -> Seal:
 
     Raises `BuildError` where a file that is covered cannot be read.
     """
+    if not identity.notebook.resolve().is_relative_to(identity.operator):
+        raise BuildError(f"{identity.notebook}: a link out of the operator folder; put the notebook itself here")
     try:
         known = _cells_of_file(identity.notebook) if cells is None else list(cells)
         parts = {

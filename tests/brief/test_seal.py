@@ -148,6 +148,11 @@ def test_a_link_out_of_the_operator_folder_cannot_be_signed(brief: Path, tmp_pat
     (brief / "cases.csv").symlink_to(tmp_path / "outside.csv")
     with pytest.raises(BuildError, match="out of the operator folder"):
         seal_of(load_identity(brief))
+    (brief / "cases.csv").unlink()
+    shutil.move(brief / "brief.ipynb", tmp_path / "outside.ipynb")
+    (brief / "brief.ipynb").symlink_to(tmp_path / "outside.ipynb")
+    with pytest.raises(BuildError, match="out of the operator folder"):
+        seal_of(load_identity(brief))
 
 
 def test_a_notebook_that_cannot_be_read_is_a_sentence(brief: Path) -> None:
