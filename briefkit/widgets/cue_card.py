@@ -29,24 +29,25 @@ class CueCard(TableExhibit):
         side = cues.sides(aircraft)
         shake = cues.vibration(aircraft)
         k = condition.rotor_speed
+        sentences, source = cues.recovery(aircraft)
         mirrored = f"; {side.mirrored}" if side.mirrored else ""
         caption = (
             f"{felt[:1].upper()}{felt[1:]} ({cues.CHAPTER_11}{mirrored}.) The shake comes about "
             f"{units.show_number(shake.blade * k, 1)} times a second, once a blade; the rotor turns "
-            f"{units.show_number(shake.once * k, 1)} times a second ({cues.NO_SOURCE})."
+            f"{units.show_number(shake.once * k, 1)} times a second ({cues.NO_SOURCE}). "
+            f"What to do: {' '.join(sentences)} Source: {source}."
         )
         rows = tuple((one.name, one.when, one.sign, one.first, one.source) for one in cues.which_one(aircraft))
         table = Table(("Which one is it?", "When", "What one notices", "First", "Source"), rows, "Different hands")
         self._show(table)
-        sentences, source = cues.recovery(aircraft)
         return StillParts(
             title="If it starts",
             caption=caption,
-            alt=f"Cues of blade stall. {caption} {' '.join(sentences)}",
+            alt=f"Cues of blade stall. {caption}",
             inputs=words.inputs(aircraft, condition),
             drawings=(),
             table=table,
-            notes=(f"What to do: {' '.join(sentences)} ({source})", *_hub(aircraft, answers)),
+            notes=_hub(aircraft, answers),
         )
 
 

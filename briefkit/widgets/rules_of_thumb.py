@@ -72,5 +72,7 @@ def _range(rule: RuleOfThumb) -> str:
     decimals = 0 if step >= 1.0 else 1
     if low >= high:
         return "here only"
-    ends = (units.show_number(end, decimals) for end in (low, high))
-    return f"from {next(ends)} to {next(ends)} {rule.unit}"
+    first, last = (units.show_number(end, decimals) for end in (low, high))
+    if rule.unit == "°C":  # a temperature carries its sign
+        first, last = (f"+{text}" if end > 0.0 else text for text, end in ((first, low), (last, high)))
+    return f"from {first} to {last}\u00a0{rule.unit}"

@@ -91,7 +91,8 @@ def _joined(rows: tuple[tuple[str, ...], ...]) -> tuple[tuple[str, ...], ...]:
     shown: list[tuple[str, ...]] = []
     for _, group in groupby(rows, key=lambda row: (*row[:2], *row[3:])):
         alike = list(group)
-        mass = alike[0][2] if len(alike) == 1 else f"{alike[0][2]} to {alike[-1][2]}"
+        first, last = (one[2].replace(" ", "\u00a0") for one in (alike[0], alike[-1]))
+        mass = first if len(alike) == 1 else f"{first} to {last}"
         shown.append((*alike[0][:2], mass, *alike[0][3:]))
     return tuple(shown)
 

@@ -62,9 +62,7 @@ class WhatIf(w.VBox):  # type: ignore[misc]  # ipywidgets carries no types
         self._clock: Callable[[], float] = time.monotonic
         self._last_step = float("-inf")
         self._make(boxes)
-        super().__init__(
-            [w.HTML(STYLE + WHAT_IF_STYLE, layout={"display": "none"}), self._screen, self._moves, self._keys]
-        )
+        super().__init__([w.HTML(STYLE + WHAT_IF_STYLE, layout={"display": "none"}), self._screen, self._moves])
         for name in ("briefkit", "briefkit-what-if"):
             self.add_class(name)
         self._listen()
@@ -79,19 +77,24 @@ class WhatIf(w.VBox):  # type: ignore[misc]  # ipywidgets carries no types
         self._boxes = [_box(f"Prediction {number}") for number in range(1, boxes + 1)]
         self._predictions = w.HBox(self._boxes, layout={"flex_flow": "row wrap", "overflow": "hidden"})
         self._decision = _box("Decision")
-        self._screen = w.VBox(
-            [self._head, self._predictions, self._said, self._shown, self._decision, self._word],
-            layout={"overflow": "hidden"},
-        )
+        sides = [
+            w.VBox([self._head, self._predictions, self._said, self._word]),
+            w.VBox([self._shown, self._decision]),
+        ]
+        for side in sides:
+            side.add_class("side")
+        self._screen = w.HBox(sides, layout={"flex_flow": "row wrap", "overflow": "visible"})
         self._screen.add_class("screen")
         names = ("", "Next", "Back", "Reset", "Blank", "Fill the window", "Write to a page")
         self._buttons = [w.Button(description=name) for name in names]
         self._step, self._next, self._back, self._reset, self._blank, self._fill, self._paper = self._buttons
         self._blank.add_class("blanker")
-        self._moves = w.HBox(self._buttons, layout={"flex_flow": "row wrap", "overflow": "hidden"})
-        self._moves.add_class("moves")
+        row = w.HBox(self._buttons, layout={"flex_flow": "row wrap", "overflow": "hidden"})
+        row.add_class("buttons")
         self._keys = w.Text(description="One key:", placeholder=KEYS, continuous_update=True)
         self._keys.tooltip = KEYS
+        self._moves = w.VBox([row, self._keys], layout={"overflow": "visible"})
+        self._moves.add_class("moves")
 
     def _listen(self) -> None:
         acts = (self.step, self.next, self.back, self.reset, self.toggle_blank, self.toggle_fill, self.write)
