@@ -38,10 +38,15 @@ def element(name: str, attributes: Mapping[str, str | float | None], *content: s
     parts = [name]
     for key, value in attributes.items():
         if value is not None:
-            shown = words(value) if isinstance(value, str) else number(value)
+            shown = _shown(value) if isinstance(value, str) else number(value)
             parts.append(f'{key}="{shown}"')
     inside = "".join(content)
     return f"<{' '.join(parts)}>{inside}</{name}>" if inside or name in _PAIRED else f"<{' '.join(parts)}/>"
+
+
+def _shown(value: str) -> str:
+    """An attribute's text. The letters of a picture's bytes are no words: "nan" among them is chance."""
+    return escape(value, quote=True) if value.startswith("data:image/png;base64,") else words(value)
 
 
 _PAIRED = frozenset({"svg", "g", "text", "title", "desc", "dl", "dt", "dd", "table", "td", "th", "tr", "p", "div"})

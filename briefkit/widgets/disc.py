@@ -7,6 +7,7 @@ from typing import Final
 import bqplot
 import ipywidgets as w
 import numpy as np
+from numpy.typing import NDArray
 
 from briefkit import units
 from briefkit.aircraft.model import Aircraft
@@ -15,7 +16,10 @@ from briefkit.figures.disc import DiscFigure, levels_for, reversed_region
 from briefkit.figures.still import Drawing, StillParts, Table
 from briefkit.widgets import words
 from briefkit.widgets.answers import Answers
+from briefkit.widgets.disc_quantities import LEVELS, SPEED, UNITS, checked, field_of
 from briefkit.widgets.exhibit import Exhibit
+
+Floats = NDArray[np.float64]
 
 # Fixed steps for a type up to this multiple of its tip speed, so that a colour means the same at every condition.
 _COVERED: Final = 1.35
@@ -24,12 +28,14 @@ _PLACES: Final = (("advancing side", 6), ("nose", 12), ("retreating side", 18), 
 
 
 class DiscMap(Exhibit):
-    """Speed normal to the blade over the disc, true, with the reversed-flow region outlined.
+    """One quantity over the disc, with the reversed-flow region outlined.
 
-    `DiscMap(aircraft, condition)` is fixed, `DiscMap(live)` follows. The condition needs an airspeed.
+    `DiscMap(aircraft, condition)` is fixed, `DiscMap(live)` follows. The condition needs an airspeed. `quantity` is
+    "speed" (normal to the blade, true), "Mach", "angle of attack" or "angle over stall"; another is refused.
     """
 
-    def __init__(self, source: object, condition: Condition | None = None) -> None:
+    def __init__(self, source: object, condition: Condition | None = None, *, quantity: str = SPEED) -> None:
+        self._quantity = checked(quantity)
         super().__init__(source, condition)
 
     def _build(self, aircraft: Aircraft) -> tuple[bqplot.Figure, ...]:
@@ -42,7 +48,7 @@ class DiscMap(Exhibit):
             blades=rotor.blades,
             rotation=-1 if aircraft.mirrored else 1,
             root_cutout=self._root,
-            unit=aircraft.units.speed,
+            unit=UNITS.get(self._quantity, aircraft.units.speed),
         )
         return (self._disc.figure,)
 
@@ -54,6 +60,8 @@ class DiscMap(Exhibit):
         elements = solution.trim.elements(self._radii, _AZIMUTHS)
         speed = np.asarray(units.from_si(elements.speed[0], "speed", aircraft.units.speed))
         azimuths, radii = reversed_region(self._radii, _AZIMUTHS, speed, self._root)
+        if self._quantity != SPEED:
+            return self._draw_field(answers, azimuths, radii)
         self._disc.update(self._radii, _AZIMUTHS, speed, self._levels, reversed_azimuths=azimuths, reversed_radii=radii)
         unit = aircraft.units.speed
         tips = {name: units.show_number(speed[-1, column]) for name, column in _PLACES}
@@ -81,7 +89,28 @@ class DiscMap(Exhibit):
             ),
         )
 
-    def _table(self, speed: np.ndarray[tuple[int, ...], np.dtype[np.float64]], unit: str) -> Table:
+    def _draw_field(self, answers: Answers, reversed_azimuths: Floats, reversed_radii: Floats) -> StillParts:
+        """Another quantity than speed."""
+        field = field_of(self._quantity, answers.solution, self._root)
+        self._disc.update(
+            field.radii, field.azimuths, field.values, LEVELS[self._quantity],
+            reversed_azimuths=reversed_azimuths, reversed_radii=reversed_radii,
+        )  # fmt: skip
+        shares = np.minimum((0.5, 0.75, 1.0), field.radii[-1])
+        header = ("Blade over the", *(f"{units.show_number(100.0 * share)} % radius" for share in shares.tolist()))
+        rows = []
+        for name, column in _PLACES:
+            along = np.interp(shares, field.radii, field.values[:, column * field.azimuths.size // _AZIMUTHS.size])
+            rows.append((name, *(field.shown(value) for value in along.tolist())))
+        alt = f"Rotor disc from above, nose up. {field.caption}"
+        return StillParts(
+            title=field.title, caption=field.caption, alt=alt,
+            inputs=words.inputs(answers.aircraft, answers.condition),
+            drawings=(Drawing(self._disc.figure, field.title, alt),),
+            table=Table(header, tuple(rows), field.table_caption), notes=field.notes,
+        )  # fmt: skip
+
+    def _table(self, speed: Floats, unit: str) -> Table:
         shares = (0.5, 0.75, 1.0)
         header = ("Blade over the", *(f"{units.show_number(100.0 * share)} % radius" for share in shares))
         rows = []

@@ -12,7 +12,7 @@ import pytest
 import traitlets
 
 from briefkit.figures import theme
-from briefkit.figures.markup import number, refuse_unhandled
+from briefkit.figures.markup import element, number, refuse_unhandled
 from briefkit.figures.still import Drawing, svg
 
 SVG = "{http://www.w3.org/2000/svg}"
@@ -256,3 +256,10 @@ def test_an_invisible_mark_and_an_empty_one_leave_nothing(figure, scales):
 def test_unequal_abscissas_and_ordinates_are_refused(figure, scales):
     with pytest.raises(ValueError, match="abscissas"):
         draw(figure(line(scales, x=[0.0, 1.0, 2.0], y=[0.0, 1.0])))
+
+
+def test_a_picture_s_bytes_are_not_read_for_words():
+    """Base64 (RFC 4648) may spell "nan" between signs by chance; in words it is still refused."""
+    assert "+nan/" in element("image", {"href": "data:image/png;base64,iV+nan/="})
+    with pytest.raises(ValueError, match="not finite"):
+        element("text", {"aria-label": "VNE nan KIAS"})
