@@ -157,7 +157,8 @@ def sign_command(
         signature = sign(folder, role, code, _day(date))
         typer.echo(f"{folder}: {role} by {code} on {signature.date}, content {signature.content[:12]}")
         if left := len(stands_against(findings(folder, _day(date), page=False))):
-            typer.echo(f"{left} findings still stand against release:  briefkit check {shlex.quote(str(folder))}")
+            count = "1 finding still stands" if left == 1 else f"{left} findings still stand"
+            typer.echo(f"{count} against release:  briefkit check {shlex.quote(str(folder))}")
 
 
 @app.command("compare")

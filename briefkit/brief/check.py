@@ -33,7 +33,7 @@ from briefkit.brief.identity import (
     operator_folder,
     shown_path,
 )
-from briefkit.brief.register import REGISTER_FILE
+from briefkit.brief.register import REGISTER_FILE, Register
 from briefkit.brief.seal import seal_of
 from briefkit.brief.sign import problems
 from briefkit.brief.sources import sources
@@ -121,12 +121,12 @@ def _brief(folder: Path, today: dt.date, page: bool) -> tuple[Brief | None, list
     found += map(from_fault, crossed)
     brief = Brief(identity, aircraft, operation)
     found += _twins(identity, folder) + _people_in_sources(brief, folder)
-    unread = any(one.level is Level.BLOCKS and one.place == str(folder / NOTEBOOK) for one in found)
-    found += [] if unread else _signatures(brief, folder)
-    if crossed or disagreements(identity, aircraft, operation):
-        return None, found
     register, more = check_register.read_register(identity.operator)
     found += more
+    unread = any(one.level is Level.BLOCKS and one.place == str(folder / NOTEBOOK) for one in found)
+    found += [] if unread else _signatures(brief, folder, register)
+    if crossed or disagreements(identity, aircraft, operation):
+        return None, found
     if register is not None:
         found += check_register.source_revisions(brief, register, today)
     return brief, found + (page_standing(brief)[2] if page else [])
@@ -207,13 +207,15 @@ def _people_in_sources(brief: Brief, folder: Path) -> list[Finding]:
     return personal_data(f"{folder}: sources", "\n".join(said))
 
 
-def _signatures(brief: Brief, folder: Path) -> list[Finding]:
+def _signatures(brief: Brief, folder: Path, register: Register | None) -> list[Finding]:
+    """Who still has to sign, and whether this revision was issued with another content."""
     try:
         seal = seal_of(brief.identity)
     except BriefkitError as error:
         return [Finding(Level.BLOCKS, str(folder), str(error), "every file of the brief's folder is signed with it")]
     place = f"{folder / BRIEF_FILE}: signatures"
-    return [Finding(Level.BLOCKS, place, text, remedy) for text, remedy in problems(brief, seal)]
+    found = [Finding(Level.BLOCKS, place, text, remedy) for text, remedy in problems(brief, seal)]
+    return found + ([] if register is None else check_register.issued_before(brief.identity, seal.content, register))
 
 
 def _sorted(found: Iterable[Finding]) -> list[Finding]:

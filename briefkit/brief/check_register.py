@@ -76,6 +76,19 @@ def cited_by(brief: Brief, register: Register) -> list[Citation]:
     return citations(register, Path(identity.aircraft).stem, tuple(found))
 
 
+def issued_before(identity: Identity, content: str, register: Register) -> list[Finding]:
+    """A revision crews have in hand is never made again with another content, nor after a later one."""
+    found, place = [], f"{identity.folder / identity.file}: document.revision"
+    for entry in register.of(identity.number):
+        name = f"rev {entry.revision} was issued on {entry.registered}"
+        if entry.revision > identity.revision:
+            found.append(Finding(Level.BLOCKS, place, f"{name}, this is rev {identity.revision}", "raise the revision"))
+        elif entry.revision == identity.revision and entry.content != content:
+            remedy = "a changed page is a new revision: raise it, say in [[changes]] what is new, sign"
+            found.append(Finding(Level.BLOCKS, place, f"{name} with another content", remedy))
+    return found
+
+
 def previous(identity: Identity, register: Register) -> Path | None:
     """The archive of the revision crews have in hand; None where this is the first."""
     before = register.before(identity.number, identity.revision)

@@ -218,6 +218,21 @@ def test_a_relaxed_figure_needs_a_reason_before_release(issued, signing, tmp_pat
     assert (cell, "79 KIAS", "80 KIAS", "flight manual rev 5 raised the chart") in grid.rows
 
 
+def test_an_issued_revision_is_never_made_again_with_another_content(issued, signing) -> None:
+    """G36 and G37: raising a cell and signing again under the old revision would pass the comparison by."""
+    folder, _, _ = issued
+    signing.edit(folder.parent / RAISED[0], RAISED[1:])
+    signing(folder)
+    (found,) = stands_against(findings(folder, IN_FORCE, page=False))
+    assert (found.level, found.text) == (Level.BLOCKS, "rev 0 was issued on 2030-03-20 with another content")
+    assert standing(load_brief(folder), None, IN_FORCE).mark == DRAFT
+    register = folder.parent / "register.toml"
+    signing.edit(register, ("revision = 0", "revision = 3"))
+    assert "rev 3 was issued on 2030-03-20, this is rev 0" in [
+        one.text for one in findings(folder, IN_FORCE, page=False)
+    ]
+
+
 def test_a_more_conservative_revision_needs_none(issued, signing) -> None:
     folder, _, _ = issued
     lowered = (
