@@ -1,7 +1,7 @@
 """What may not stand in a deck or a session log: people's data, names, and how anyone did.
 
 Results belong in the operator's own training records, never beside what a group answered. Shapes can be found; a name
-in small letters cannot, so this is a guard against habit and not a promise.
+in small letters, or one that starts a sentence like any other word, cannot: a guard against habit and not a promise.
 """
 
 from __future__ import annotations

@@ -75,6 +75,22 @@ def test_the_manual_s_figure_is_a_cell_as_typed_and_else_rounded_down(two_t, ope
     assert between.where.endswith("+20 °C to +40 °C, interpolated")
 
 
+def test_the_manual_s_figure_is_never_rounded_up(two_t, operation):
+    said = ask(two_t, operation, mass="2,006 lb", pressure_altitude="8,000 ft", oat="25 degC").manual
+    assert (said.text, said.vne) == ("76 KIAS", 76.75)  # a quarter of the way from 79 to 70
+
+
+def test_a_covered_bank_under_ten_degrees_is_no_turn(two_t, operation):
+    """page.md 2: "no turn briefed at this mass"; the chart's top is 10,000 ft."""
+    day = {"mass": "2,006 lb", "pressure_altitude": "9,800 ft", "oat": "+20 degC", "bank": "30 deg"}
+    said = ask(two_t, operation, **day)
+    assert 0.0 < covered_bank(two_t, Condition(**day)) < 10.0
+    assert said.computed.says is Says.NO_TURN
+    assert said.computed.text.endswith("no turn of 30° at this mass.")
+    assert (said.computed.bank_deg, said.computed.reduction) == (None, None)
+    assert said.manual.vne is not None
+
+
 def test_the_manual_s_figure_knows_no_bank(four_h, operation):
     day = {"mass": "2,600 kg", "pressure_altitude": "3,000 ft", "oat": "0 degC"}
     level, turn = (ask(four_h, operation, **day, bank=bank).manual for bank in ("0 deg", "60 deg"))

@@ -172,6 +172,14 @@ def test_the_cold_case_is_cold_where_it_can_be(operator):
     assert cases[-1]["change"] == {"oat": "-43 degC"}  # the chart ends at -40
 
 
+def test_a_warm_area_s_cold_case_goes_to_the_chart_s_cold_end(operator):
+    """Vellmark's records end at +10: the case is set where the 2T's chart ends, -20."""
+    aircraft, operation = load_aircraft(operator / "aircraft" / "pelquill-2t.toml"), load_operation(operator)
+    cases = tomllib.loads(generate(aircraft, operation, "vellmark"))["case"]
+    (cold,) = (case for case in cases if "not what decides" in case["name"])
+    assert cold["start"]["oat"] == "-20 degC"
+
+
 def test_nothing_is_drawn_from_the_name_of_a_type(operator):
     operation = load_operation(operator)
     path = operator / "aircraft" / "kvillarn-4h.toml"

@@ -12,6 +12,7 @@ REFUSED = [
     "Berg",
     "Anna Berg: 20 deg",
     "we go with Berg",
+    "ask Berg about the bank",
     "J. Smith 70",
     "Capt Berg says 70",
     "capt berg 65",

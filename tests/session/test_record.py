@@ -12,6 +12,7 @@ import textwrap
 
 import pytest
 
+from briefkit.session.privacy import PersonalData
 from briefkit.session.record import RecordError, SessionLog, new_log_path, read_log
 from briefkit.session.recurrent import Session
 
@@ -198,6 +199,13 @@ def test_what_is_not_a_log_is_neither_read_nor_written_to(deck, tmp_path, conten
         with pytest.raises(RecordError, match="not a session log"):
             SessionLog(path, deck)
         assert path.read_bytes() == content
+
+
+def test_the_log_itself_refuses_names(log):
+    for fields in ({"predictions": ["70 kt", "Berg 70"]}, {"decision": "let Berg fly it"}):
+        with pytest.raises(PersonalData, match="no names"):
+            log.step("decision", **fields)
+    assert not log.path.exists()
 
 
 def test_no_such_log(tmp_path):
