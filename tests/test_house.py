@@ -17,7 +17,8 @@ ORDER = (
 )  # fmt: skip
 FORBIDDEN = {"brief": {"widgets"}}
 NEEDS_ONLY = {"physics": {"numpy", "briefkit"}, "errors": set(), "units": {"briefkit", "numpy"}}
-TOP_LEVEL = {"README.md", "DEVELOPERS.md", "pyproject.toml", "briefkit", "templates", "tests", "example_briefs", "LICENSE"}
+FILES = {"README.md", "DEVELOPERS.md", "pyproject.toml", "LICENSE"}
+TOP_LEVEL = FILES | {"briefkit", "templates", "tests", "example_briefs"}
 
 MODULES = sorted(path for path in PACKAGE.rglob("*.py") if path != PACKAGE / "__init__.py")
 
@@ -30,7 +31,8 @@ def imports(path: Path) -> set[str]:
             found |= {name.name for name in node.names}
         elif isinstance(node, ast.ImportFrom):
             assert node.level == 0, f"{path}: relative import"
-            found |= {f"{node.module}.{name.name}" if node.module == "briefkit" else str(node.module) for name in node.names}
+            whole = node.module == "briefkit"
+            found |= {f"briefkit.{name.name}" if whole else str(node.module) for name in node.names}
     return found
 
 

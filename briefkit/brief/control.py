@@ -86,12 +86,13 @@ def sources(listed: tuple[Source, ...], identity: Identity) -> Section:
     anchors = tuple(source.anchor for source in listed)
     header = ("No.", "Source", "What is from it")
     grid = Grid(header, rows, "Sources", Ink.CONTEXT, numbers=False, anchors=anchors)
-    return Section("Sources", grid=grid, points=tuple(f"Basis: {one}" for one in identity.basis))
+    return Section("Sources", grid=grid, after=(f"Basis: {'; '.join(identity.basis)}.",) if identity.basis else ())
 
 
 def made_from(brief: Brief, version: str, standing: Standing | None = None) -> Section:
     """The versions and data this page was made from, so that it can be made again."""
-    content = (("content (what a signature covers)", standing.seal.content[:_HASH_SHOWN]),) if standing is not None else ()
+    sealed = "" if standing is None else standing.seal.content[:_HASH_SHOWN]
+    content = (("content (what a signature covers)", sealed),) if sealed else ()
     rows = (
         ("briefkit", version),
         (brief.aircraft.file, brief.aircraft.data_hash[:_HASH_SHOWN]),

@@ -44,7 +44,8 @@ def test_the_2t_prints_the_cells_around_its_area(two_t: Aircraft, operation: Ope
 def test_the_3f_prints_masses_with_its_first_one_or_less(examples: Path, operation: Operation) -> None:
     found = grid(load_aircraft(examples / "aircraft" / "ormbrae-3f.toml"), operation, "corrant")
     assert found.header == ("Hp m (1013.25 set)", "1,700\u00a0kg or less", "2,000\u00a0kg", "2,380\u00a0kg")
-    assert found.rows == (("2,000", "264", "241", "213"), ("3,000", "236", "213", "185"), ("4,000", "208", "185", "157"))
+    assert found.rows[:2] == (("2,000", "264", "241", "213"), ("3,000", "236", "213", "185"))
+    assert found.rows[2:] == (("4,000", "208", "185", "157"),)
 
 
 def test_with_its_load_the_3f_prints_the_loads_figure(examples: Path, operation: Operation) -> None:
@@ -71,7 +72,7 @@ def test_a_figure_with_slopes_stands_as_typed(examples: Path, operation: Operati
 def test_what_is_read_off_a_line_is_rounded_down_and_marked(
     examples: Path, operation: Operation, tmp_path: Path
 ) -> None:
-    body = "reading = \"interpolate\"\nreading_error = \"1 kt\"\nlines = '''\nft   kt indicated\n"
+    body = 'reading = "interpolate"\nreading_error = "1 kt"\nlines = \'\'\'\nft   kt indicated\n'
     body += "-20 degC: 0 112, 7,000 100, 10,000 86\n+40 degC: 0 108, 6,000 79, 10,000 61\n'''"
     found = grid(with_chart(examples, tmp_path, body), operation)
     # at 6,000 ft the cold line is 112 - 12 x 6/7 = 101.7; at 7,000 the hot one 79 - 18/4 = 74.5
@@ -141,7 +142,8 @@ def test_the_picture_of_a_row_on_the_chart(examples: Path, operation: Operation,
 def test_a_picture_against_density_altitude_marks_the_point_there(
     examples: Path, operation: Operation, tmp_path: Path
 ) -> None:
-    body = "reading = \"interpolate\"\nchart = '''\nDA ft   kt indicated\n-3,000   112\n3,000   112\n8,000   86\n13,000   60\n'''"
+    rows = "DA ft   kt indicated\n-3,000   112\n3,000   112\n8,000   86\n13,000   60\n"
+    body = f"reading = \"interpolate\"\nchart = '''\n{rows}'''"
     aircraft = with_chart(examples, tmp_path, body)
     entry = operation.entry_for(aircraft)
     assert entry is not None

@@ -1,8 +1,8 @@
 """The demo world's scenarios, each for what it teaches.
 
 VNE is read in the invented manuals by hand. Blade loading, advance ratio and Mach number are arithmetic of weight, air
-and tip speed (their tolerance is the disc's own tilt, up to 5 % at the highest speed). The onset figures of an early trial are no
-reference and are not used.
+and tip speed (their tolerance is the disc's own tilt, up to 5 % at the highest speed). The onset figures of an early
+trial are no reference and are not used.
 """
 
 from __future__ import annotations
