@@ -36,8 +36,8 @@ def sources(brief: Brief) -> tuple[Source, ...]:
     stated = [
         *_of_aircraft(brief.aircraft),
         ("operator, order of documents, policy", operation.source),
-        *([("masses, bank, status", fleet.source), *_stated(fleet, "")] if fleet is not None else ()),
-        (f"work area {area.name}", area.source),
+        *([("masses, bank, status", fleet.source), *_stated(fleet, fleet.source)] if fleet is not None else ()),
+        (area.name, area.source),
         ("recognition, recovery, cautions", cues.HANDBOOK),
     ]
     for what, source in stated:
@@ -64,9 +64,7 @@ def _of_aircraft(aircraft: Aircraft) -> Iterator[tuple[str, str]]:
     for speed in aircraft.speeds:
         yield speed.label[:1].lower() + speed.label[1:], speed.source
     for hover in aircraft.hover_tables:
-        yield f"hover ceilings, {hover.kind}", hover.source
-    for line in aircraft.hover:
-        yield "hover", line.source
+        yield f"{hover.kind} hover ceilings", hover.source
     yield "recovery", aircraft.recovery_source
 
 
