@@ -146,14 +146,14 @@ class StallBoundary(Exhibit):
         words_here = "here" if speed is None else f"here, {units.show_number(speed)} {label}"
         level = answers.level
         vne = f"The manual's VNE here is {level.text} ({aircraft.vne.source})."
-        turn = _turn(condition)
+        turn = words.turn(condition)
         here = Here(float(units.from_si(value, quantity, unit)), speed, words_here)
         if condition.level_at_full_rotor_speed:
             return here, f"{vne} Level at 100 % rotor speed that is the answer."
         try:
             answer = answers.equivalent
         except Refusal as refusal:
-            return here, f"{vne} With {turn} there is no figure. {refusal}."
+            return here, f"{vne} With {turn} there is no figure: {words.why(refusal)}."
         here = replace(here, answer=answer.ias, answer_words=f"{turn}: {answer.text}")
         if answer.set_by is SetBy.MANUAL_VNE:
             return here, f"{vne} With {turn} nothing is taken off: VNE still limits."
@@ -207,16 +207,6 @@ def _name(curve: EquivalentCurve) -> str:
     if curve.bank_deg is None:
         return "equivalent VNE"
     return "level flight" if curve.bank_deg == 0.0 else f"{curve.bank_deg:g}° bank"
-
-
-def _turn(condition: Condition) -> str:
-    """What takes this condition away from level flight at 100 %, in words."""
-    parts = []
-    if condition.load_factor > 1.0 + 1e-12:
-        parts.append(f"{units.show_number(math.degrees(condition.bank))}° bank")
-    if abs(condition.rotor_speed - 1.0) > 1e-12:
-        parts.append(f"rotor at {100.0 * condition.rotor_speed:.4g} %")
-    return ", ".join(parts)
 
 
 def _floored(speed: float, why: str) -> str:
