@@ -7,6 +7,7 @@ from pathlib import Path
 
 import pytest
 
+from briefkit.aircraft.load import load_aircraft
 from briefkit.aircraft.model import Aircraft, Stated
 from briefkit.aircraft.operation import Operation, WorkArea, load_operation
 from briefkit.aircraft.operation_check import cross_check
@@ -157,3 +158,21 @@ def test_faults_of_several_tables_are_listed_together(examples: Path, tmp_path: 
         "work_areas.vellmark.pressure_altitudes, value 2",
         "fleet.pelquill-2t.masses, value 2",
     ]
+
+
+def test_a_corner_on_the_manuals_coldest_day_is_no_fault(examples: Path, operation: Operation) -> None:
+    three_f = load_aircraft(examples / "aircraft" / "ormbrae-3f.toml")
+    assert cross_check(with_area(operation, low_temperature=stated("-35 degC", "temperature")), three_f) == []
+    (fault,) = cross_check(with_area(operation, low_temperature=stated("-36 degC", "temperature")), three_f)
+    assert "-35 degC or warmer" in fault.permitted
+
+
+def test_an_entry_of_its_own_comes_before_the_one_for_the_rest(examples: Path, operation: Operation) -> None:
+    path = examples / "aircraft" / "ormbrae-3f.toml"
+    basic, load = load_aircraft(path), load_aircraft(path, "external load")
+    entries = [operation.entry_for(aircraft) for aircraft in (basic, load)]
+    assert [entry and entry.key for entry in entries] == ["ormbrae-3f", "ormbrae-3f-load"]
+    only = replace(operation, fleet={key: entry for key, entry in operation.fleet.items() if key != "ormbrae-3f-load"})
+    found = only.entry_for(load)
+    assert found is not None
+    assert found.key == "ormbrae-3f"

@@ -109,3 +109,16 @@ def test_an_answer_takes_the_finding_away(file_4h):
         ("[vne.reasons]", '[vne.reasons]\npower_off_under_midpoint = "2-6: so printed"'),
     )
     assert entry_findings(answered.load()) == []
+
+
+def test_the_midpoint_is_looked_at_on_the_hottest_day_of_a_density_altitude_chart(file_2t):
+    """VNE falls with density altitude, so less 20 kt fails worst on the hottest day at the greatest height."""
+    chart = "DA ft   kt indicated\n-5,000   112\n8,000   100\n14,000   70"
+    body = f"source = \"2-4\"\nreading = \"interpolate\"\nchart = '''\n{chart}\n'''"
+    made = file_2t.table("vne.power_on", body).table("vne.power_off", 'source = "2-4"\nless = "20 kt"')
+    (fault,) = entry_findings(made.load())
+    assert "27.1505(c)(1)" in fault.permitted
+    # ISA+35 at 10,000 ft is 30.2 C, a density altitude of 13,846 ft: VNE 70.8 there (71.7 calibrated), off 50.8 (53.7),
+    # climb 54 (56.6): (71.7 + 56.6)/2 - 53.7 = 10.5
+    assert "10,000 ft, 30" in fault.read.replace("\u00a0", " ")
+    assert fault.read.startswith("10.5")
