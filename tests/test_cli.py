@@ -33,7 +33,7 @@ def briefkit(*arguments: object, **options: object) -> subprocess.CompletedProce
 def operator(tmp_path: Path, examples: Path) -> Path:
     """The invented operator, with a notebook of words only."""
     folder = tmp_path / "operator"
-    shutil.copytree(examples, folder, ignore=shutil.ignore_patterns(".*", "*.html"))
+    shutil.copytree(examples, folder, ignore=shutil.ignore_patterns(".*", "*.html", "corrant-3f", "ysbrane-4h"))
     write_notebook(folder / "vellmark-2t" / "brief.ipynb", "1 + 1;")
     return folder
 
