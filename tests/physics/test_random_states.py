@@ -147,7 +147,7 @@ def test_ten_thousand_states(
         flight = trim(rotors[name], state, section=section)
         sound(flight)
         share = flight.solved.mean()
-        record_property(f"{name} {section} solved", share)
+        record_property(f"{name} {section} solved", float(share))
         print(f"\n{name} {section}: {share:.2%} solved")  # noqa: T201 - asked for: the solved share is printed
         # The section that never stalls must fly wherever the manual lets the aircraft; the stalling one may find that
         # a bank at VNE is past the rotor's greatest thrust.
