@@ -11,7 +11,7 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from briefkit.figures import canvas, theme
-from briefkit.figures.canvas import Margins, put, write
+from briefkit.figures.canvas import Margins, put, text_width, write
 from briefkit.figures.hatch import hatch
 from briefkit.figures.raster import Polar, disc_png, refine
 from briefkit.units import show_number
@@ -23,6 +23,7 @@ _HEIGHT = 356
 _RADIUS = 138.0  # px; the sides keep room for words, so that they need not be turned
 _HALF_WIDTH = theme.WIDTH / 2.0 / _RADIUS
 _HALF_HEIGHT = _HEIGHT / 2.0 / _RADIUS
+_STEP_SIZE = 11.0  # px, of the numbers on the map
 _FINE = np.linspace(0.0, 2.0 * math.pi, 121)
 _LABEL_RAYS = (180.0, 165.0, 150.0, 135.0, 120.0, 105.0, 90.0)
 
@@ -95,7 +96,8 @@ class DiscFigure:
         self._leader = canvas.lines(area, theme.GREY, theme.THIN)
         self._blade = canvas.patch(area, theme.MAP_INK)
         self._hub = canvas.patch(area, theme.INK)  # on the page, not on the map
-        self._steps = canvas.texts(area, align="middle", size=11.0)
+        self._plates = canvas.patch(area, theme.MAP_PAPER)
+        self._steps = canvas.texts(area, theme.MAP_INK, align="middle", size=_STEP_SIZE)
         self._arc = canvas.lines(area, theme.INK, theme.LINE)
         self._arc_head = canvas.patch(area, theme.INK)
         self._wind = canvas.lines(area, theme.INK, theme.LINE)
@@ -109,8 +111,8 @@ class DiscFigure:
 
     def _marks_in_order(self) -> list[bqplot.Mark]:
         return [
-            self._map, self._rim, self._root_ring, self._region, self._strokes, self._blade, self._hub, self._steps,
-            self._leader, self._arc, self._arc_head, self._wind, self._wind_head, self._left, self._right,
+            self._map, self._rim, self._root_ring, self._region, self._strokes, self._blade, self._hub, self._plates,
+            self._steps, self._leader, self._arc, self._arc_head, self._wind, self._wind_head, self._left, self._right,
             self._middle, self._wind_words, self._region_words, self._note,
         ]  # fmt: skip
 
@@ -158,19 +160,29 @@ class DiscFigure:
         self._map.image = image
 
     def _show_levels(self, polar: Polar, edges: Floats) -> None:
-        """The value of an edge, written on it: along the nose where it runs there, else further round."""
-        steps = theme.map_steps(edges.size - 1)
+        """The value of an edge, on a plate upon it: along the nose where it runs there, else further round.
+
+        Ink on the middle steps would not be read by a red lamp, which leaves only the red part of their light.
+        """
         placed: list[tuple[float, float, str]] = []
-        colours: list[str] = []
         for index in range(1, edges.size - 1):
             text = show_number(float(edges[index]), 0 if np.all(edges == np.round(edges)) else 1)
             for ray in self._rays:
                 spot = self._crossing(polar, float(edges[index]), math.radians(ray))
-                if spot is not None and all(abs(spot[0] - p[0]) > 0.2 or abs(spot[1] - p[1]) > 0.085 for p in placed):
+                if spot is not None and _has_room(spot, text, placed):
                     placed.append((*spot, text))
-                    colours.append(theme.ink_on(steps[index]))
                     break
-        write(self._steps, placed, colors=colours or [theme.MAP_INK])
+        fills = [theme.MAP_PAPER] * max(len(placed), 1)
+        plates = [_plate(*place) for place in placed]
+        put(
+            self._plates,
+            [x for x, _ in plates],
+            [y for _, y in plates],
+            colors=fills,
+            fill_colors=fills,
+            fill_opacities=[1.0] * len(fills),
+        )
+        write(self._steps, placed)
 
     def _crossing(self, polar: Polar, level: float, azimuth: float) -> tuple[float, float] | None:
         """Where a level crosses a ray, outermost, well inside the disc; None if it does not."""
@@ -241,6 +253,22 @@ class DiscFigure:
         aside = x + hand * (0.1 + 0.06 * abs(dx))
         words = [(aside, y + 0.05, "relative"), (aside, y - 0.05, "wind")]
         write(self._wind_words, words, align="start" if hand > 0 else "end")
+
+
+def _has_room(spot: tuple[float, float], text: str, placed: Sequence[tuple[float, float, str]]) -> bool:
+    """Whether a plate there lies inside the rim and clear of those placed before."""
+    x, y = _plate(*spot, text)
+    return float(np.hypot(x, y).max()) < 1.0 and all(
+        abs(spot[0] - p[0]) > 0.23 or abs(spot[1] - p[1]) > 0.1 for p in placed
+    )
+
+
+def _plate(x: float, y: float, text: str) -> tuple[Floats, Floats]:
+    """Corners, a little cut, of a plate that a text centred on (x, y) stands on."""
+    wide, high, cut = 0.5 * text_width(text, _STEP_SIZE) + 1.5, 0.5 * _STEP_SIZE + 0.75, 1.5
+    across = np.array([cut - wide, wide - cut, wide, wide, wide - cut, cut - wide, -wide, -wide])
+    up = np.array([high, high, high - cut, cut - high, -high, -high, cut - high, high - cut])
+    return x + across / _RADIUS, y + up / _RADIUS
 
 
 def _stack(x: float, rows: Sequence[str]) -> list[tuple[float, float, str]]:

@@ -66,20 +66,6 @@ def map_steps(count: int) -> tuple[tuple[int, int, int], ...]:
     return tuple(steps)
 
 
-def ink_on(colour: tuple[int, int, int]) -> str:
-    """Ink or paper, whichever reads better on a step of the map (relative luminance, WCAG 2.2)."""
-    return MAP_INK if luminance(colour) > 0.20 else MAP_PAPER
-
-
-def luminance(colour: tuple[int, int, int]) -> float:
-    """Relative luminance, 0 (black) to 1 (white), of an 8-bit sRGB colour (WCAG 2.2, definition; IEC 61966-2-1)."""
-    parts = []
-    for part in colour:
-        share = part / 255.0
-        parts.append(share / 12.92 if share <= 0.04045 else ((share + 0.055) / 1.055) ** 2.4)
-    return 0.2126 * parts[0] + 0.7152 * parts[1] + 0.0722 * parts[2]
-
-
 def stylesheet() -> str:
     """CSS for the figures of a page: colours by role, restated for a dark page, plain again on paper.
 

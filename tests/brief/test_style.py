@@ -9,12 +9,16 @@ from __future__ import annotations
 import colorsys
 import re
 from itertools import combinations
+from xml.etree import ElementTree
 
 import numpy as np
 import pytest
 
 from briefkit.brief.pages import template_folder
 from briefkit.figures import theme
+from briefkit.figures.disc import DiscFigure, levels_for
+from briefkit.figures.parts import Drawing
+from briefkit.figures.svg import svg
 
 HANDOUT = (template_folder() / "handout.css").read_text(encoding="utf-8")
 SCHEMES = ("light", "dark")
@@ -69,6 +73,36 @@ def test_text_can_be_read_by_a_red_lamp(scheme, role):
     """Only red light comes back from the paper: 7 : 1 (WCAG 1.4.6's ratio) by the red part alone."""
     colours = variables(scheme)
     assert ratio(linear(colours[role])[0], linear(colours["paper"])[0]) >= 7.0
+
+
+def test_numbers_on_the_stepped_map_can_be_read_by_a_red_lamp():
+    """Each lies whole on a plate, 7 : 1 by red light alone and in grey; neither changes with the scheme or the step.
+
+    Printed or dark, the map is the paper: its ink and plate carry no class that a style sheet could restate.
+    """
+    radii, azimuths = np.linspace(0.12, 1.0, 12), np.linspace(0.0, 2.0 * np.pi, 24, endpoint=False)
+    figure = DiscFigure(blades=4, rotation=-1, root_cutout=0.12, unit="kt")
+    figure.update(radii, azimuths, 400.0 * (radii[:, None] + 0.3 * np.sin(azimuths)), levels_for(0.0, 520.0))
+    drawn = list(ElementTree.fromstring(svg(Drawing(figure.figure, "Disc", "Speeds"))).iter())
+    plates = [
+        (part.get("fill"), np.array(re.findall(r"(-?[\d.]+),(-?[\d.]+)", part.get("d", "")), dtype=float))
+        for part in drawn
+        if part.tag.endswith("path") and part.get("fill") == theme.MAP_PAPER and part.get("stroke") is None
+    ]
+    numbers = [part for part in drawn if part.tag.endswith("text") and (part.text or "").isdigit()]
+    assert len(numbers) >= 6
+    for text in numbers:
+        x, y = map(float, re.findall(r"-?[\d.]+", text.get("transform", "")))
+        wide, high = 0.25 * 1.1 * 11.0 * len(text.text or ""), 0.36 * 11.0  # digits are 0.55 em wide, 0.72 em tall
+        under = [
+            fill for fill, corners in plates
+            if np.all(corners.min(0) <= [x - wide, y - high]) and np.all(corners.max(0) >= [x + wide, y + high])
+        ]  # fmt: skip
+        assert len(under) == 1, text.text
+        ink, plate = linear(text.get("fill", "")), linear(under[0] or "")
+        assert ratio(ink[0], plate[0]) >= 7.0
+        assert ratio(luminance(text.get("fill", "")), luminance(under[0] or "")) >= 7.0
+        assert text.get("class") is None
 
 
 @pytest.mark.parametrize("scheme", SCHEMES)
