@@ -75,8 +75,8 @@ def _advance(walk: _Walk, function: Function, members: Members, largest_step: Ar
     """One trial step of the members; kept where the residual does not grow too much."""
     unknowns = walk.x.shape[1]
     inverse, left = walk.inverse[members], walk.left[members, :unknowns]
-    step = -np.einsum("mij,mj->mi", inverse, left)
-    reach = np.max(np.abs(step) / largest_step, axis=1)
+    step = -(inverse @ left[:, :, None])[:, :, 0]
+    reach = (np.abs(step) / largest_step).max(axis=1)
     step *= (walk.fraction[members] / np.maximum(1.0, reach))[:, None]
     trial = walk.x[members] + step
     all_new = function(trial, members)
@@ -104,9 +104,9 @@ def _refresh(walk: _Walk, slopes: Slopes, members: Members) -> None:
 
 def _broyden(inverse: Array, step: Array, change: Array) -> Array:
     """Broyden's good update of an inverse Jacobian: the least change that maps the residual's change to the step."""
-    mapped = np.einsum("mij,mj->mi", inverse, change)
-    row = np.einsum("mi,mij->mj", step, inverse)
-    scale = np.einsum("mi,mi->m", step, mapped)
+    mapped = (inverse @ change[:, :, None])[:, :, 0]
+    row = (step[:, None, :] @ inverse)[:, 0]
+    scale = (step * mapped).sum(axis=1)
     safe = np.where(np.abs(scale) > 1e-300, scale, np.inf)
     updated: Array = inverse + (step - mapped)[:, :, None] * row[:, None, :] / safe[:, None, None]
     return updated

@@ -51,7 +51,7 @@ ALLOCATOR_HINT: Final = 8_000_000  # bytes, more than the arrays of one chunk to
 # No unknown moves farther in one step [rad; inflow by the tip speed]: t0 t1c t1s b0 b1c b1s induced tilt climb.
 _LARGEST_STEP: Final = np.array([0.12, 0.12, 0.12, 0.12, 0.12, 0.12, 0.03, 0.12, 0.12])
 _SHARES: Final = (0.0, 0.3, 0.55, 0.75, 0.9, 1.0)  # of the section asked for, on the way from attached to it
-_KINDS: Final = (Reason.NONE, Reason.OUTSIDE_MODEL, Reason.NO_TRIM)
+_KINDS: Final[NDArray[np.object_]] = np.array([Reason.NONE, Reason.OUTSIDE_MODEL, Reason.NO_TRIM], dtype=object)
 
 
 @dataclass(frozen=True, eq=False)
@@ -166,7 +166,7 @@ def _within_range(case: Case, way: Way) -> NDArray[np.bool_]:
 
     The exact limits are held after solving, when advance ratio and blade loading are known.
     """
-    finite = np.isfinite(np.stack([getattr(case, part.name) for part in fields(case)])).all(axis=0)
+    finite = np.isfinite(np.array([getattr(case, part.name) for part in fields(case)])).all(axis=0)
     hover = np.sqrt(np.where(case.weight > 0.0, case.weight, np.nan) / 2.0)
     sinking = case.speed * np.sin(case.climb) < -1.3 * LARGEST_DESCENT * hover
     slow = case.speed * np.cos(case.climb) < 0.8 * EDGEWISE * hover
@@ -259,11 +259,8 @@ def _reasons(case: Case, found: Found, model: Model) -> NDArray[np.object_]:
     lost = (found.evaluations > 0) & ~(found.left <= ACCEPTED)
     lost |= _deeply_stalled(case, motion, model)
     kinds = np.where(lost, 2, np.where(inside, 0, 1))
-    # Member by member: numpy would turn a text enumeration assigned to a whole array into plain text.
-    reason = np.empty(case.size, dtype=object)
-    for member, kind in enumerate(kinds):
-        reason[member] = _KINDS[kind]
-    return reason
+    # Looked up, not filled in: numpy would turn a text enumeration assigned to a whole array into plain text.
+    return _KINDS[kinds]
 
 
 def _deeply_stalled(case: Case, motion: Motion, model: Model) -> NDArray[np.bool_]:

@@ -3,15 +3,15 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, field
-from functools import cached_property
+from functools import cached_property, lru_cache
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from briefkit.errors import Reason
 from briefkit.physics.balance import Model
-from briefkit.physics.elements import Coefficients, Motion, flow_at, flow_coefficients, points_at
-from briefkit.physics.rotor import Case, Rotor, State
+from briefkit.physics.elements import Coefficients, Motion, Points, flow_at, flow_coefficients, points_at
+from briefkit.physics.rotor import Case, Planform, Rotor, State
 
 Array = NDArray[np.float64]
 
@@ -20,8 +20,12 @@ ELEMENT_CHUNK = 64  # members at a time, so that a large batch needs little beyo
 
 def tip_angle(rotor: Rotor, case: Case, terms: Coefficients) -> Array:
     """Angle of attack [rad] at the tip where it retreats square to the wind, (batch,)."""
-    tip = points_at(rotor.planform, np.array([1.0]), np.array([1.5 * np.pi]))
-    return flow_at(case, tip, terms).angle[:, 0]
+    return flow_at(case, _retreating_tip(rotor.planform), terms).angle[:, 0]
+
+
+@lru_cache(maxsize=32)
+def _retreating_tip(planform: Planform) -> Points:
+    return points_at(planform, np.array([1.0]), np.array([1.5 * np.pi]))
 
 
 @dataclass(frozen=True, eq=False)
