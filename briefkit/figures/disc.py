@@ -222,8 +222,10 @@ class DiscFigure:
             write(self._wind_words, [])
         else:
             self._draw_wind(wind_from_deg)
-            quarter = round((wind_from_deg + 90.0 * self._rotation) / 90.0) % 4 * 90
-            sides = {quarter: "advancing", (quarter + 180) % 360: "retreating"}
+            turned = (wind_from_deg + 90.0 * self._rotation) / 90.0
+            quarter = round(turned) % 4 * 90
+            if abs(turned - round(turned)) < 0.25:  # between the quarters no side of the aircraft is the advancing one
+                sides = {quarter: "advancing", (quarter + 180) % 360: "retreating"}
         rows = {}
         for bearing, name in names.items():
             side = sides.get(bearing)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from typing import Final
 
@@ -46,6 +47,15 @@ class Field:
     decimals: int
     mark: str
 
+    def along(self, azimuth: float) -> Floats:
+        """The values along the blade at an azimuth [rad], linear between the nodes on either side."""
+        count = self.azimuths.size
+        place = round(azimuth * count / (2.0 * np.pi), 6)
+        before = math.floor(place)
+        share = place - before
+        one, other = self.values[:, before % count], self.values[:, (before + 1) % count]
+        return np.asarray((1.0 - share) * one + share * other, dtype=float)
+
     def shown(self, value: float) -> str:
         """A value as printed: "0.62", "7.4°"."""
         return units.show_number(value, self.decimals) + self.mark
@@ -58,25 +68,29 @@ def checked(quantity: str) -> str:
     return quantity
 
 
-def field_of(quantity: str, solution: Solution, root: float) -> Field:
-    """The field of one quantity of a solved state; `root` is the root cut-out as a fraction of the radius."""
+def field_of(quantity: str, solution: Solution, root: float, turn: float = 0.0) -> Field:
+    """The field of one quantity of a solved state; `root` is the root cut-out as a fraction of the radius.
+
+    `turn` [rad] is by how much azimuth the advancing side is turned from 90 degrees (a relative wind not from ahead).
+    """
     if quantity == OVER_STALL:
         return _over_stall(solution)
     radii = np.linspace(root, 1.0, _RINGS + 1)
     azimuths = 2.0 * np.pi * np.arange(_AZIMUTHS) / _AZIMUTHS
     flow = solution.trim.elements(radii, azimuths)
+    tips = solution.trim.elements(np.array([root, 1.0]), np.array([0.5, 1.5]) * np.pi + turn)
     if quantity == MACH:
-        mach = flow.mach[0]
+        mach, (advancing, retreating) = flow.mach[0], tips.mach[0, -1]
         caption = (
-            f"The advancing tip meets Mach {units.show_number(mach[-1, _AZIMUTHS // 4], 2)}, the retreating tip "
-            f"{units.show_number(mach[-1, 3 * _AZIMUTHS // 4], 2)}."
+            f"The advancing tip meets Mach {units.show_number(advancing, 2)}, the retreating tip "
+            f"{units.show_number(retreating, 2)}."
         )
         return Field(radii, azimuths, mach, "Mach number at the blades", caption, "Mach number", (), 2, "")
     slow = ~(flow.speed[0] >= LEAST_SPEED * float(np.ravel(solution.trim.state.tip_speed)[0]))
     angle = _within(np.degrees(flow.angle[0]), slow, ANGLE)
     caption = (
         f"The retreating tip stands at {words.angle(solution.tip_angle_deg)}, the advancing tip at "
-        f"{words.angle(float(angle[-1, _AZIMUTHS // 4]))}. First signs of stall are looked for at 12° on the "
+        f"{words.angle(math.degrees(tips.angle[0, -1, 0]))}. First signs of stall are looked for at 12° on the "
         "retreating tip (NACA WR L-110, TR 840)."
     )
     note = f"{_ends(ANGLE)} {_SLOW}"
