@@ -58,16 +58,15 @@ def test_one_at_a_time_against_two_thousand_samples(two_t):
             if stated.spread:
                 changes[field] = stated.value + stated.spread / 1.96 * rng.standard_normal(count)
         sampled = rotor_of(two_t, **changes)
+        # A secant of this test's own from the nominal onset, its first step by the nominal slope.
         nominal = onset_speed(rotor, Conditions.of(one), FIRST_SIGNS)[0]
-        # A secant of this test's own from the nominal onset.
-        v0, v1 = np.full(count, nominal), np.full(count, nominal * 1.02)
-        a0, a1 = tip_angle_at(sampled, many, v0), tip_angle_at(sampled, many, v1)
-        for _ in range(3):
-            step = np.where(
-                np.abs(a1 - a0) > 1e-12, (FIRST_SIGNS - a1) * (v1 - v0) / np.where(a1 == a0, 1.0, a1 - a0), 0.0
-            )
-            v0, a0, v1 = v1, a1, v1 + step
-            a1 = tip_angle_at(sampled, many, v1)
+        near, far = tip_angle_at(rotor, Conditions.of(one).repeat(2), nominal * np.array([1.0, 1.02]))
+        v0 = np.full(count, nominal)
+        a0 = tip_angle_at(sampled, many, v0)
+        v1 = v0 + (FIRST_SIGNS - a0) * 0.02 * nominal / (far - near)
+        a1 = tip_angle_at(sampled, many, v1)
+        v1 = v1 + np.where(a1 == a0, 0.0, (FIRST_SIGNS - a1) * (v1 - v0) / np.where(a1 == a0, 1.0, a1 - a0))
+        a1 = tip_angle_at(sampled, many, v1)
         assert np.abs(a1 - FIRST_SIGNS).max() < math.radians(0.01)
         seen = indicated_of(two_t.calibration, v1, many.pressure, many.oat)
         low = np.percentile(seen, 2.5)

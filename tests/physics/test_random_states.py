@@ -191,7 +191,7 @@ def test_states_anywhere(rotors: dict[str, Rotor]) -> None:
 
 
 @pytest.mark.slow
-@settings(max_examples=200, deadline=None, derandomize=True)
+@settings(max_examples=100, deadline=None, derandomize=True)
 @given(
     name=st.sampled_from(list(MANUALS)),
     speed=st.floats(0.0, 120.0),

@@ -74,8 +74,8 @@ def first_harmonics(rotor: Rotor, flight: Trim) -> tuple[float, float, float]:
 
 # Harmonic balance keeps the mean and first harmonic; what the second feeds back grows with advance ratio. A teetering
 # beam has no second harmonic and agrees to .02 degree at mu .3 (the trial value); blades on own hinges do at mu .12.
-@pytest.mark.parametrize(("precone", "coupling"), [(0.0, 0.0), (0.04, 0.3)])
-@pytest.mark.parametrize(("mu", "free_tolerance"), [(0.12, 0.02), (0.3, 0.12)])
+@pytest.mark.parametrize(("precone", "coupling"), [(0.0, 0.0), pytest.param(0.04, 0.3, marks=pytest.mark.slow)])
+@pytest.mark.parametrize(("mu", "free_tolerance"), [(0.12, 0.02), pytest.param(0.3, 0.12, marks=pytest.mark.slow)])
 def test_three_hubs(
     rotor: Rotor,
     mass: tuple[float, float],
