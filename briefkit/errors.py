@@ -41,6 +41,10 @@ class ReadingError(BriefkitError, ValueError):
         super().__init__(f"read {read!r}; permitted: {permitted}" + (f"; {remedy}" if remedy else ""))
 
 
+class MixedSpeeds(BriefkitError, TypeError):
+    """Speeds of unlike kinds (indicated, calibrated, true), or a speed and a bare number, in one sum or comparison."""
+
+
 class Refusal(BriefkitError):
     """The tool declines to give a number, and says why.
 

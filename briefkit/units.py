@@ -8,10 +8,11 @@ from __future__ import annotations
 
 import math
 import re
+from dataclasses import dataclass
 from enum import StrEnum
 from typing import TYPE_CHECKING, Final
 
-from briefkit.errors import ReadingError
+from briefkit.errors import MixedSpeeds, ReadingError
 
 if TYPE_CHECKING:
     from typing import Any, TypeVar
@@ -72,12 +73,94 @@ _QUANTITY = re.compile(
 )
 
 
+# "85 KIAS", "150 km/h IAS": an airspeed that says its kind.
+_KIND = re.compile(r"(?P<number>[^A-Za-z]*\d)[ \u00a0]?(?:K|(?P<unit>km/h|mph) )(?P<kind>IAS|CAS|TAS)")
+
+
 class SpeedKind(StrEnum):
     """Which of the trade's three speeds a number is."""
 
     INDICATED = "IAS"
     CALIBRATED = "CAS"
     TRUE = "TAS"
+
+    @property
+    def words(self) -> str:
+        """ "indicated", "calibrated", "true"."""
+        return self.name.lower()
+
+    def label(self, unit: str) -> str:
+        """ "KIAS", "km/h IAS", "mph TAS": the unit as the trade writes it with the kind."""
+        return f"K{self}" if unit == "kt" else f"{unit} {self}"
+
+
+@dataclass(frozen=True, eq=False)
+class Speed:
+    """One airspeed with its kind: [m/s] inside, `unit` is what it is shown in.
+
+    Sums, differences (a difference is of the same kind) and comparisons are between equal kinds; with another kind, or
+    with a bare number, which has none, they raise `MixedSpeeds`. From one kind to the next leads only the aircraft's
+    calibration (indicated, calibrated) and the air of the day (calibrated, true).
+    """
+
+    value: float
+    kind: SpeedKind
+    unit: str = "kt"
+
+    @classmethod
+    def of(cls, number: float, unit: str, kind: SpeedKind = SpeedKind.INDICATED) -> Speed:
+        """From a number in a unit of speed."""
+        return cls(to_si(float(number), "speed", unit), kind, unit)
+
+    @property
+    def number(self) -> float:
+        """In its own unit, to 0.000001 of it (so that 85 kt kept in m/s is 85 kt again)."""
+        return round(from_si(self.value, "speed", self.unit), 6)
+
+    @property
+    def text(self) -> str:
+        """With unit and kind, floored to one unit: "75 KIAS"."""
+        return f"{show_number(round_down(self.number))} {self.kind.label(self.unit)}"
+
+    def of_kind(self, kind: SpeedKind) -> Speed:
+        """Itself where it is of this kind; else `MixedSpeeds`."""
+        if self.kind is not kind:
+            raise MixedSpeeds(f"a {self.kind.words} speed, {self._shown()}, where a speed is {kind.words}")
+        return self
+
+    def __add__(self, other: Speed) -> Speed:
+        return Speed(self.value + self._like(other), self.kind, self.unit)
+
+    def __sub__(self, other: Speed) -> Speed:
+        return Speed(self.value - self._like(other), self.kind, self.unit)
+
+    # Compared to 1e-9 m/s, so that 64 kt less 10 kt is 54 kt.
+    def __lt__(self, other: Speed) -> bool:
+        return round(self.value, 9) < round(self._like(other), 9)
+
+    def __le__(self, other: Speed) -> bool:
+        return round(self.value, 9) <= round(self._like(other), 9)
+
+    def __gt__(self, other: Speed) -> bool:
+        return not self <= other
+
+    def __ge__(self, other: Speed) -> bool:
+        return not self < other
+
+    def __eq__(self, other: object) -> bool:
+        return isinstance(other, Speed) and round(self.value, 9) == round(self._like(other), 9)
+
+    def __hash__(self) -> int:
+        return hash((round(self.value, 9), self.kind))
+
+    def _like(self, other: object) -> float:
+        if isinstance(other, Speed) and other.kind is self.kind:
+            return other.value
+        what = other._shown() if isinstance(other, Speed) else f"{other!r}, which has no kind"
+        raise MixedSpeeds(f"{self._shown()} and {what} are neither added nor compared")
+
+    def _shown(self) -> str:
+        return f"{from_si(self.value, 'speed', self.unit):g} {self.kind.label(self.unit)}"
 
 
 def permitted_units(quantity: str) -> tuple[str, ...]:
@@ -115,6 +198,22 @@ def read_with_unit(text: str, quantity: str) -> tuple[float, str]:
 def read(text: str, quantity: str) -> float:
     """Read a typed quantity to SI; see `read_with_unit`."""
     return read_with_unit(text, quantity)[0]
+
+
+def read_speed(text: str, kind: SpeedKind = SpeedKind.INDICATED) -> Speed:
+    """Read an airspeed that may say its kind: "85 kt", "85 KIAS", "150 km/h IAS", "100 KTAS".
+
+    Without a kind it is of `kind`; another kind than `kind` raises `ReadingError`, as does what `read` refuses.
+    """
+    found = _KIND.fullmatch(text.strip()) if isinstance(text, str) else None
+    if found is None:
+        value, unit = read_with_unit(text, "speed")
+        return Speed(value, kind, unit)
+    said = SpeedKind(found["kind"])
+    if said is not kind:
+        raise ReadingError(text, f"{kind.words} airspeed", f"this one is {said.words}: convert it first")
+    value, unit = read_with_unit(f"{found['number']} {found['unit'] or 'kt'}", "speed")
+    return Speed(value, kind, unit)
 
 
 def to_si(number: Number, quantity: str, unit: str) -> Number:

@@ -118,6 +118,8 @@ def true_onset(world: World, many: Conditions) -> np.ndarray:
     first = np.argmax(reached, axis=1)
     found = np.where(reached.any(axis=1), 0.0, np.inf)
     inner = np.nonzero(reached.any(axis=1) & (first > 0))[0]
+    if not len(inner):
+        return found
     low, high = speed[inner, first[inner] - 1], speed[inner, first[inner]]
     below, above = value[inner, first[inner] - 1], value[inner, first[inner]]
     for step in range(6):

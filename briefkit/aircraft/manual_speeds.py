@@ -12,24 +12,29 @@ from briefkit.aircraft.tables import SpeedEntry
 from briefkit.errors import ReadingError
 from briefkit.reading.document import Document
 from briefkit.reading.quantity import quoted
+from briefkit.units import Speed
 
-_FIGURE = re.compile(r"(?P<less>VNE less )?(?P<speed>[\d.,]+ ?[a-zA-Z/]+)(?: above (?P<bank>[\d.,]+ ?\S+))?")
+_FIGURE = re.compile(
+    r"(?P<less>VNE less )?(?P<speed>[\d.,]+ ?[a-zA-Z/]+(?: [ICT]AS)?)(?: above (?P<bank>[\d.,]+ ?\S+))?"
+)
 _EXAMPLES: Final = '"100 kt", "VNE less 10 kt" or "VNE less 10 kt above 30 deg"'
-Figure = tuple[float | None, float | None, float | None]
+Figure = tuple[Speed | None, float | None, float | None]
 
 
 def figure(text: str) -> Figure | None:
-    """Speed, amount below VNE [m/s] and bank above which it holds [rad], each None where not given; None if none."""
-    typed = " ".join(text.split()).replace("KIAS", "kt").replace("km/h IAS", "km/h").replace("mph IAS", "mph")
-    found = _FIGURE.fullmatch(typed)
+    """Indicated speed, amount below VNE [m/s] and bank above which it holds [rad], None where not given; None if none.
+
+    A calibrated or a true speed is none: the indicator shows neither.
+    """
+    found = _FIGURE.fullmatch(" ".join(text.split()))
     if found is None:
         return None
     try:
-        speed = units.read(found["speed"], "speed")
+        speed = units.read_speed(found["speed"])
         bank = units.read(found["bank"], "angle") if found["bank"] else None
     except ReadingError:
         return None
-    return (None, speed, bank) if found["less"] else (speed, None, bank)
+    return (None, speed.value, bank) if found["less"] else (speed, None, bank)
 
 
 def check(document: Document, key: str, entry: SpeedEntry, unit: str) -> None:
@@ -40,7 +45,7 @@ def check(document: Document, key: str, entry: SpeedEntry, unit: str) -> None:
     found = figure(typed)
     if found is not None:
         speed, less, bank = found
-        wrong = [speed is not None and not 10.0 <= speed <= 130.0, less is not None and not 0.0 < less <= 50.0]
+        wrong = [speed is not None and not 10.0 <= speed.value <= 130.0, less is not None and not 0.0 < less <= 50.0]
         if any(wrong) or (bank is not None and not 0.0 < bank < 1.5):
             document.fault(f"{key}.value", quoted(typed), "an airspeed and a bank such as a manual gives", "look again")
         elif unit and not re.search(rf"\b{re.escape('KIAS' if unit == 'kt' else unit)}|\b{re.escape(unit)}\b", typed):

@@ -63,7 +63,7 @@ class DisplayUnits:
 
     def speed_label(self, kind: units.SpeedKind = units.SpeedKind.INDICATED) -> str:
         """ "KIAS", "km/h IAS", "mph IAS"; likewise for calibrated and true."""
-        return f"K{kind}" if self.speed == "kt" else f"{self.speed} {kind}"
+        return kind.label(self.speed)
 
     @property
     def speed_step(self) -> float:
@@ -134,6 +134,21 @@ class Calibration:
         if not self.indicated:
             return np.asarray(calibrated, dtype=float)
         return np.asarray(np.interp(calibrated, self.calibrated, self.indicated, left=np.nan, right=np.nan))
+
+    def calibrated_of(self, speed: units.Speed) -> units.Speed:
+        """The calibrated airspeed of an indicated one. Raises `OutsideCalibration`, `MixedSpeeds` for another kind."""
+        indicated = speed.of_kind(units.SpeedKind.INDICATED).value
+        found = float(self.to_calibrated(indicated))
+        if not np.isfinite(found):
+            raise self.refuse(indicated, speed.unit)
+        return units.Speed(found, units.SpeedKind.CALIBRATED, speed.unit)
+
+    def indicated_of(self, speed: units.Speed) -> units.Speed:
+        """The indicated airspeed of a calibrated one, the inverse of `calibrated_of`; raises likewise."""
+        found = float(self.to_indicated(speed.of_kind(units.SpeedKind.CALIBRATED).value))
+        if not np.isfinite(found):
+            raise self.refuse(np.nan, speed.unit)
+        return units.Speed(found, units.SpeedKind.INDICATED, speed.unit)
 
     def refuse(self, indicated: float, unit: str) -> OutsideCalibration:
         """The refusal for an indicated speed [m/s] outside the table, in the type's own unit."""
@@ -220,8 +235,8 @@ class PowerOffVne:
 class ManualSpeed:
     """One other speed of the manual, printed verbatim with its page before anything computed.
 
-    What its figure says, where it has one, in SI: `speed` [m/s indicated], or `less_than_vne` [m/s], and `above_bank`
-    [rad] where it holds above a bank angle only. `value` is the figure as typed.
+    What its figure says, where it has one: `speed`, indicated, or `less_than_vne` [m/s], and `above_bank` [rad] where
+    it holds above a bank angle only. `value` is the figure as typed.
     """
 
     label: str
@@ -229,14 +244,18 @@ class ManualSpeed:
     applies: str
     source: str
     value: str = ""
-    speed: float | None = None
+    speed: units.Speed | None = None
     less_than_vne: float | None = None
     above_bank: float | None = None
 
 
 @dataclass(frozen=True)
 class RotorData:
-    """What the rotor model needs; a value typed "unknown" carries its class range as spread and its basis."""
+    """What the rotor model needs; a value typed "unknown" carries its class range as spread and its basis.
+
+    `flap_stop`: how far [rad] a blade may flap down from the plane square to the shaft before it meets its stop
+    (teetering: how far it may see-saw, either way); None where the file gives none.
+    """
 
     hub: Hub
     rotation: Rotation
@@ -253,6 +272,7 @@ class RotorData:
     lift_slope: Stated
     drag_area: Stated
     source: str
+    flap_stop: Stated | None = None
 
     @property
     def tip_speed(self) -> float:

@@ -71,14 +71,13 @@ def caution_findings(place: str, brief: Brief) -> list[Finding]:
 
 def rough_air_findings(place: str, brief: Brief, table: ReductionTable) -> list[Finding]:
     """Our slowest answer under the manual's rough-air speed is for the chief pilot to know; the page prints neither."""
-    answers = [row.answer.ias for row in table.rows if row.answer is not None]
+    answers = [row.answer.speed for row in table.rows if row.answer is not None]
     found = []
     for speed in brief.aircraft.speeds:
         if speed.applies != "turbulence" or speed.speed is None or not answers:
             continue
-        manual = units.from_si(speed.speed, "speed", table.unit)
-        if min(answers) < manual:
-            slowest = f"{min(answers):.0f} {table.unit}"
+        if min(answers) < speed.speed:
+            slowest = f"{min(answers).number:.0f} {table.unit}"
             text = f"the slowest answer in a turn, {slowest}, is under {speed.label}: {speed.text}"
             found.append(Finding(Level.NOTE, place, text, "the manual's speed alone is printed for rough air"))
     return found

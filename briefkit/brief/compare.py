@@ -252,7 +252,7 @@ def _stated(brief: Brief) -> Iterator[tuple[str, tuple[Stated, int]]]:
         yield f"VNE power off: {name}", (stated, 0)  # what it does is compared point by point
     for speed in aircraft.speeds:
         if speed.speed is not None:
-            yield f"manual speed, {speed.label}", (Stated(speed.speed, speed.text, speed.source), -1)
+            yield f"manual speed, {speed.label}", (Stated(speed.speed.value, speed.text, speed.source), -1)
         elif speed.less_than_vne is not None:
             yield f"manual speed, {speed.label}", (Stated(speed.less_than_vne, speed.text, speed.source), 1)
     fleet = brief.operation.entry_for(aircraft)

@@ -5,53 +5,50 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 
-import numpy as np
-
 from briefkit import units
 from briefkit.aircraft.model import Aircraft, Stated
 from briefkit.brief import words
 from briefkit.brief.pages import Grid, Ink, Section
-from briefkit.envelope.condition import Condition, Conditions
-from briefkit.envelope.equivalent import LOAD_EXPONENT, EquivalentVne
+from briefkit.envelope.condition import Condition
+from briefkit.envelope.equivalent import LOAD_EXPONENT, EquivalentVne, equivalent_vne
+from briefkit.envelope.margin import margin_to_vne
 from briefkit.envelope.reductions import ReductionRow, ReductionTable, RowKind
-from briefkit.envelope.speeds import indicated_of, true_of
+from briefkit.envelope.speeds import indicated_speed, true_speed
 from briefkit.envelope.spread import OnsetBand, onset_band
 from briefkit.errors import Refusal
 from briefkit.physics import atmosphere
+from briefkit.units import Speed, SpeedKind
 
 
 @dataclass(frozen=True)
 class Hand:
-    """One row worked by hand: every intermediate a pilot meets, in the type's units."""
+    """One row worked by hand: every intermediate a pilot meets; `below` is `vne_here` less `indicated`."""
 
     counts_as: float
-    true: float
-    indicated: float
-    vne_here: float
-    below: float
+    true: Speed
+    indicated: Speed
+    vne_here: Speed
+    below: Speed
 
 
 def work_by_hand(aircraft: Aircraft, at: Condition, answer: EquivalentVne) -> Hand:
-    """The steps from the block point to the reduction, from the chart point alone; speeds in the type's unit.
+    """The steps from the block point to the reduction, from the chart point alone; speeds with their kinds.
 
     `counts_as` is the mass [kg] with the load factor's guard; `true` the chart's VNE there as true airspeed;
     `indicated` the same true airspeed as indicated at the block point.
     """
     unit, point = aircraft.units.speed, answer.chart_point
-    chart_speed = float(aircraft.vne.indicated(point.pressure_altitude, point.temperature, point.mass))
-    pressure = atmosphere.pressure_at(point.pressure_altitude)
-    true = true_of(aircraft.calibration, chart_speed, pressure, point.temperature) * at.rotor_speed
-    many = Conditions.of(at)
-    indicated = indicated_of(aircraft.calibration, true, many.pressure, many.oat)
-    vne_here = float(
-        aircraft.vne.indicated(at.pressure_altitude, at.oat, at.mass if aircraft.vne.masses else point.mass)
-    )
 
-    def shown(speed: object) -> float:
-        return float(units.from_si(float(np.ravel(np.asarray(speed))[0]), "speed", unit))
+    def chart(height: float, oat: float, mass: float) -> Speed:
+        return Speed(float(aircraft.vne.indicated(height, oat, mass)), SpeedKind.INDICATED, unit)
 
-    below = shown(vne_here) - shown(indicated)
-    return Hand(at.mass * at.load_factor**LOAD_EXPONENT, shown(true), shown(indicated), shown(vne_here), below)
+    there = chart(point.pressure_altitude, point.temperature, point.mass)
+    pressure = float(atmosphere.pressure_at(point.pressure_altitude))
+    flown = true_speed(aircraft.calibration, there, pressure, point.temperature)
+    true = Speed(flown.value * at.rotor_speed, flown.kind, unit)
+    indicated = indicated_speed(aircraft.calibration, true, at.pressure, at.oat)
+    vne_here = chart(at.pressure_altitude, at.oat, at.mass if aircraft.vne.masses else point.mass)
+    return Hand(at.mass * at.load_factor**LOAD_EXPONENT, true, indicated, vne_here, vne_here - indicated)
 
 
 def method(aircraft: Aircraft, table: ReductionTable) -> Section:
@@ -90,11 +87,12 @@ def worked_line(aircraft: Aircraft, row: ReductionRow) -> str:
     mass = aircraft.limits.max_mass.text if not aircraft.vne.masses else words.mass(aircraft, point.mass)
     counts = f"{row.mass.text} at {words.place(aircraft, at)}, {row.bank_deg} degrees counts as"
     loaded = f"{words.height(aircraft, point.pressure_altitude, 10.0)}, {words.temperature(point.temperature)}"
-    there = f"{words.number(point.vne)} {kind}, is {words.number(hand.true)} {aircraft.units.speed} true"
+    there = f"{words.number(point.vne)} {kind}, is {words.number(hand.true.number)} {aircraft.units.speed} true"
+    below = f"{_below(aircraft, row, hand)}, so {words.knots(aircraft, row.reduction)}"
     return (
         f"By hand: {counts} {words.mass(aircraft, hand.counts_as)}; {mass} is as loaded at {loaded}; the manual’s VNE "
-        f"there, {there}, which is {words.number(hand.indicated)} {kind} at {here}; VNE here is "
-        f"{words.number(hand.vne_here)}: {_below(aircraft, row, hand)}, so {words.knots(aircraft, row.reduction)}."
+        f"there, {there}, which is {words.number(hand.indicated.number)} {kind} at {here}; VNE here is "
+        f"{words.number(hand.vne_here.number)}: {below}."
     )
 
 
@@ -103,9 +101,9 @@ def _below(aircraft: Aircraft, row: ReductionRow, hand: Hand) -> str:
     if row.at is None or row.at.climb <= 0.0:
         return f"{words.number(row.exact)} below"
     climb = units.show(row.at.climb, "vertical speed", "ft/min")
-    cost = f"{words.number(row.exact - hand.below)} {aircraft.units.speed}"
+    cost = f"{words.number(row.exact - hand.below.number)} {aircraft.units.speed}"
     return (
-        f"{words.number(hand.below)} below, and a climb of {climb} costs another {cost} by the rotor model: "
+        f"{words.number(hand.below.number)} below, and a climb of {climb} costs another {cost} by the rotor model: "
         f"{words.number(row.exact)} in all"
     )
 
@@ -137,7 +135,7 @@ def rows_section(aircraft: Aircraft, table: ReductionTable) -> Section:
                 words.place(aircraft, row.at),
                 words.mass(aircraft, hand.counts_as),
                 f"{words.height(aircraft, point.pressure_altitude, 10.0)}, {words.temperature(point.temperature)}",
-                f"{words.number(point.vne)} there, {words.number(hand.indicated)} here",
+                f"{words.number(point.vne)} there, {words.number(hand.indicated.number)} here",
                 words.number(row.exact),
                 words.knots(aircraft, row.reduction),
             ))  # fmt: skip
@@ -193,7 +191,7 @@ def assumptions(aircraft: Aircraft, table: ReductionTable) -> Section:
     )
     unit = aircraft.units.speed
     header = ("Input", "Value and source", "Spread", f"Lowers by, {unit}", f"Raises by, {unit}")
-    before.append(_band_line(aircraft, row, level, band))
+    before += [_band_line(aircraft, row, level, band), margin_line(aircraft, level, band)]
     return Section(
         "What the rotor model assumes",
         before=tuple(before),
@@ -216,6 +214,32 @@ def _band_line(aircraft: Aircraft, row: ReductionRow, level: Condition, band: On
         f"Level, {where}. First signs (12 degrees at the retreating tip): {end(band.central)}; with the spread below, "
         f"from {end(band.lower)}. Limit of control (16 degrees), with its spread: {end(band.upper)}."
     )
+
+
+def margin_line(aircraft: Aircraft, level: Condition, band: OnsetBand) -> str:
+    """How the band lies to the manual's VNE at the same place, told from its lower edge, and "not resolved" where the
+    margin is smaller than the band's half-width.
+    """
+    try:
+        vne = equivalent_vne(aircraft, level.changed(rotor_speed=1.0, climb=0.0)).vne
+    except Refusal as refusal:
+        return f"VNE governs; no margin to it here: {refusal}."
+    kind, unit, found = aircraft.units.speed_label(), aircraft.units.speed, margin_to_vne(aircraft, band, vne)
+    governs = f"VNE governs, {words.number(vne.number)} {kind} there"
+    if found.lower is None:
+        said = f"{governs}. Reduced margin: the band begins under the calibrated range"
+    elif found.reduced:
+        low, under = words.number(found.lower.number), words.number((vne - found.lower).number)
+        said = f"{governs}. Reduced margin: the band begins at {low} {kind}, {under} {unit} under it"
+    else:
+        above = words.number((found.lower - vne).number)
+        said = f"{governs}; the band begins {above} {unit} above it and is no speed to fly"
+    if found.margin is None or found.half_width is None:
+        return f"{said}; margin of the first signs: not resolved."
+    side = "above" if found.margin.value >= 0.0 else "under"
+    first = f"first signs {words.number(abs(found.margin.number))} {unit} {side} VNE"
+    width = f"{'at least ' if found.at_least else ''}{words.number(found.half_width.number)} {unit}"
+    return f"{said}; {first}, the band’s half-width {width}{'' if found.resolved else ': not resolved'}."
 
 
 def _taken(aircraft: Aircraft) -> list[str]:

@@ -80,15 +80,15 @@ def row_on_chart(aircraft: Aircraft, row: ReductionRow) -> str:
         speed_words=f"VNE, {kind}",
     )
     loaded = words.height(aircraft, point.pressure_altitude, 10.0)
-    here_words = (f"{row.mass.text}, {row.bank_deg}°", f"VNE {words.number(hand.vne_here)} here")
+    here_words = (f"{row.mass.text}, {row.bank_deg}°", f"VNE {words.number(hand.vne_here.number)} here")
     there_words = (f"as loaded at {loaded}", f"{words.number(point.vne)} on the chart")
-    here = Mark(along(aircraft, at.pressure_altitude, at.oat), hand.vne_here, here_words)
+    here = Mark(along(aircraft, at.pressure_altitude, at.oat), hand.vne_here.number, here_words)
     there = Mark(along(aircraft, point.pressure_altitude, point.temperature), point.vne, there_words)
     figure.update(here, there)
     alt = (
         f"{row.mass.text} at {words.place(aircraft, at)} with {row.bank_deg}° of bank is as loaded as level flight at "
         f"{loaded}, {words.temperature(point.temperature)}, where the chart gives {words.number(point.vne)} {kind}; "
-        f"here it gives {words.number(hand.vne_here)}."
+        f"here it gives {words.number(hand.vne_here.number)}."
     )
     hereabouts = words.height(aircraft, at.pressure_altitude)
     table = Table(
@@ -98,7 +98,7 @@ def row_on_chart(aircraft: Aircraft, row: ReductionRow) -> str:
                 "here",
                 hereabouts,
                 words.temperature(at.oat),
-                words.number(hand.vne_here),
+                words.number(hand.vne_here.number),
             ),
             ("there", loaded, words.temperature(point.temperature), words.number(point.vne)),
         ),

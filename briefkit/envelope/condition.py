@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 from briefkit import units
 from briefkit.errors import BriefkitError, OutsideLimits, ReadingError, Reason
 from briefkit.physics import atmosphere
+from briefkit.units import Speed, SpeedKind
 
 Floats = NDArray[np.float64]
 
@@ -65,8 +66,8 @@ class Condition:
     `Condition(mass="2,006 lb", pressure_altitude="5,210 ft", oat="36 degC", ias="85 kt", bank="30 deg",
     rotor_speed="100 %")`. Mass, height and temperature are required. `pressure_altitude` may instead be given as
     `elevation` with `qnh`; `bank` excludes `load_factor` (a level turn: n = 1/cos(bank)); `ias` (indicated, in the
-    manual's calibration) is needed only where a flight speed is; `climb` is a vertical speed; `mass_spread` and
-    `oat_spread` are half-widths, taken at their worse end.
+    manual's calibration; "85 KIAS" may say so, "85 KTAS" is refused) is needed only where a flight speed is; `climb` is
+    a vertical speed; `mass_spread` and `oat_spread` are half-widths, taken at their worse end.
 
     Fields are SI: kg, m, K, m/s, and fractions for rotor speed. Raises `ReadingError` for text that cannot be read
     and `OutsideLimits` for a number no helicopter can have.
@@ -97,15 +98,20 @@ class Condition:
         mass: float,
         pressure_altitude: float,
         oat: float,
-        ias: float | None = None,
+        ias: float | Speed | None = None,
         load_factor: float = 1.0,
         rotor_speed: float = 1.0,
         climb: float = 0.0,
         mass_spread: float = 0.0,
         oat_spread: float = 0.0,
     ) -> Self:
-        """The same from SI floats (kg, m, K, m/s indicated, fractions), for sweeps and widgets."""
+        """The same from SI floats (kg, m, K, m/s indicated, fractions), for sweeps and widgets.
+
+        `ias` may be a `Speed`: one of another kind raises `MixedSpeeds`.
+        """
         values = {name: value for name, value in locals().items() if name not in ("cls", "__class__")}
+        if isinstance(ias, Speed):
+            values["ias"] = ias.of_kind(SpeedKind.INDICATED).value
         for name, value in values.items():
             if value is not None:
                 _plausible(name, float(value))
@@ -119,9 +125,10 @@ class Condition:
         made._fill({field.name: getattr(self, field.name) for field in fields(self)} | _read(text))
         return made
 
-    def changed(self, **si: float | None) -> Self:
+    def changed(self, **si: float | Speed | None) -> Self:
         """A copy with some SI values replaced: `condition.changed(load_factor=1.0, rotor_speed=1.0)`."""
-        return type(self).si(**({field.name: getattr(self, field.name) for field in fields(self)} | si))
+        kept: dict[str, Any] = {field.name: getattr(self, field.name) for field in fields(self)}
+        return type(self).si(**(kept | si))
 
     def _fill(self, values: dict[str, Any]) -> None:
         defaults = {
@@ -130,6 +137,11 @@ class Condition:
         for field in fields(self):
             value = values[field.name] if field.name in values else defaults[field.name]
             object.__setattr__(self, field.name, None if value is None else float(value))
+
+    @property
+    def airspeed(self) -> Speed | None:
+        """`ias` with its kind."""
+        return None if self.ias is None else Speed(self.ias, SpeedKind.INDICATED)
 
     @property
     def bank(self) -> float:
@@ -224,7 +236,9 @@ def _read(text: dict[str, str]) -> dict[str, float]:
         raise ReadingError("pressure_altitude and elevation or qnh", "one way to give the height")
     if ("elevation" in text) != ("qnh" in text):
         raise ReadingError("elevation or qnh alone", "elevation together with qnh", "or pressure_altitude")
-    values = {name: units.read(typed, _DOORS[name]) for name, typed in text.items()}
+    values = {name: units.read(typed, _DOORS[name]) for name, typed in text.items() if name != "ias"}
+    if "ias" in text:
+        values["ias"] = units.read_speed(text["ias"]).value
     for name, value in values.items():
         _plausible(name, value)
     if "elevation" in values:

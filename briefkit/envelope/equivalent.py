@@ -12,7 +12,7 @@ from __future__ import annotations
 import math
 from collections.abc import Iterable
 from dataclasses import dataclass, replace
-from typing import Final
+from typing import ClassVar, Final
 
 import numpy as np
 from numpy.typing import NDArray
@@ -25,6 +25,7 @@ from briefkit.envelope.condition import Condition, Conditions
 from briefkit.envelope.speeds import indicated_of
 from briefkit.errors import BeyondChart, NoTrim, OutsideCalibration, OutsideChart, Reason, SetBy
 from briefkit.physics import atmosphere
+from briefkit.units import Speed, SpeedKind
 
 Floats = NDArray[np.float64]
 Reasons = NDArray[np.object_]
@@ -48,7 +49,8 @@ class EquivalentVne:
     """The answer at one condition, in the unit of the type's airspeed indicator, indicated.
 
     `ias`, `below_vne` (manual's VNE here less `ias`) and `upper` (with the plain load factor) are kept to 0.01 and not
-    floored; `text` is floored to one unit and carries unit and kind. `set_by` says whose number it is.
+    floored; `text` is floored to one unit and carries unit and kind. `set_by` says whose number it is. `speed`, `vne`
+    (the manual's, here) and `chart_vne` (the chart's, there) carry their kind with them.
     """
 
     ias: float
@@ -59,11 +61,30 @@ class EquivalentVne:
     set_by: SetBy
     chart_point: ChartPoint
 
+    @property
+    def speed(self) -> Speed:
+        """`ias` with its kind."""
+        return Speed.of(self.ias, self.unit)
+
+    @property
+    def vne(self) -> Speed:
+        """The manual's VNE here, indicated."""
+        return Speed.of(round(self.ias + self.below_vne, 2), self.unit)
+
+    @property
+    def chart_vne(self) -> Speed:
+        """The chart's VNE at `chart_point`, indicated there."""
+        return Speed.of(self.chart_point.vne, self.unit)
+
 
 @dataclass(frozen=True, eq=False)
 class EquivalentVnes:
-    """The answers of a batch (batch,), as in `EquivalentVne`; where `reason` is not empty the numbers are NaN."""
+    """The answers of a batch (batch,), as in `EquivalentVne`; where `reason` is not empty the numbers are NaN.
 
+    Every speed of it is of one `kind`, in one `unit`.
+    """
+
+    kind: ClassVar[SpeedKind] = SpeedKind.INDICATED
     ias: Floats
     below_vne: Floats
     upper: Floats

@@ -20,6 +20,7 @@ from briefkit.envelope.condition import Condition, Conditions
 from briefkit.envelope.days import Block, block_of
 from briefkit.envelope.equivalent import EquivalentVne, covered_banks, equivalent_vne, equivalent_vnes
 from briefkit.errors import Reason
+from briefkit.units import Speed, SpeedKind
 
 Floats = NDArray[np.float64]
 
@@ -39,9 +40,9 @@ class RowKind(StrEnum):
 
 @dataclass(frozen=True)
 class Floor:
-    """The lowest speed an answer may have [m/s indicated], and whose it is."""
+    """The lowest speed an answer may have, indicated, and whose it is."""
 
-    speed: float
+    speed: Speed
     text: str
     reason: str
 
@@ -77,17 +78,21 @@ class ReductionTable:
 def floor_of(aircraft: Aircraft, fleet: FleetEntry) -> Floor:
     """Highest of climb speed, IMC minimum when briefed, company minimum manoeuvring speed, foot of the calibration."""
     unit = aircraft.units
-    candidates = [Floor(aircraft.limits.climb_speed.value, aircraft.limits.climb_speed.text, "climb speed")]
+
+    def floor(value: float, text: str, reason: str) -> Floor:
+        return Floor(Speed(value, SpeedKind.INDICATED, unit.speed), text, reason)
+
+    candidates = [floor(aircraft.limits.climb_speed.value, aircraft.limits.climb_speed.text, "climb speed")]
     if aircraft.calibration.in_manual:
         low = aircraft.calibration.lowest_indicated
-        candidates.append(Floor(low, units.show(low, "speed", unit.speed), "foot of the airspeed calibration"))
+        candidates.append(floor(low, units.show(low, "speed", unit.speed), "foot of the airspeed calibration"))
     for stated, reason in (
         (fleet.imc_speed, "IMC minimum"),
         (fleet.minimum_manoeuvring_speed, "company minimum manoeuvring speed"),
     ):
         if stated is not None:
-            candidates.append(Floor(stated.value, stated.text, reason))
-    return max(candidates, key=lambda floor: floor.speed)
+            candidates.append(floor(stated.value, stated.text, reason))
+    return max(candidates, key=lambda one: one.speed)
 
 
 def reductions(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea) -> ReductionTable:
@@ -125,7 +130,7 @@ def _row(aircraft: Aircraft, fleet: FleetEntry, mass: Stated, block: Block, bank
     worst = int(np.argmax(np.where(unreadable, np.inf, answers.below_vne)))
     exact = 0.0 if unreadable[worst] else float(answers.below_vne[worst])
     reduction = units.round_up(exact, aircraft.units.speed_step)
-    lowest_floor = units.from_si(floor.speed, "speed", aircraft.units.speed)
+    lowest_floor = floor.speed.number
     at = _single(points, worst)
     if bool(unreadable[worst]) or np.all(answers.vne - reduction < lowest_floor):
         return ReductionRow(mass, RowKind.UNDER_FLOOR, bank_deg, 0.0, exact, at, None)

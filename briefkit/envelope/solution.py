@@ -18,6 +18,7 @@ from briefkit.errors import NoTrim, OutsideLimits, ReadingError, Reason
 from briefkit.physics import atmosphere
 from briefkit.physics.rotor import Rotor, State
 from briefkit.physics.trim import Trim, trim
+from briefkit.units import Speed, SpeedKind
 
 Floats = NDArray[np.float64]
 Reasons = NDArray[np.object_]
@@ -46,6 +47,11 @@ class Solution:
     tas: float
     phase_lag_deg: float
     trim: Trim
+
+    @property
+    def true_airspeed(self) -> Speed:
+        """`tas` with its kind."""
+        return Speed(self.tas, SpeedKind.TRUE)
 
 
 @dataclass(frozen=True, eq=False)

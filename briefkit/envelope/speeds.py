@@ -7,6 +7,7 @@ from numpy.typing import NDArray
 
 from briefkit.aircraft.model import Calibration
 from briefkit.physics import airspeed
+from briefkit.units import Speed
 
 Floats = NDArray[np.float64]
 
@@ -27,3 +28,16 @@ def indicated_of(calibration: Calibration, true: Floats | float, pressure: Float
     known = np.isfinite(true)
     calibrated = airspeed.calibrated_from_true(np.where(known, true, 0.0), pressure, oat)
     return calibration.to_indicated(np.where(known, calibrated, np.nan))
+
+
+def true_speed(calibration: Calibration, speed: Speed, pressure: float, oat: float) -> Speed:
+    """The true airspeed of an indicated one, as `true_of` for a single speed that carries its kind.
+
+    Raises `OutsideCalibration`, and `MixedSpeeds` for a speed of another kind.
+    """
+    return airspeed.to_true(calibration.calibrated_of(speed), pressure, oat)
+
+
+def indicated_speed(calibration: Calibration, speed: Speed, pressure: float, oat: float) -> Speed:
+    """The indicated airspeed of a true one, the inverse of `true_speed`; raises likewise."""
+    return calibration.indicated_of(airspeed.to_calibrated(speed, pressure, oat))

@@ -20,6 +20,7 @@ from briefkit.envelope.solution import rotor_of
 from briefkit.envelope.speeds import indicated_of
 from briefkit.errors import OutsideCalibration, OutsideLimits, Reason
 from briefkit.physics.rotor import Rotor
+from briefkit.units import Speed
 
 Floats = NDArray[np.float64]
 
@@ -49,6 +50,14 @@ class OnsetBand:
     upper: float | None
     unit: str
     contributions: tuple[Contribution, ...]
+
+    @property
+    def speeds(self) -> tuple[Speed | None, Speed | None, Speed | None]:
+        """`lower`, `central` and `upper` with their kind."""
+        lower, central, upper = (
+            None if end is None else Speed.of(end, self.unit) for end in (self.lower, self.central, self.upper)
+        )
+        return lower, central, upper
 
 
 @dataclass(frozen=True, eq=False)

@@ -14,7 +14,7 @@ from numpy.typing import ArrayLike, NDArray
 
 from briefkit.errors import OutsideLimits, Reason
 from briefkit.physics.atmosphere import speed_of_sound
-from briefkit.units import GAS_CONSTANT, HEAT_RATIO, SEA_LEVEL_PRESSURE, SEA_LEVEL_TEMPERATURE
+from briefkit.units import GAS_CONSTANT, HEAT_RATIO, SEA_LEVEL_PRESSURE, SEA_LEVEL_TEMPERATURE, Speed, SpeedKind
 
 Array = NDArray[np.float64]
 
@@ -34,6 +34,18 @@ def true_from_calibrated(cas: ArrayLike, pressure: ArrayLike, temperature: Array
 def calibrated_from_true(tas: ArrayLike, pressure: ArrayLike, temperature: ArrayLike) -> Array:
     """Calibrated airspeed [m/s] from true [m/s], the inverse of `true_from_calibrated`; same range, same refusal."""
     return _rescale(tas, pressure, speed_of_sound(temperature), SEA_LEVEL_PRESSURE, _SEA_LEVEL_SOUND, "true")
+
+
+def to_true(speed: Speed, pressure: float, temperature: float) -> Speed:
+    """The true airspeed of a calibrated one; `MixedSpeeds` for any other kind, else as `true_from_calibrated`."""
+    cas = speed.of_kind(SpeedKind.CALIBRATED).value
+    return Speed(float(true_from_calibrated(cas, pressure, temperature)), SpeedKind.TRUE, speed.unit)
+
+
+def to_calibrated(speed: Speed, pressure: float, temperature: float) -> Speed:
+    """The calibrated airspeed of a true one; `MixedSpeeds` for any other kind, else as `calibrated_from_true`."""
+    tas = speed.of_kind(SpeedKind.TRUE).value
+    return Speed(float(calibrated_from_true(tas, pressure, temperature)), SpeedKind.CALIBRATED, speed.unit)
 
 
 def _rescale(

@@ -163,7 +163,7 @@ def _covered(aircraft: Aircraft, fleet: FleetEntry, condition: Condition, covere
 def _under_floor(aircraft: Aircraft, fleet: FleetEntry, answer: EquivalentVne, reduction: float) -> str:
     """The floor in words where VNE less the printed reduction would lie under it; else ""."""
     floor = floor_of(aircraft, fleet)
-    if answer.ias + answer.below_vne - reduction >= units.from_si(floor.speed, "speed", aircraft.units.speed):
+    if answer.vne - units.Speed.of(reduction, answer.unit) >= floor.speed:
         return ""
     return f"{words.indicated(aircraft, floor.text)} ({floor.reason})"
 

@@ -18,7 +18,7 @@ from briefkit.aircraft.findings import entry_findings
 from briefkit.aircraft.load import load_aircraft
 from briefkit.aircraft.model import Aircraft, Hub
 from briefkit.errors import FaultyFile
-from briefkit.units import FOOT, KNOT, POUND
+from briefkit.units import FOOT, KNOT, POUND, Speed
 
 
 @pytest.fixture(scope="module")
@@ -198,7 +198,7 @@ source = "flight manual 2-5 rev 4"
     (speed,) = aircraft.speeds
     assert (speed.label, speed.applies) == ("Rough air", "turbulence")
     assert speed.text == "100 KIAS, less where the pilot sees fit"
-    assert speed.speed == pytest.approx(100 * KNOT)
+    assert speed.speed == Speed.of(100, "kt")
     assert (speed.less_than_vne, speed.above_bank) == (None, None)
     assert aircraft.hover[0].text == "7,250 ft at ISA; 4,950 ft at ISA+20; 3,400 ft at ISA+35"
     assert ("recovery", "flight manual 3-9 rev 4") in aircraft.sources

@@ -7,7 +7,7 @@ import math
 import pytest
 
 from briefkit.aircraft.manual_speeds import figure
-from briefkit.units import KILOMETRE_PER_HOUR, KNOT
+from briefkit.units import KILOMETRE_PER_HOUR, KNOT, Speed, SpeedKind
 
 
 def entry(**keys: str) -> str:
@@ -27,7 +27,10 @@ def entry(**keys: str) -> str:
     ],
 )
 def test_a_figure_is_read(text, speed, less, bank):
-    assert figure(text) == pytest.approx((speed, less, bank))
+    found = figure(text)
+    assert found is not None
+    assert found[0] == (None if speed is None else Speed(speed, SpeedKind.INDICATED))
+    assert found[1:] == pytest.approx((less, bank))
 
 
 @pytest.mark.parametrize(
@@ -39,7 +42,7 @@ def test_anything_else_is_no_figure(text):
 
 def test_the_4h_speaks_of_rough_air_and_of_bank(file_4h):
     rough, bank = file_4h.load().speeds
-    assert (rough.text, rough.applies, rough.speed) == ("100 KIAS", "turbulence", pytest.approx(100 * KNOT))
+    assert (rough.text, rough.applies, rough.speed) == ("100 KIAS", "turbulence", Speed.of(100, "kt"))
     assert (bank.text, bank.applies) == ("VNE less 10 above 30 degrees", "bank")
     assert (bank.speed, bank.less_than_vne, bank.above_bank) == (
         None,

@@ -65,10 +65,10 @@ def test_two_blades_without_the_low_g_caution_block(brief, table, monkeypatch) -
 
 def test_an_answer_under_the_manuals_rough_air_speed_is_for_the_chief_pilot(brief, table) -> None:
     """page.md 3: section 3 prints the manual's sentence and nothing else."""
-    rough = ManualSpeed("Rough air", "100 KIAS", "turbulence", "flight manual 2-6", "100 kt", 100.0 * units.KNOT)
+    rough = ManualSpeed("Rough air", "100 KIAS", "turbulence", "flight manual 2-6", "100 kt", units.Speed.of(100, "kt"))
     (found,) = page_findings(replace(brief, aircraft=replace(brief.aircraft, speeds=(rough,))), table)
     assert (found.level, "under Rough air: 100 KIAS" in found.text) == (Level.NOTE, True)
-    slow = replace(rough, speed=20.0 * units.KNOT)
+    slow = replace(rough, speed=units.Speed.of(20, "kt"))
     assert page_findings(replace(brief, aircraft=replace(brief.aircraft, speeds=(slow,))), table) == []
 
 
