@@ -56,6 +56,7 @@ def build_command(
         bool, typer.Option("--pdf", help="Print each page to PDF too, where a Chromium is installed.")
     ] = False,
     paper: Annotated[str, typer.Option(help="Paper of the PDF: A4, A5 or Letter.")] = "A4",
+    date: Day = None,
 ) -> None:
     """Make the page of every brief.
 
@@ -78,7 +79,7 @@ def build_command(
                 _print_result(result)
                 progress.advance(bar)
 
-            results = build(paths, out, tell, deck_pages)
+            results = build(paths, out, _day(date), tell, deck_pages)
         if pdf:
             from briefkit.brief.pdf import print_pdfs
 
@@ -111,9 +112,8 @@ def check_command(paths: Paths, as_json: Json = False, date: Day = None) -> None
     """
     with _plain_errors(faulty=2):
         from briefkit.brief.check import findings, stands_against
-        from briefkit.session.sheets import deck_findings
 
-        every = [(path, findings(path, _day(date)) + deck_findings(path)) for path in paths]
+        every = [(path, findings(path, _day(date))) for path in paths]
         if as_json:
             _print_json(
                 {"stands_against_release": sum(len(stands_against(found)) for _, found in every)},
@@ -270,7 +270,7 @@ def new_command(
             if not given[question.name]:
                 choices = f" ({', '.join(question.choices)})" if question.choices else ""
                 given[question.name] = typer.prompt(question.text + choices)
-        made = new(folder, Answers(**given), starter=starter)
+        made = new(folder, Answers(**given), dt.date.today(), starter)
         for file in made.written:
             typer.echo(f"written: {file}")
         if starter == Starter.RECURRENT_CHECK:

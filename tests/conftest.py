@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import datetime as dt
 from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -16,12 +17,19 @@ if TYPE_CHECKING:
     from briefkit.brief.pages import CrewPage
     from briefkit.brief.run import Ran
 
+# The demo briefs are in force on this day; no test's answer may hang on the clock's.
+TODAY = dt.date(2030, 6, 1)
 EXAMPLES = Path(__file__).parents[1] / "example_briefs"
 
 
 @pytest.fixture(scope="session")
 def examples() -> Path:
     return EXAMPLES
+
+
+@pytest.fixture(scope="session")
+def today() -> dt.date:
+    return TODAY
 
 
 @pytest.fixture(scope="session")
@@ -71,5 +79,5 @@ def exported() -> Exported:
     from briefkit.brief.run import run
 
     brief = load_brief(EXAMPLES / "vellmark-2t")
-    crew, ran = contents(brief), run(brief.identity.notebook)
+    crew, ran = contents(brief, TODAY), run(brief.identity.notebook)
     return Exported(crew, ran, compose(crew, ran, brief.identity.folder))

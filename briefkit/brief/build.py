@@ -6,6 +6,7 @@ Several kernels run at once, one failing brief does not stop the others, and a p
 from __future__ import annotations
 
 import asyncio
+import datetime as dt
 import os
 import time
 from collections.abc import Callable, Iterable, Iterator
@@ -76,9 +77,13 @@ def _below(folder: Path) -> Iterator[Path]:
 
 
 def build(
-    paths: Iterable[Path], out: Path, tell: Callable[[Result], None] | None = None, beside: Beside | None = None
+    paths: Iterable[Path],
+    out: Path,
+    today: dt.date,
+    tell: Callable[[Result], None] | None = None,
+    beside: Beside | None = None,
 ) -> tuple[Result, ...]:
-    """Build every brief below `paths` into the folder `out`; `tell` hears of each as it is done.
+    """Build every brief below `paths` as it stands on a day, into the folder `out`; `tell` hears of each as it is done.
 
     `beside` makes further pages of a brief, from rooms this one does not know; what it refuses fails the brief.
 
@@ -86,13 +91,13 @@ def build(
         BuildError: no brief found, or `out` cannot be written at all.
     """
     briefs = find_briefs(paths)
-    results = complete(_build_all(briefs, out, tell or (lambda _: None), beside or (lambda _, __: ())))
+    results = complete(_build_all(briefs, out, today, tell or (lambda _: None), beside or (lambda _, __: ())))
     write_page(out / INDEX, _index(results))
     return results
 
 
 async def _build_all(
-    briefs: tuple[Path, ...], out: Path, tell: Callable[[Result], None], beside: Beside
+    briefs: tuple[Path, ...], out: Path, today: dt.date, tell: Callable[[Result], None], beside: Beside
 ) -> tuple[Result, ...]:
     _make(out)
     cores = asyncio.Semaphore(_cores())
@@ -100,7 +105,7 @@ async def _build_all(
 
     async def one(folder: Path) -> Result:
         async with cores:
-            result = await _build_one(folder, out, taken, beside)
+            result = await _build_one(folder, out, taken, today, beside)
         tell(result)
         return result
 
@@ -115,7 +120,7 @@ def _make(out: Path) -> None:
     sweep(out)
 
 
-async def _build_one(folder: Path, out: Path, taken: dict[str, Path], beside: Beside) -> Result:
+async def _build_one(folder: Path, out: Path, taken: dict[str, Path], today: dt.date, beside: Beside) -> Result:
     start = time.monotonic()
     target, title, mark = None, "", ""
     try:
@@ -123,7 +128,7 @@ async def _build_one(folder: Path, out: Path, taken: dict[str, Path], beside: Be
         target = _target(brief, folder, out, taken)
         stays_inside(brief.identity)
         node = read_notebook(brief.identity.notebook)
-        page = contents(brief, node)
+        page = contents(brief, today, node)
         title, mark = page.heading, page.mark
         ran = await run_async(node, brief.identity.notebook)
         unchanged(brief, page, node)

@@ -9,8 +9,12 @@ from __future__ import annotations
 
 import calendar
 import datetime as dt
+import re
 from collections.abc import Iterable
+from dataclasses import replace
 from pathlib import Path
+from pkgutil import resolve_name
+from typing import Final
 
 from briefkit.aircraft.operation import OPERATION_FILE, Operation, load_operation
 from briefkit.aircraft.operation_check import cross_check
@@ -31,7 +35,6 @@ from briefkit.brief.identity import (
     named_aircraft,
     named_configuration,
     operator_folder,
-    shown_path,
 )
 from briefkit.brief.register import REGISTER_FILE, Register
 from briefkit.brief.seal import seal_of
@@ -40,26 +43,31 @@ from briefkit.brief.sources import sources
 from briefkit.envelope.reductions import ReductionTable
 from briefkit.errors import BriefkitError, Fault, FaultyFile
 
+# What a later room finds on a brief, named as an entry point names things: no road to a page may leave it out, and
+# imports go one way all the same.
+_LATER: Final = ("briefkit.session.sheets:deck_findings",)
+
 __all__ = ["Finding", "Level", "findings", "page_standing", "stands_against"]
 
 
-def findings(path: Path | str, today: dt.date | None = None, *, page: bool = True) -> list[Finding]:
+def findings(path: Path | str, today: dt.date, *, page: bool = True) -> list[Finding]:
     """Every finding on a brief (folder or `brief.toml`), on all briefs of an operator folder, or on an aircraft file.
 
-    `today` is the day expiry is held against, by default the clock's. Without `page` what has to be computed for the
+    `today` is the day expiry is held against. Without `page` what has to be computed for the
     crew's page is left out. Over an operator folder it also says which briefs a revised document touches, and which
-    issued pages. Raises `FaultyFile` only where the path leads to nothing to check.
+    issued pages. Places are paths inside the operator folder (or inside `path`, above several): none of this machine.
+    Raises `FaultyFile` only where the path leads to nothing to check.
     """
-    path, today = Path(path), today or dt.date.today()
-    if path.is_file() and path.name == BRIEF_FILE:
-        path = path.parent
-    if path.is_file():
-        if path.suffix != ".toml" or path.name in (OPERATION_FILE, REGISTER_FILE):
+    start = Path(path).resolve()
+    if start.is_file() and start.name == BRIEF_FILE:
+        start = start.parent
+    if start.is_file():
+        if start.suffix != ".toml" or start.name in (OPERATION_FILE, REGISTER_FILE):
             raise _nothing(path)
-        return _sorted(aircraft_findings(path)[1])
-    if (path / BRIEF_FILE).is_file():
-        return _sorted(_brief(path, today, page)[1])
-    folders = [file.parent for file in sorted(path.rglob(BRIEF_FILE)) if not _hidden(file.relative_to(path))]
+        return _sorted(aircraft_findings(start)[1], start.parent)
+    if (start / BRIEF_FILE).is_file():
+        return _sorted(_brief(start, today, page)[1], start)
+    folders = [file.parent for file in sorted(start.rglob(BRIEF_FILE)) if not _hidden(file.relative_to(start))]
     if not folders:
         raise _nothing(path)
     found, briefs = [], []
@@ -67,7 +75,7 @@ def findings(path: Path | str, today: dt.date | None = None, *, page: bool = Tru
         brief, more = _brief(folder, today, page)
         found += more
         briefs += [brief] if brief is not None else []
-    return _sorted([*found, *_over_all(briefs, today)])
+    return _sorted([*found, *_over_all(briefs, today)], start)
 
 
 def stands_against(found: Iterable[Finding]) -> list[Finding]:
@@ -79,7 +87,7 @@ def _hidden(inside: Path) -> bool:
     return any(part.startswith(".") for part in inside.parts)
 
 
-def _nothing(path: Path) -> FaultyFile:
+def _nothing(path: Path | str) -> FaultyFile:
     permitted = f"a folder with a {BRIEF_FILE}, an operator folder, or an aircraft file"
     return FaultyFile([Fault(str(path), "path", "nothing to check", permitted, "check the path")])
 
@@ -101,19 +109,19 @@ def _brief(folder: Path, today: dt.date, page: bool) -> tuple[Brief | None, list
     identity, found = loaded(folder / BRIEF_FILE, load_identity)
     operation, aircraft = None, None
     try:
-        operation, more = loaded(shown_path(operator_folder(folder) / OPERATION_FILE), load_operation)
+        operation, more = loaded(operator_folder(folder) / OPERATION_FILE, load_operation)
         found += more
     except FaultyFile as error:
         found += [finding for fault in error.faults if (finding := from_fault(fault)) not in found]
     found += notebook_findings(folder)
     if (named := named_aircraft(folder)) is not None:
-        aircraft, more = aircraft_findings(named, named_configuration(folder))
+        aircraft, more = aircraft_findings(named.absolute(), named_configuration(folder))
         found += more
     if identity is not None:
         found += _identity(identity, operation, folder, today)
         found += map(from_fault, disagreements(identity, aircraft, operation))
     if operation is not None:
-        place = str(shown_path(operator_folder(folder) / OPERATION_FILE))
+        place = str(operator_folder(folder) / OPERATION_FILE)
         found += source_findings(place, operation.sources) + invented_finding(place, operation.invented)
     if operation is None or aircraft is None or identity is None:
         return None, found
@@ -121,6 +129,8 @@ def _brief(folder: Path, today: dt.date, page: bool) -> tuple[Brief | None, list
     found += map(from_fault, crossed)
     brief = Brief(identity, aircraft, operation)
     found += _twins(identity, folder) + _people_in_sources(brief, folder)
+    for name in _LATER:
+        found += resolve_name(name)(brief)
     register, more = check_register.read_register(identity.operator)
     found += more
     unread = any(one.level is Level.BLOCKS and one.place == str(folder / NOTEBOOK) for one in found)
@@ -140,7 +150,7 @@ def page_standing(brief: Brief) -> tuple[ReductionTable | None, tuple[Difference
     try:
         table = table_of(brief)
     except BriefkitError as error:
-        place = f"{shown_path(brief.identity.operator / brief.operation.file)}: work_areas.{brief.identity.work_area}"
+        place = f"{brief.identity.operator / brief.operation.file}: work_areas.{brief.identity.work_area}"
         return None, (), [Finding(Level.BLOCKS, place, str(error), "a work area or a mass the manual does not cover")]
     found = page_findings(brief, table)
     register, _ = check_register.read_register(brief.identity.operator)
@@ -194,7 +204,7 @@ def _twins(identity: Identity, folder: Path) -> list[Finding]:
         except FaultyFile:
             continue
         if (other.number, other.revision) == (identity.number, identity.revision):
-            text = f"{other.number} rev {other.revision} is also the brief in {shown_path(file.parent)}"
+            text = f"{other.number} rev {other.revision} is also the brief in {file.parent}"
             place = f"{folder / BRIEF_FILE}: document.number"
             found.append(Finding(Level.BLOCKS, place, text, "give each its own number, or the later one a revision"))
     return found
@@ -218,7 +228,17 @@ def _signatures(brief: Brief, folder: Path, register: Register | None) -> list[F
     return found + ([] if register is None else check_register.issued_before(brief.identity, seal.content, register))
 
 
-def _sorted(found: Iterable[Finding]) -> list[Finding]:
-    """Each once, what blocks first, otherwise in the order found."""
+def _sorted(found: Iterable[Finding], start: Path) -> list[Finding]:
+    """Each once, what blocks first, otherwise in the order found; paths as from the operator folder of `start`."""
+    try:
+        root = operator_folder(start)
+    except FaultyFile:
+        root = start
+    here = re.compile(re.escape(str(root)) + r"([\\/]|(?![\w.-]))")
+
+    def inside(text: str) -> str:
+        return here.sub(lambda match: "" if match[1] else root.name, text)
+
+    found = [replace(one, place=inside(one.place), text=inside(one.text), remedy=inside(one.remedy)) for one in found]
     order = list(Level)
     return sorted(dict.fromkeys(found), key=lambda finding: order.index(finding.level))

@@ -10,7 +10,7 @@ from typing import Final
 
 from briefkit.brief.compare import Difference, Revision, explained, relaxed
 from briefkit.brief.finding import Finding, Level, from_fault
-from briefkit.brief.identity import BRIEF_FILE, Brief, Identity, shown_path
+from briefkit.brief.identity import BRIEF_FILE, Brief, Identity
 from briefkit.brief.issue import ARCHIVE, archive_name, opened
 from briefkit.brief.register import Citation, Register, citations, load_register, older, stale
 from briefkit.brief.sources import sources
@@ -43,7 +43,7 @@ def source_revisions(brief: Brief, register: Register, today: dt.date) -> list[F
     """Sources that are not from the current revision of a registered document, and documents due for review."""
     if not register.documents:
         text = "no document is registered, so no source is held against its current revision"
-        return [Finding(Level.NOTE, str(shown_path(register.path)), text, "list them under [[documents]]")]
+        return [Finding(Level.NOTE, str(register.path), text, "list them under [[documents]]")]
     found = []
     for cited in cited_by(brief, register):
         if stale(cited):
@@ -52,9 +52,7 @@ def source_revisions(brief: Brief, register: Register, today: dt.date) -> list[F
         due = document.review is not None and document.review <= today
         if due and any(cited.document == document for cited in cited_by(brief, register)):
             text = f"{document.name} was due for review on {document.review}"
-            found.append(
-                Finding(Level.BLOCKS, str(shown_path(register.path)), text, "the office reviews it and moves the date")
-            )
+            found.append(Finding(Level.BLOCKS, str(register.path), text, "the office reviews it and moves the date"))
     return found
 
 
@@ -106,9 +104,7 @@ def figures_relaxed(present: Revision, register: Register) -> tuple[tuple[Differ
             found = tuple(relaxed(old, present))
     except BriefkitError as error:
         remedy = "put the archive briefkit issue wrote back: without it nobody sees what was relaxed"
-        return (), [
-            Finding(Level.BLOCKS, str(shown_path(archive)), f"the last issued revision cannot be read: {error}", remedy)
-        ]
+        return (), [Finding(Level.BLOCKS, str(archive), f"the last issued revision cannot be read: {error}", remedy)]
     place = f"{identity.folder / BRIEF_FILE}: changes"
     return found, [
         Finding(Level.REASON, place, str(one), f'if it is meant: figures = ["{one.name}"] and reason = "..." there')
@@ -129,7 +125,7 @@ def touched(briefs: Iterable[Brief], register: Register) -> list[Finding]:
         if stale_in:
             whose = f" ({document.aircraft})" if document.aircraft else ""
             text = f"{document.name}{whose}, now rev {document.revision}, touches {', '.join(sorted(set(stale_in)))}"
-            found.append(Finding(Level.NOTE, str(shown_path(register.path)), text, "each needs a new revision"))
+            found.append(Finding(Level.NOTE, str(register.path), text, "each needs a new revision"))
     return found
 
 
@@ -145,9 +141,5 @@ def to_recall(briefs: Iterable[Brief], register: Register, today: dt.date) -> li
         old = sorted({one.source for one in citations(register, stems.get(number, ""), rests_on) if stale(one)})
         if old:
             text = f"{number} rev {entry.revision} is with the crews and rests on {', '.join(old)}, revised since"
-            found.append(
-                Finding(
-                    Level.NOTE, str(shown_path(register.path)), text, "recall it, or withdraw it: withdrawn = a date"
-                )
-            )
+            found.append(Finding(Level.NOTE, str(register.path), text, "recall it, or withdraw it: withdrawn = a date"))
     return found

@@ -27,13 +27,13 @@ from briefkit.envelope.reductions import ReductionTable
 from briefkit.errors import BriefkitError, BuildError
 
 
-def contents(brief: Brief, node: NotebookNode | None = None, today: dt.date | None = None) -> CrewPage:
-    """Pages 1 to 4 of a loaded brief, DRAFT unless released on that day (by default the clock's) with these cells.
+def contents(brief: Brief, today: dt.date, node: NotebookNode | None = None) -> CrewPage:
+    """Pages 1 to 4 of a loaded brief, DRAFT unless released on that day with these cells.
 
     Raises BriefkitError where the operation asks for what cannot be answered.
     """
     stays_inside(brief.identity)
-    known = standing(brief, None if node is None else node.cells, today)
+    known = standing(brief, today, None if node is None else node.cells)
     return mark_changes(crew_page(brief, version("briefkit"), known), brief.identity)
 
 
@@ -91,8 +91,8 @@ def compose(page: CrewPage, ran: Ran, folder: Path) -> str:
     return harden(link(render(page, tuple(blocks)), page.sources))
 
 
-def export(notebook: Path, node: NotebookNode | None = None) -> str:
-    """Run the notebook of a brief (or `node`, if given, in its place) and give the page.
+def export(notebook: Path, today: dt.date, node: NotebookNode | None = None) -> str:
+    """Run the notebook of a brief (or `node`, if given, in its place) and give its page on a day.
 
     Raises:
         BriefkitError: faults of the typed files, a failing cell, something without a still.
@@ -104,7 +104,7 @@ def export(notebook: Path, node: NotebookNode | None = None) -> str:
     brief = load_brief(notebook.parent)
     stays_inside(brief.identity)
     node = read_notebook(notebook) if node is None else node
-    page = contents(brief, node)
+    page = contents(brief, today, node)
     ran = run_node(node, notebook)
     unchanged(brief, page, node)
     return compose(page, ran, notebook.parent)
@@ -114,7 +114,7 @@ def released(brief: Brief, day: dt.date) -> tuple[str, str, ReductionTable]:
     """Run a brief's notebook on a day: the page, its mark ("" where it is released), its table of turns."""
     stays_inside(brief.identity)
     node = read_notebook(brief.identity.notebook)
-    known = standing(brief, node.cells, day)
+    known = standing(brief, day, node.cells)
     page = mark_changes(crew_page(brief, version("briefkit"), known), brief.identity)
     if page.mark or known.table is None:
         raise BuildError(f"{brief.identity.number} rev {brief.identity.revision}: {page.mark}; see briefkit check")
@@ -171,7 +171,7 @@ class BriefExporter(Exporter):
         try:
             if notebook is None:
                 raise BuildError(f"a brief is exported from its file, {NOTEBOOK}, not from a stream")
-            return export(notebook, node), ready
+            return export(notebook, dt.date.today(), node), ready
         except BriefkitError as error:
             if not _on_the_command_line():
                 raise

@@ -280,23 +280,23 @@ def named_aircraft(path: Path | str) -> Path | None:
 
 def disagreements(identity: Identity, aircraft: Aircraft | None, operation: Operation | None) -> list[Fault]:
     """What brief.toml says of the aircraft and the operation that they do not say."""
-    faults = []
+    faults, file = [], str(identity.folder / identity.file)
     if operation is not None and identity.work_area not in operation.work_areas:
         known = operation.work_areas
         permitted = f"{', '.join(known)} ({operation.file})"
         remedy = did_you_mean(identity.work_area, known)
-        faults.append(Fault(identity.file, "subject.work_area", quoted(identity.work_area), permitted, remedy))
+        faults.append(Fault(file, "subject.work_area", quoted(identity.work_area), permitted, remedy))
     if aircraft is not None:
         for number, serial in enumerate(identity.serials, start=1):
             if serial not in aircraft.serials:
                 permitted = f"{', '.join(aircraft.serials) or 'none'} ({aircraft.file})"
                 why = dict(aircraft.refused_serials).get(serial, "")
-                faults.append(Fault(identity.file, f"subject.serials, value {number}", quoted(serial), permitted, why))
+                faults.append(Fault(file, f"subject.serials, value {number}", quoted(serial), permitted, why))
         if identity.configuration != aircraft.configuration:
             permitted = f"{', '.join(quoted(name) for name in aircraft.configurations)} ({aircraft.file})"
             read = quoted(identity.configuration)
             remedy = "another configuration may have another VNE: its own [[configuration]] in the aircraft file"
-            faults.append(Fault(identity.file, "subject.configuration", read, permitted, remedy))
+            faults.append(Fault(file, "subject.configuration", read, permitted, remedy))
     return faults
 
 

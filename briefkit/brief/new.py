@@ -123,17 +123,15 @@ class Starter(StrEnum):
     RECURRENT_CHECK = "recurrent-check"
 
 
-def new(
-    folder: Path | str, answers: Answers, today: dt.date | None = None, starter: Starter | str = Starter.TYPE
-) -> Made:
+def new(folder: Path | str, answers: Answers, today: dt.date, starter: Starter | str = Starter.TYPE) -> Made:
     """Make a brief for one type.
 
     Below an operator folder `folder` becomes the brief's own folder. Where there is none, `folder` becomes the operator
-    folder and the brief a folder in it. `today` is the day of issue, by default the clock's; `starter` is one of
+    folder and the brief a folder in it. `today` is the day of issue; `starter` is one of
     `Starter`. Raises `FaultyFile` where a file to be written exists, or where the operator's own file has faults; then
     nothing has been written.
     """
-    folder, today, starter = Path(folder), today or dt.date.today(), Starter(starter)
+    folder, starter = Path(folder), Starter(starter)
     operator = _operator_above(folder)
     values = _values(answers, today)
     if starter is Starter.HOT_AND_HIGH:

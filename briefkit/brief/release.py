@@ -32,12 +32,11 @@ class Standing:
     expired: dt.date | None = None
 
 
-def standing(brief: Brief, cells: Iterable[Any] | None = None, today: dt.date | None = None) -> Standing:
-    """The standing of a loaded brief on a day (by default the clock's); `cells` are those that will be run.
+def standing(brief: Brief, today: dt.date, cells: Iterable[Any] | None = None) -> Standing:
+    """The standing of a loaded brief on a day; `cells` are those that will be run.
 
     A page made from anything but the files that were looked at is a draft: cells not saved, a file changed meanwhile.
     """
-    today = today or dt.date.today()
     identity = brief.identity
     seal = seal_of(identity, cells)
     table, differences, found = page_standing(brief)

@@ -7,12 +7,11 @@ questions alone. The instructor's sheet has everything open and room for a pen. 
 from __future__ import annotations
 
 from dataclasses import dataclass
-from pathlib import Path
 from typing import Final
 
 from briefkit.brief.finding import Finding, from_fault
 from briefkit.brief.harden import harden
-from briefkit.brief.identity import Brief, load_brief
+from briefkit.brief.identity import Brief
 from briefkit.brief.pages import CrewPage, render_plain
 from briefkit.errors import FaultyFile
 from briefkit.session.answers import Answers
@@ -55,22 +54,12 @@ def deck_pages(brief: Brief, page: CrewPage) -> tuple[tuple[str, str], ...]:
     )
 
 
-def deck_findings(path: Path) -> list[Finding]:
-    """Every fault of the decks of the briefs at or below a path; each blocks, for a build refuses it.
-
-    A brief whose own files have faults is left to `brief.check`.
-    """
-    start = path if path.is_dir() else path.parent
-    here, below = start / DECK_FILE, sorted(start.rglob(DECK_FILE)) if path.is_dir() else []
-    decks = [here] if here.is_file() else below
-    found: list[Finding] = []
-    for folder in (deck.parent for deck in decks):
-        try:
-            brief = load_brief(folder)
-        except FaultyFile:
-            continue
-        try:
-            load_deck(folder, brief.aircraft)
-        except FaultyFile as error:
-            found += map(from_fault, error.faults)
-    return found
+def deck_findings(brief: Brief) -> list[Finding]:
+    """Every fault of a brief's deck, if it has one; each blocks, for a build refuses it."""
+    if not (brief.identity.folder / DECK_FILE).is_file():
+        return []
+    try:
+        load_deck(brief.identity.folder, brief.aircraft)
+    except FaultyFile as error:
+        return [from_fault(fault) for fault in error.faults]
+    return []

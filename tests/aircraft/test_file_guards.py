@@ -96,13 +96,13 @@ def test_g16_a_serial_or_configuration_the_file_does_not_speak_of(file_3f):
 
 
 @pytest.mark.parametrize("key", ["chord", "twist", "flap_inertia", "drag_area"])
-def test_g17_an_estimate_without_a_spread_blocks_release_not_drafting(file_2t, key):
+def test_g17_an_estimate_without_a_spread_blocks_release_not_drafting(file_2t, key, today):
     line = next(line for line in file_2t.text.split("\n") if line.startswith(f"{key} ="))
     bare = line.split('"')[1]
     made = file_2t.replaced((line, f'{key} = "{bare}"'))
     aircraft = made.load()
     assert getattr(aircraft.rotor, key).spread == 0.0
-    blocked = [one for one in findings(made.folder / "type.toml") if one.level is Level.BLOCKS]
+    blocked = [one for one in findings(made.folder / "type.toml", today) if one.level is Level.BLOCKS]
     assert any(one.place.endswith(f"rotor.{key}") and one.text == "no spread" for one in blocked)
 
 

@@ -22,11 +22,11 @@ def another(brief: Path, number: str) -> Path:
 
 
 @pytest.mark.slow
-def test_one_failure_stops_nobody_and_leaves_the_last_good_page(operator, brief, tmp_path, nb):
+def test_one_failure_stops_nobody_and_leaves_the_last_good_page(operator, brief, tmp_path, nb, today):
     out = tmp_path / "out"
     second = another(brief, "NB-2T-002")
     heard: list[Result] = []
-    first = build([operator], out, heard.append)
+    first = build([operator], out, today, heard.append)
     assert sorted(heard, key=lambda result: result.brief) == sorted(first, key=lambda result: result.brief)
     names = ["NB-2T-001.html", "NB-2T-001.readback.html", "NB-2T-002.html", "NB-2T-002.readback.html", "index.html"]
     assert sorted(file.name for file in out.iterdir()) == names
@@ -35,13 +35,13 @@ def test_one_failure_stops_nobody_and_leaves_the_last_good_page(operator, brief,
 
     # the same again: the same bytes; what an interrupted build left behind is gone
     (out / ".NB-2T-001.html.1.part").write_text("half")
-    build([operator], out)
+    build([operator], out, today)
     assert {file.name: file.read_bytes() for file in out.iterdir()} == before
 
     # one notebook breaks: its page stays, the other is built, the index says so
     nb.write(second / "brief.ipynb", nb.code("1 / 0"))
     nb.write(brief / "brief.ipynb", nb.text("# Something new"))
-    by_folder = {result.brief.name: result for result in build([operator], out)}
+    by_folder = {result.brief.name: result for result in build([operator], out, today)}
     assert by_folder["nb-2t-002"].error == "code cell 1 (1 / 0): ZeroDivisionError: division by zero"
     assert not by_folder[brief.name].error
     assert (out / "NB-2T-002.html").read_bytes() == before["NB-2T-002.html"]
@@ -53,21 +53,21 @@ def test_one_failure_stops_nobody_and_leaves_the_last_good_page(operator, brief,
 
 
 @pytest.mark.slow
-def test_two_briefs_may_not_carry_one_number(operator, brief, tmp_path):
+def test_two_briefs_may_not_carry_one_number(operator, brief, tmp_path, today):
     clash = another(brief, "NB-2T-002")
     (clash / "brief.toml").write_text((brief / "brief.toml").read_text())
     index = another(brief, "INDEX")
-    errors = {result.brief: result.error for result in build([operator], tmp_path / "out")}
+    errors = {result.brief: result.error for result in build([operator], tmp_path / "out", today)}
     taken = [error for error in (errors[brief], errors[clash]) if error]
     assert len(taken) == 1
     assert re.search(r"document number NB-2T-001 is taken by the brief in .*; give this brief its own", taken[0])
     assert "document number INDEX is taken by the index page" in errors[index]
 
 
-def test_faults_of_the_typed_files_are_a_result(operator, brief, tmp_path):
+def test_faults_of_the_typed_files_are_a_result(operator, brief, tmp_path, today):
     toml = operator / "aircraft" / "pelquill-2t.toml"
     toml.write_text(toml.read_text().replace('radius = "4.45 m"', 'radius = "4,45 m"'))
-    (result,) = build([brief], tmp_path / "out")
+    (result,) = build([brief], tmp_path / "out", today)
     assert "1 fault" in result.error
     assert "4,45 m" in result.error
     assert result.page is None
@@ -75,7 +75,7 @@ def test_faults_of_the_typed_files_are_a_result(operator, brief, tmp_path):
     assert "There is no page" in (tmp_path / "out" / "index.html").read_text()
 
 
-def test_briefs_are_found_once_and_in_order(operator, brief, tmp_path):
+def test_briefs_are_found_once_and_in_order(operator, brief, tmp_path, today):
     second = another(brief, "NB-2T-000")
     hidden = operator / ".ipynb_checkpoints" / "x"
     hidden.mkdir(parents=True)
@@ -88,7 +88,7 @@ def test_briefs_are_found_once_and_in_order(operator, brief, tmp_path):
         find_briefs([tmp_path / "gone"])
 
 
-def test_a_folder_that_cannot_be_used(brief, tmp_path):
+def test_a_folder_that_cannot_be_used(brief, tmp_path, today):
     (tmp_path / "file").write_text("")
     with pytest.raises(BuildError, match=r"file: cannot be used as a folder \(File exists\)"):
-        build([brief], tmp_path / "file")
+        build([brief], tmp_path / "file", today)

@@ -10,6 +10,9 @@ from pathlib import Path
 import pytest
 
 from briefkit.brief.check import Finding, Level, findings
+from briefkit.brief.crew_page import DRAFT
+from briefkit.brief.identity import load_brief
+from briefkit.brief.release import standing
 from briefkit.errors import FaultyFile
 
 TODAY = dt.date(2030, 6, 1)
@@ -116,6 +119,7 @@ def test_a_missing_source_in_the_operation_blocks(world: Path) -> None:
 
 
 def test_cells_outside_the_calibration_are_noted(world: Path) -> None:
+    (world / "vellmark-2t" / "deck.toml").unlink()  # one of its cases asks where the calibration then ends
     edit(world / "aircraft" / "pelquill-2t.toml", ("\n120             116", ""))
     assert serious(world) == []
     texts = [finding.text for finding in findings(world / "vellmark-2t", TODAY)]
@@ -173,6 +177,7 @@ def test_a_revision_without_a_line_of_changes_blocks(world: Path) -> None:
 
 
 def test_the_notebook_has_to_be_there_and_readable_and_outputs_are_noted(world: Path) -> None:
+    (world / "vellmark-2t" / "deck.toml").unlink()  # one of its cases asks where the calibration then ends
     path = world / "vellmark-2t" / "brief.ipynb"
     notebook = json.loads(path.read_text(encoding="utf-8"))
     notebook["cells"][1]["outputs"] = [{"output_type": "stream", "name": "stdout", "text": "1"}]
@@ -222,15 +227,49 @@ def test_peoples_data_in_the_typed_files_block(world: Path, file: str, old: str,
     assert all(one.place.endswith(place) and "people are not on a brief" in one.remedy for one in found)
 
 
+def test_a_faulty_deck_blocks_and_leaves_the_page_a_draft(signed: Path, signing) -> None:
+    """A deck that teaches a steeper bank than the tool permits today is held like any other file of the brief."""
+    assert standing(load_brief(signed), TODAY).mark == ""
+    signing.edit(signed / "deck.toml", ('most_bank = "20 deg"', 'most_bank = "30 deg"'))
+    signing(signed)
+    (found,) = [one for one in findings(signed, TODAY, page=False) if one.level is not Level.NOTE]
+    assert found.level is Level.BLOCKS
+    assert found.place.startswith("vellmark-2t/deck.toml, line ")
+    assert standing(load_brief(signed), TODAY).mark == DRAFT
+
+
+def test_no_finding_holds_a_path_of_this_machine(world: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """From anywhere, by any path: places are those inside the operator folder."""
+    (world / "register.toml").write_text('[[documents]]\nname = "flight manual"\n', encoding="utf-8")
+    edit(world / "vellmark-2t" / "brief.toml", ('"014"', '"099"'))
+    (world / "aircraft" / "kvillarn-4h.toml").write_bytes(b"\xff")
+    (world / "corrant-3f" / "brief.ipynb").unlink()
+    listed = []
+    for here, path in (
+        (world.parent, world),
+        (world, Path()),
+        (world / "vellmark-2t", Path("..")),
+        (Path("/"), world.relative_to("/")),
+    ):
+        monkeypatch.chdir(here)
+        listed.append(findings(path, TODAY, page=False))
+    assert all(found == listed[0] for found in listed)
+    places = {one.place.partition(",")[0].partition(":")[0] for one in listed[0]}
+    assert places >= {"vellmark-2t/brief.toml", "aircraft/kvillarn-4h.toml", "register.toml", "corrant-3f/brief.ipynb"}
+    for one in listed[0]:
+        assert str(world) not in str(one)
+        assert not one.place.startswith(("/", ".", ":"))
+
+
 def test_an_aircraft_file_alone(world: Path) -> None:
     path = world / "aircraft" / "pelquill-2t.toml"
-    assert [finding.level for finding in findings(path)] == [Level.NOTE]
+    assert [finding.level for finding in findings(path, TODAY)] == [Level.NOTE]
 
 
 def test_a_path_with_nothing_to_check_is_refused(tmp_path: Path) -> None:
     for path in (tmp_path, tmp_path / "none"):
         with pytest.raises(FaultyFile, match="nothing to check"):
-            findings(path)
+            findings(path, TODAY)
 
 
 def test_a_brief_outside_any_operator_folder_is_one_finding(tmp_path: Path, examples: Path) -> None:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import datetime as dt
 from pathlib import Path
 
 import pytest
@@ -42,23 +43,23 @@ def test_the_configuration_named_is_the_one_loaded(brief_3f: Path) -> None:
     assert loaded.operation.entry_for(loaded.aircraft).key == "ormbrae-3f-load"
 
 
-def test_a_serial_the_supplement_is_not_for_blocks_with_its_reason(brief_3f: Path) -> None:
+def test_a_serial_the_supplement_is_not_for_blocks_with_its_reason(brief_3f: Path, today: dt.date) -> None:
     edit(brief_3f, '["031", "033"]', '["031", "036"]')
     assert load_brief(brief_3f).identity.serials == ("031", "036")  # the basic configuration is for all three
     edit(brief_3f, 'configuration = "basic"', 'configuration = "external load"')
     with pytest.raises(FaultyFile, match=r"subject\.serials, value 2: .*not for serial 036 \(load supplement p\. 3"):
         load_brief(brief_3f)
-    blocked = [finding for finding in findings(brief_3f) if finding.level is Level.BLOCKS]
+    blocked = [finding for finding in findings(brief_3f, today) if finding.level is Level.BLOCKS]
     assert any("not for serial 036" in finding.remedy for finding in blocked)
 
 
-def test_a_configuration_no_manual_data_is_given_for_blocks(brief_3f: Path) -> None:
+def test_a_configuration_no_manual_data_is_given_for_blocks(brief_3f: Path, today: dt.date) -> None:
     edit(brief_3f, 'configuration = "basic"', 'configuration = "doors off"')
     with pytest.raises(
         FaultyFile, match=r'subject\.configuration: read "doors off"; permitted: "basic", "external load"'
     ):
         load_brief(brief_3f)
-    assert any("doors off" in finding.text for finding in findings(brief_3f) if finding.level is Level.BLOCKS)
+    assert any("doors off" in finding.text for finding in findings(brief_3f, today) if finding.level is Level.BLOCKS)
 
 
 def test_a_brief_is_held_against_the_limits_of_its_own_configuration(brief_3f: Path, operator: Path) -> None:

@@ -16,11 +16,11 @@ from briefkit.brief.run import Picture, Words
 pytestmark = pytest.mark.slow
 
 
-def test_guard_g34_built_twice_and_from_two_folders_the_same_bytes(examples, exported, tmp_path):
+def test_guard_g34_built_twice_and_from_two_folders_the_same_bytes(examples, exported, tmp_path, today):
     """Three pages, each under 400 kB; nothing of the folder, the machine or the notebook's own data is in them."""
     elsewhere = tmp_path / "another folder"
     shutil.copytree(examples, elsewhere, ignore=shutil.ignore_patterns(".*", "__pycache__"))
-    first, second = build([examples], tmp_path / "one"), build([elsewhere], tmp_path / "two")
+    first, second = build([examples], tmp_path / "one", today), build([elsewhere], tmp_path / "two", today)
     assert [result.error for result in first + second] == [""] * 6
     assert [result.notes for result in first] == [()] * 3
     ours = {file.name: file.read_bytes() for file in (tmp_path / "one").iterdir()}

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import datetime as dt
 import os
 import subprocess
 import sys
@@ -31,7 +32,7 @@ def test_the_three_doors_give_the_same_bytes(operator, brief, tmp_path):
     hostile = ["c = get_config()", "c.Exporter.preprocessors = ['nbconvert.preprocessors.ClearOutputPreprocessor']"]
     hostile += ["c.TemplateExporter.exclude_markdown = True", "c.Exporter.file_extension = '.txt'"]
     (settings / "jupyter_nbconvert_config.py").write_text("\n".join(hostile))
-    (result,) = build([operator], tmp_path / "out")
+    (result,) = build([operator], tmp_path / "out", dt.date.today())  # the exporter reads the clock
     assert not result.error
     assert result.page is not None
     built = result.page.read_bytes()
@@ -60,16 +61,16 @@ def test_it_is_found_by_name():
     assert get_exporter("briefkit") is BriefExporter
 
 
-def test_only_the_notebook_of_a_brief(brief, nb):
+def test_only_the_notebook_of_a_brief(brief, nb, today):
     other = nb.write(brief / "other.ipynb", nb.text("x"))
     with pytest.raises(BuildError, match=r"other.ipynb: a brief is brief.ipynb beside its brief.toml; no other"):
-        export(other)
+        export(other, today)
     with pytest.raises(BuildError, match=r"exported from its file, brief\.ipynb, not from a stream"):
         BriefExporter().from_notebook_node(nbformat.v4.new_notebook())
 
 
-def test_faults_come_before_any_kernel(brief, monkeypatch):
+def test_faults_come_before_any_kernel(brief, monkeypatch, today):
     monkeypatch.setattr(room, "run_node", lambda *_: pytest.fail("a kernel was started"))
     (brief / "brief.toml").write_text("")
     with pytest.raises(FaultyFile):
-        export(brief / "brief.ipynb")
+        export(brief / "brief.ipynb", today)

@@ -30,7 +30,7 @@ IN_FORCE = dt.date(2030, 6, 1)
 
 def make(brief: Brief, day: dt.date) -> tuple[str, str, object]:
     """A page without the notebook's part, which needs a kernel."""
-    known = standing(brief, None, day)
+    known = standing(brief, day)
     identity = brief.identity
     page = (
         f"<html><title>{identity.number} rev {identity.revision}: {identity.title}</title>{known.seal.content}</html>"
@@ -134,16 +134,16 @@ def test_a_revision_is_issued_once(issued, tmp_path: Path) -> None:
 
 def test_only_a_released_page_carries_no_mark(signed: Path, signing) -> None:
     """G35 and G36 on the page itself."""
-    assert standing(load_brief(signed), None, IN_FORCE).mark == ""
+    assert standing(load_brief(signed), IN_FORCE).mark == ""
     signing.edit(
         signed.parent / "aircraft" / "pelquill-2t.toml", ('climb_speed = { value = "54', 'climb_speed = { value = "55')
     )
-    assert standing(load_brief(signed), None, IN_FORCE).mark == DRAFT
+    assert standing(load_brief(signed), IN_FORCE).mark == DRAFT
 
 
 def test_cells_that_were_not_saved_make_a_draft(signed: Path, nb) -> None:
     cells = [nb.text("Something else")]
-    known = standing(load_brief(signed), cells, IN_FORCE)
+    known = standing(load_brief(signed), IN_FORCE, cells)
     assert (known.mark, known.signed) == (DRAFT, {})
 
 
@@ -151,8 +151,8 @@ def test_a_brief_loaded_before_an_edit_makes_a_draft(signed: Path, signing) -> N
     brief = load_brief(signed)
     signing.edit(signed.parent / "operation.toml", ('"1,800 lb"', '"1,810 lb"'))
     signing(signed)
-    assert standing(brief, None, IN_FORCE).mark == DRAFT
-    assert standing(load_brief(signed), None, IN_FORCE).mark == ""
+    assert standing(brief, IN_FORCE).mark == DRAFT
+    assert standing(load_brief(signed), IN_FORCE).mark == ""
 
 
 @pytest.mark.parametrize(
@@ -164,7 +164,7 @@ def test_an_expired_page_says_so_large(signed: Path, day: dt.date, mark: str) ->
     from briefkit.brief.crew_page import crew_page
 
     brief = load_brief(signed)
-    page = crew_page(brief, "0.1.0", standing(brief, None, day))
+    page = crew_page(brief, "0.1.0", standing(brief, day))
     assert page.mark == mark
     assert page.heading.startswith("EXPIRED 29 Feb 2032: ") is bool(mark)
     assert "expires 29 Feb 2032" in page.running
@@ -174,16 +174,16 @@ def test_release_refuses_expiry_beyond_policy(signed: Path, signing) -> None:
     """G15: 24 months from 1 April 2030 end on 1 April 2032."""
     signing.edit(signed / "brief.toml", ("expires = 2032-02-29", "expires = 2032-04-02"))
     signing(signed)
-    assert standing(load_brief(signed), None, IN_FORCE).mark == DRAFT
+    assert standing(load_brief(signed), IN_FORCE).mark == DRAFT
 
 
 def test_a_revised_manual_makes_a_draft_of_a_signed_brief(signed: Path) -> None:
     """G14."""
     text = '[[documents]]\nname = "flight manual"\naircraft = "pelquill-2t"\nrevision = "{}"\n'
     (signed.parent / "register.toml").write_text(text.format("4"))
-    assert standing(load_brief(signed), None, IN_FORCE).mark == ""
+    assert standing(load_brief(signed), IN_FORCE).mark == ""
     (signed.parent / "register.toml").write_text(text.format("5"))
-    assert standing(load_brief(signed), None, IN_FORCE).mark == DRAFT
+    assert standing(load_brief(signed), IN_FORCE).mark == DRAFT
 
 
 # --- figures relaxed since the last issue ------------------------------------------------------------------------
@@ -207,7 +207,7 @@ def test_a_relaxed_figure_needs_a_reason_before_release(issued, signing, tmp_pat
     signing.edit(folder / "brief.toml", ('text = "Next"', reason))
     signing(folder)
     assert stands_against(findings(folder, IN_FORCE)) == []
-    known = standing(load_brief(folder), None, IN_FORCE)
+    known = standing(load_brief(folder), IN_FORCE)
     assert known.mark == ""
     assert {why for _, why in known.relaxed} == {"flight manual rev 5 raised the chart"}
     from briefkit.brief.control import changes
@@ -225,7 +225,7 @@ def test_an_issued_revision_is_never_made_again_with_another_content(issued, sig
     signing(folder)
     (found,) = stands_against(findings(folder, IN_FORCE, page=False))
     assert (found.level, found.text) == (Level.BLOCKS, "rev 0 was issued on 2030-03-20 with another content")
-    assert standing(load_brief(folder), None, IN_FORCE).mark == DRAFT
+    assert standing(load_brief(folder), IN_FORCE).mark == DRAFT
     register = folder.parent / "register.toml"
     signing.edit(register, ("revision = 0", "revision = 3"))
     assert "rev 3 was issued on 2030-03-20, this is rev 0" in [
@@ -379,7 +379,7 @@ def test_in_earnest_with_a_kernel(signed: Path, tmp_path: Path) -> None:
     for code in ("NRC-17", "NRC-21", "NRC-02"):
         assert code in html
     assert verify(page, load_register(signed.parent), IN_FORCE).state is State.AS_REGISTERED
-    (result,) = build([signed], tmp_path / "again")
+    (result,) = build([signed], tmp_path / "again", IN_FORCE)
     assert result.page is not None
     assert digest(result.page.read_bytes()) == entry.page
 

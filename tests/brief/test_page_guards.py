@@ -119,15 +119,15 @@ def test_a_picture_too_large_is_not_even_read(tmp_path):
 
 
 @pytest.mark.parametrize("file", ["brief.ipynb", "brief.toml"])
-def test_a_link_does_not_lead_out_of_the_operator_folder(operator, brief, tmp_path, file):
+def test_a_link_does_not_lead_out_of_the_operator_folder(operator, brief, tmp_path, file, today):
     outside = tmp_path / "elsewhere"
     outside.mkdir()
     (brief / file).rename(outside / file)
     (brief / file).symlink_to(outside / file)
-    (result,) = build([brief], tmp_path / "out")
+    (result,) = build([brief], tmp_path / "out", today)
     assert f"{file}: a link out of the operator folder" in result.error
     with pytest.raises(BuildError, match="a link out of the operator folder"):
-        export.export(brief / "brief.ipynb")
+        export.export(brief / "brief.ipynb", today)
 
 
 def test_a_link_within_the_operator_folder_may_stand(operator, brief, tmp_path):

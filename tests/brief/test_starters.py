@@ -44,11 +44,11 @@ def test_it_builds_as_it_is_and_every_invented_value_is_listed(tmp_path, starter
     assert made.exit_code == 0, made.output
     folder = tmp_path / "op" / "vrenholt-3"
     assert (folder / "deck.toml").is_file() == (starter is Starter.RECURRENT_CHECK)
-    (result,) = build([folder], tmp_path / "out")
+    (result,) = build([folder], tmp_path / "out", dt.date.today())
     assert result.error == ""
     assert result.notes == ()
     assert result.mark == "DRAFT: not for crews"
-    listed = findings(folder)
+    listed = findings(folder, dt.date.today())
     assert not any("fault" in str(one) for one in listed)
     assert any("EXAMPLE" in str(one) for one in listed)
     assert all(not cell.get("outputs") for cell in read_notebook(folder / "brief.ipynb").cells)

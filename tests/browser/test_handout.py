@@ -43,10 +43,10 @@ class Seen:
 
 
 @pytest.fixture(scope="module")
-def files(exported: Any, examples: Path, tmp_path_factory: pytest.TempPathFactory) -> dict[str, Path]:
+def files(exported: Any, examples: Path, today: dt.date, tmp_path_factory: pytest.TempPathFactory) -> dict[str, Path]:
     """Three pages, a read-back sheet and the index, as a build writes them."""
     out = tmp_path_factory.mktemp("pages")
-    results = build([examples], out)
+    results = build([examples], out, today)
     assert [result.error for result in results] == ["", "", ""]
     assert (out / "NB-2T-001.html").read_text(encoding="utf-8") == exported.html
     names = {name: out / f"NB-{number}-001.html" for name, number in NUMBERS.items()}
