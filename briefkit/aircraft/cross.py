@@ -64,6 +64,10 @@ def rotor_faults(rotor: RotorTable) -> list[Fault]:
             faults.append(_fault("rotor.hinge_offset", rotor.hinge_offset.text, '"0 %" with a teetering hub'))
         if rotor.flap_frequency and rotor.flap_frequency.value not in (None, 1.0):
             faults.append(_fault("rotor.flap_frequency", rotor.flap_frequency.text, '"1" with a teetering hub'))
+    if rotor.hub == "hingeless" and rotor.flap_stop:
+        faults.append(
+            _fault("rotor.flap_stop", rotor.flap_stop.text, "no flap_stop with a hingeless hub", "leave it out")
+        )
     if rotor.hub == "articulated" and rotor.hinge_offset is None:
         faults.append(
             _fault("rotor.hinge_offset", "nothing", "hinge_offset is needed with an articulated hub", "add it")

@@ -92,6 +92,7 @@ def rotor(table: RotorTable, max_mass: Typed) -> RotorData:
         flap_frequency=frequency,
         flap_inertia=stated(table.flap_inertia, source, inertia),
         precone=_derived(table.precone, source, estimates.precone(hub), "none stated"),
+        flap_stop=optional(table.flap_stop, source),
         lift_slope=slope,
         drag_area=stated(table.drag_area, source, estimates.drag_area(needed(max_mass.value))),
         source=source,

@@ -69,6 +69,7 @@ class RotorTable(Table):
     flap_frequency: Annotated[Typed | None, quantity("number", 1.0, 1.3, unknown=True)] = None
     flap_inertia: Annotated[Typed | None, quantity("inertia", 10.0, 20_000.0, unknown=True)] = None
     precone: Annotated[Typed | None, quantity("angle", 0.0, math.radians(8.0), unknown=True)] = None
+    flap_stop: Annotated[Typed | None, quantity("angle", math.radians(1.0), math.radians(30.0))] = None
     lift_slope: Annotated[Typed | None, quantity("number", 4.5, 7.0, unknown=True)] = None
     drag_area: Annotated[Typed | None, quantity("area", 0.1, 10.0, unknown=True)] = None
     source: str = ""

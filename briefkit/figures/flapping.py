@@ -30,21 +30,29 @@ class FlapCurveFigure:
         area = self._area = canvas.plane((0.0, 360.0, -1.0, 1.0), theme.WIDTH, _CURVE_HEIGHT, _CURVE_ROOM)
         self._zero = canvas.lines(area, theme.RULE, theme.THIN)
         self._coning = canvas.lines(area, theme.GREY, theme.LINE, "dashed")
+        self._before = canvas.lines(area, theme.GREY, theme.LINE, "dotted")
         self._curve = canvas.lines(area, theme.COMPUTED, theme.HEAVY)
         self._dots = bqplot.Scatter(
             x=[], y=[], scales=area.scales, colors=[theme.COMPUTED], default_size=45, enable_hover=False
         )
         self._dot_words = [canvas.texts(area, theme.COMPUTED, bold=True, align="middle", dy=dy) for dy in (-13, 14)]
         self._coning_words = canvas.texts(area, theme.GREY, dx=8)
+        self._before_words = canvas.texts(area, theme.GREY, dx=8)
         self._sides = canvas.texts(area, theme.INK, align="middle")
         self._title = canvas.texts(area, theme.GREY)
         self._x_axis = canvas.axis(area.x, "bottom", [0, 90, 180, 270, 360], [f"{psi}°" for psi in range(0, 361, 90)])
         self._y_axis = canvas.axis(area.y, "left", [-1.0, 1.0])
-        marks = [self._zero, self._coning, self._curve, self._dots, *self._dot_words, self._coning_words, self._sides]
+        marks = [
+            self._zero, self._coning, self._before, self._curve, self._dots, *self._dot_words, self._coning_words,
+            self._before_words, self._sides,
+        ]  # fmt: skip
         self.figure = canvas.figure(area, _CURVE_ROOM, [*marks, self._title], [self._x_axis, self._y_axis])
 
-    def update(self, b0_deg: float, b1c_deg: float, b1s_deg: float) -> None:
-        """New coefficients [deg] of beta = b0 + b1c cos(psi) + b1s sin(psi), up positive, psi 0 over the tail."""
+    def update(self, b0_deg: float, b1c_deg: float, b1s_deg: float, before_deg: float | None = None) -> None:
+        """New coefficients [deg] of beta = b0 + b1c cos(psi) + b1s sin(psi), up positive, psi 0 over the tail.
+
+        `before_deg`: the flap angle all round where the controls were trimmed, drawn dotted (None: nothing held).
+        """
         psi = np.radians(_PSI)
         beta = b0_deg + b1c_deg * np.cos(psi) + b1s_deg * np.sin(psi)
         area = self._area
@@ -57,9 +65,13 @@ class FlapCurveFigure:
         put(self._zero, [0.0, 360.0], [0.0, 0.0])
         put(self._coning, [0.0, 360.0], [b0_deg, b0_deg])
         put(self._curve, _PSI, beta)
-        self._write(b0_deg, b1c_deg, b1s_deg)
+        if before_deg is None:
+            put(self._before, [], [])
+        else:
+            put(self._before, [0.0, 360.0], [before_deg, before_deg])
+        self._write(b0_deg, b1c_deg, b1s_deg, before_deg)
 
-    def _write(self, b0: float, b1c: float, b1s: float) -> None:
+    def _write(self, b0: float, b1c: float, b1s: float, before: float | None) -> None:
         area = self._area
         tilt = math.hypot(b1c, b1s)
         words: Sequence[list[tuple[float, float, str]]] = ([], [])
@@ -76,6 +88,9 @@ class FlapCurveFigure:
         gap = (area.y.max - area.y.min) / area.height * 7.0
         rows = [(360.0, b0 + gap, "coning"), (360.0, b0 - gap, f"{show_number(b0, 1)}°")]
         write(self._coning_words, rows)
+        # Where both lines meet, their words would lie on one another: the one that stays is the coning's.
+        apart = before is not None and abs(before - b0) > 4.5 * gap
+        write(self._before_words, [(360.0, before, "trimmed")] if before is not None and apart else [])
         foot = area.y_at(area.height + 36.0)
         names = ((0, "tail"), (90, "advancing"), (180, "nose"), (270, "retreating"), (360, "tail"))
         write(self._sides, [(float(at), foot, name) for at, name in names])
@@ -95,15 +110,16 @@ class TipPathFigure:
         self._level = canvas.lines(area, theme.RULE, theme.THIN)
         self._shaft = canvas.lines(area, theme.GREY, theme.LINE)
         self._plane = canvas.lines(area, theme.COMPUTED, theme.LINE, "dashed")
+        self._before = canvas.lines(area, theme.GREY, theme.LINE, "dotted")
         self._blades = canvas.lines(area, theme.INK, theme.HEAVY)
         self._names = canvas.texts(area, theme.GREY, align="middle")
         self._tilt = canvas.texts(area, theme.COMPUTED, bold=True, align="middle")
-        marks = [self._level, self._shaft, self._plane, self._blades, self._names, self._tilt]
+        marks = [self._level, self._shaft, self._plane, self._before, self._blades, self._names, self._tilt]
         self.figure = canvas.figure(area, _SIDE_ROOM, marks)
 
-    def update(self, b0_deg: float, b1c_deg: float, b1s_deg: float) -> None:
-        """New coefficients [deg], as for `FlapCurveFigure`."""
-        largest = abs(b0_deg) + math.hypot(b1c_deg, b1s_deg)
+    def update(self, b0_deg: float, b1c_deg: float, b1s_deg: float, before_deg: float | None = None) -> None:
+        """New coefficients [deg], as for `FlapCurveFigure`; the blades where the controls were trimmed drawn dotted."""
+        largest = max(abs(b0_deg) + math.hypot(b1c_deg, b1s_deg), abs(before_deg or 0.0))
         factor = next((f for f in _EXAGGERATIONS if f * largest <= 33.0), 1.0)
         # (centre, flap of the blade pointing left on the page, flap of the one pointing right): nose left, then from
         # behind, where an anticlockwise rotor advances on the right.
@@ -114,11 +130,19 @@ class TipPathFigure:
         colours = [theme.INK] * 2
         arms = [_arms(centre, one, other, factor) for centre, one, other in views]
         put(self._blades, [arm[0] for arm in arms], [arm[1] for arm in arms], colors=colours)
+        self._show_before(before_deg, factor)
         put(self._plane, [arm[0][::2] for arm in arms], [arm[1][::2] for arm in arms], colors=[theme.COMPUTED] * 2)
         put(self._level, [[c - 0.86, c + 0.86] for c, *_ in views], [[0.0, 0.0]] * 2, colors=[theme.RULE] * 2)
         put(self._shaft, [[c, c] for c, *_ in views], [[0.0, -0.32]] * 2, colors=[theme.GREY] * 2)
         tips = [height for arm in arms for height in (arm[1][0], arm[1][2])]
         self._write(b1c_deg, b1s_deg, factor, [min(tip, 0.0) - 0.14 for tip in tips])
+
+    def _show_before(self, before_deg: float | None, factor: float) -> None:
+        if before_deg is None:
+            put(self._before, [], [])
+            return
+        arms = [_arms(centre, before_deg, before_deg, factor) for centre in (-1.1, 1.1)]
+        put(self._before, [arm[0] for arm in arms], [arm[1] for arm in arms], colors=[theme.GREY] * 2)
 
     def _write(self, b1c: float, b1s: float, factor: float, below: Sequence[float]) -> None:
         sides = ("retreating", "advancing") if self._rotation > 0 else ("advancing", "retreating")
@@ -134,10 +158,10 @@ class TipPathFigure:
             (0.0, foot, size),
         ]
         write(self._names, names)
-        back = f"{show_number(abs(b1c), 1)}° {'back' if b1c < 0.0 else 'forward'}"
+        back = f"{show_number(abs(b1c), 1)}° {'back' if b1c < 0.0 else 'forward'}" if abs(b1c) >= 0.05 else "no tilt"
         # Tilted towards the side whose blade is low: b1s > 0 lifts the advancing blade.
         low = "retreating" if b1s > 0.0 else "advancing"
-        aside = f"{show_number(abs(b1s), 1)}° to the {low} side"
+        aside = f"{show_number(abs(b1s), 1)}° to the {low} side" if abs(b1s) >= 0.05 else "no tilt"
         top = self._area.y.max - 0.08
         write(self._tilt, [(-1.1, top, back), (1.1, top, aside)])
 
