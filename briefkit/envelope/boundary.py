@@ -16,7 +16,7 @@ from briefkit.envelope import region
 from briefkit.envelope.condition import Condition, Conditions
 from briefkit.envelope.equivalent import equivalent_vnes
 from briefkit.envelope.onset import onset_speed, tip_angles
-from briefkit.envelope.onset_table import TARGETS
+from briefkit.envelope.onset_build import TARGETS
 from briefkit.envelope.solution import rotor_of
 from briefkit.envelope.speeds import indicated_of
 from briefkit.envelope.spread import OnsetBands, onset_bands, quick_onset_bands

@@ -49,9 +49,9 @@ def tip_angles(rotor: Rotor, many: Conditions) -> TipAngles:
     return TipAngles(speed, angle.reshape(speed.shape))
 
 
-def tip_angle_at(rotor: Rotor, many: Conditions, speed: Floats) -> Floats:
+def tip_angle_at(rotor: Rotor, many: Conditions, speed: Floats, grid: tuple[int, int] = (24, 12)) -> Floats:
     """Retreating-tip angle [rad] at true airspeeds [m/s], (batch,); NaN where the model has no answer."""
-    solved = trim(rotor, state_of(rotor, many, speed))
+    solved = trim(rotor, state_of(rotor, many, speed), grid=grid)
     return np.where(solved.reason == Reason.NONE, solved.tip_angle, np.nan)
 
 

@@ -15,7 +15,8 @@ from briefkit import units
 from briefkit.aircraft.model import Aircraft, Stated
 from briefkit.envelope.condition import Condition, Conditions
 from briefkit.envelope.onset import FIRST_SIGNS, moved_onset, onset_speed, tip_angles
-from briefkit.envelope.onset_table import ALLOWANCE, INPUTS, TARGETS, loading_of, onset_table, possible
+from briefkit.envelope.onset_build import INPUTS, TARGETS, possible
+from briefkit.envelope.onset_table import ALLOWANCE, loading_of, onset_table
 from briefkit.envelope.solution import rotor_of
 from briefkit.envelope.speeds import indicated_of
 from briefkit.errors import OutsideCalibration, OutsideLimits, Reason

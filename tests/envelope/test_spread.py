@@ -11,7 +11,7 @@ import pytest
 from briefkit import units
 from briefkit.envelope.condition import Condition, Conditions
 from briefkit.envelope.onset import FIRST_SIGNS, onset_speed, tip_angle_at, tip_angles
-from briefkit.envelope.onset_table import INPUTS
+from briefkit.envelope.onset_build import INPUTS
 from briefkit.envelope.solution import rotor_of
 from briefkit.envelope.speeds import indicated_of
 from briefkit.envelope.spread import onset_band, onset_bands
