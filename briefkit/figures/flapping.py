@@ -114,7 +114,7 @@ class TipPathFigure:
         self._blades = canvas.lines(area, theme.INK, theme.HEAVY)
         self._names = canvas.texts(area, theme.GREY, align="middle")
         self._tilt = canvas.texts(area, theme.COMPUTED, bold=True, align="middle")
-        marks = [self._level, self._shaft, self._plane, self._before, self._blades, self._names, self._tilt]
+        marks = [self._level, self._shaft, self._plane, self._blades, self._before, self._names, self._tilt]
         self.figure = canvas.figure(area, _SIDE_ROOM, marks)
 
     def update(self, b0_deg: float, b1c_deg: float, b1s_deg: float, before_deg: float | None = None) -> None:

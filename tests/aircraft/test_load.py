@@ -169,7 +169,9 @@ def test_articulated_and_hingeless_hubs_take_what_is_left_out_from_what_is_typed
     assert rotor.flap_frequency.text == "1.027 for the articulated hub"
     assert "uniform blade" in rotor.flap_frequency.basis
     assert rotor.precone.value == 0.0
-    hingeless = changed(typed, ('hub = "teetering"', 'hub = "hingeless"\nflap_frequency = "1.10"'))
+    hingeless = changed(
+        typed, ('hub = "teetering"', 'hub = "hingeless"\nflap_frequency = "1.10"'), ('flap_stop = "11 deg"\n', "")
+    )
     rotor = load(tmp_path, hingeless).rotor
     assert rotor.flap_frequency.known
     assert rotor.hinge_offset.value == pytest.approx(0.123, abs=5e-4)
