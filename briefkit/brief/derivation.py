@@ -9,6 +9,7 @@ from briefkit import units
 from briefkit.aircraft.model import Aircraft, Stated
 from briefkit.brief import words
 from briefkit.brief.pages import Grid, Ink, Section
+from briefkit.brief.published import published_line
 from briefkit.envelope.condition import Condition
 from briefkit.envelope.equivalent import LOAD_EXPONENT, EquivalentVne, equivalent_vne
 from briefkit.envelope.margin import margin_to_vne
@@ -196,6 +197,7 @@ def assumptions(aircraft: Aircraft, table: ReductionTable) -> Section:
         "What the rotor model assumes",
         before=tuple(before),
         grid=Grid(header, rows, "What each spread does to the onset band", Ink.CONTEXT, numbers=False),
+        after=(published_line(),),
     )
 
 

@@ -133,6 +133,7 @@ def test_an_index_may_point_to_its_neighbours_only():
     ],
 )
 def test_a_number_that_is_not_one_stops_the_page(body):
+    """G32."""
     with pytest.raises(BuildError, match="not a number"):
         harden(page(body))
 

@@ -52,7 +52,7 @@ EDITS = {
 
 @pytest.mark.parametrize("name", EDITS)
 def test_every_edit_is_found_and_named(brief: Path, signing, name: str) -> None:
-    """G36: any edit of an input after a signature."""
+    """G36: any edit of an input after a signature; G13: nothing computed from an edited file can be released."""
     before = signature(brief)
     assert what_changed(brief, before) == ()
     EDITS[name](brief, signing.edit)

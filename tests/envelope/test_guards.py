@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from dataclasses import replace
 
 import numpy as np
 import pytest
@@ -15,9 +16,9 @@ from briefkit.envelope import cues, region
 from briefkit.envelope.boundary import Against, boundary
 from briefkit.envelope.condition import Condition, Conditions
 from briefkit.envelope.equivalent import equivalent_vnes
-from briefkit.envelope.onset import FIRST_SIGNS, onset_speed
+from briefkit.envelope.onset import FIRST_SIGNS, LIMIT_OF_CONTROL, onset_speed
 from briefkit.envelope.solution import rotor_of, solve_many, state_of
-from briefkit.envelope.spread import quick_onset_bands
+from briefkit.envelope.spread import onset_bands, quick_onset_bands
 from briefkit.errors import Reason
 from briefkit.physics.trim import trim
 
@@ -41,7 +42,9 @@ def random_conditions(aircraft, seed, count, load=(1.0, 1.6)):
 @pytest.mark.slow
 @pytest.mark.parametrize("name", TYPES)
 def test_g1_nothing_told_lies_above_the_manuals_vne(name, request):
-    """G1 on 20,000 seeded conditions of the three types in batches; G32: refused members hold nothing."""
+    """G1 on 20,000 seeded conditions of the three types in batches, as printed and as drawn; G32: refused members hold
+    nothing.
+    """
     aircraft = request.getfixturevalue(name)
     many = random_conditions(aircraft, 20313 + TYPES.index(name), 6667)
     answers = equivalent_vnes(aircraft, many)
@@ -50,6 +53,14 @@ def test_g1_nothing_told_lies_above_the_manuals_vne(name, request):
     assert (answers.ias[usable] <= answers.vne[usable]).all()
     assert (answers.upper[usable] <= answers.vne[usable]).all()
     assert (answers.below_vne[usable] >= 0.0).all()
+    # As printed: an answer is floored, a reduction rounded up. As drawn: the numbers of a figure are these arrays.
+    vne, ias = answers.vne[usable], answers.ias[usable]
+    step = aircraft.units.speed_step
+    printed = np.array([units.round_down(speed) for speed in ias])
+    slowed = vne - np.array([units.round_up(below, step) for below in answers.below_vne[usable]])
+    assert (printed <= vne).all()
+    assert (printed <= ias + 0.005).all()
+    assert (slowed <= ias + 0.011).all()  # both ends are kept to 0.01
     assert np.isnan(answers.ias[~usable]).all()
     assert np.isnan(answers.below_vne[~usable]).all()
     assert all(isinstance(reason, Reason) for reason in answers.reason)
@@ -58,6 +69,7 @@ def test_g1_nothing_told_lies_above_the_manuals_vne(name, request):
 @pytest.mark.parametrize("name", TYPES)
 @pytest.mark.parametrize("against", list(Against))
 def test_g2_nothing_drawn_as_usable_lies_above_vne(name, against, request):
+    """G1 and G2 on every boundary: no blue line above the black one."""
     aircraft = request.getfixturevalue(name)
     middle = Condition.si(
         mass=0.9 * aircraft.limits.max_mass.value, pressure_altitude=1200.0, oat=units.ZERO_CELSIUS + 15.0
@@ -113,6 +125,18 @@ def test_g18_the_band_is_told_from_its_lower_edge(name, request):
     known = np.isfinite(band.lower)
     assert known.any()
     assert (band.lower[known] < band.central[known]).all()
+
+
+def test_g20_no_onset_is_shifted_to_the_manuals_evidence(two_t):
+    """G20: nothing is calibrated. Another VNE in the manual leaves the onset band where it was, above or below it."""
+    many = Conditions.si(mass=two_t.limits.max_mass.value, pressure_altitude=1500.0, oat=293.15)
+    stated = onset_bands(two_t, many)
+    for knots in (-25.0, 25.0):
+        chart = replace(two_t.vne, speeds=two_t.vne.speeds + knots * units.KNOT)
+        other = onset_bands(replace(two_t, vne=chart), many)
+        for end in ("lower", "central", "upper"):
+            np.testing.assert_array_equal(getattr(stated, end), getattr(other, end))
+    assert (math.degrees(FIRST_SIGNS), math.degrees(LIMIT_OF_CONTROL)) == pytest.approx((12.0, 16.0))  # NACA TR 840
 
 
 @pytest.mark.parametrize("name", TYPES)

@@ -1,0 +1,84 @@
+"""G2, G3, G18 and G19 on the analysis page, where alone the absolute onset band is printed: VNE governs, the band is
+told from its lower edge, a margin is called reduced where the band begins under VNE, and not resolved where the band is
+wider than it.
+"""
+
+from __future__ import annotations
+
+import re
+
+import pytest
+
+from briefkit.brief.derivation import assumptions, margin_line
+from briefkit.envelope.condition import Condition
+from briefkit.envelope.margin import margin_to_vne
+from briefkit.envelope.reductions import reductions
+from briefkit.envelope.spread import OnsetBand, onset_band
+from briefkit.units import Speed
+
+# VNE of the invented 2T there, by its chart: 85.2 KIAS (85 at 5,210 ft, +36 C).
+HOT = Condition(mass="2,006 lb", pressure_altitude="5,210 ft", oat="36 degC")
+HIGH = HOT.with_(pressure_altitude="10,000 ft", oat="29 degC")  # VNE 65.4
+
+
+def band(lower: float | None, central: float | None, upper: float | None) -> OnsetBand:
+    return OnsetBand(lower, central, upper, "kt", ())
+
+
+def test_g2_vne_governs_and_the_band_is_no_speed_to_fly(two_t):
+    said = margin_line(two_t, HOT, band(88.0, 96.0, 105.0))
+    assert said.startswith("VNE governs, 85.2 KIAS there; the band begins 2.8 kt above it and is no speed to fly;")
+
+
+def test_g3_a_band_that_begins_under_vne_is_a_reduced_margin_with_its_own_lower_bound(two_t):
+    said = margin_line(two_t, HIGH, onset_band(two_t, HIGH))
+    lower = onset_band(two_t, HIGH).lower
+    assert lower < 65.0
+    assert f"Reduced margin: the band begins at {lower:.1f} KIAS, {65.4 - lower:.1f} kt under it" in said
+    assert "no speed to fly" not in said
+    # The lower bound is the band's own: it is not raised to VNE.
+    found = margin_to_vne(two_t, onset_band(two_t, HIGH), Speed.of(65.4, "kt"))
+    assert found.reduced
+    assert found.lower == Speed.of(lower, "kt")
+
+
+def test_g3_where_the_lower_end_lies_under_the_calibration(two_t):
+    said = margin_line(two_t, HIGH, band(None, 44.0, 66.0))
+    assert "Reduced margin: the band begins under the calibrated range" in said
+    assert said.endswith("not resolved.")
+
+
+@pytest.mark.parametrize(
+    ("ends", "resolved"),
+    [
+        ((80.0, 96.0, 110.0), False),  # +11 against 16 taken off the middle
+        ((90.0, 96.0, 118.0), False),  # +11 against half of 28
+        ((93.0, 97.0, 103.0), True),  # +12 against 5
+        ((70.0, 74.0, 80.0), True),  # -11 against 5: first signs come well under VNE
+        ((93.0, 103.0, None), False),  # the upper end lies above the calibration: the width is not known
+    ],
+)
+def test_g19_a_margin_smaller_than_the_bands_half_width_is_not_resolved(two_t, ends, resolved):
+    said = margin_line(two_t, HOT, band(*ends))
+    assert said.endswith("not resolved.") is not resolved, said
+    assert ("at least" in said) is (ends[2] is None)
+
+
+def test_g19_the_decks_first_case_is_not_resolved(two_t):
+    """Scenario 1: level at the plateau on the hottest day."""
+    assert margin_line(two_t, HOT, onset_band(two_t, HOT)).endswith("not resolved.")
+
+
+def test_g18_the_analysis_page_tells_the_band_from_its_lower_edge_and_what_widens_it(two_t, operation):
+    """Once the row's place is known: the lower edge is printed and the method of the band stands beside it."""
+    table = reductions(two_t, operation.fleet["pelquill-2t"], operation.work_areas["vellmark"])
+    section = assumptions(two_t, table)
+    line, governs = section.before[-2:]
+    first, lower = (float(x) for x in re.findall(r"([\d.]+) KIAS", line)[:2])
+    assert lower < first
+    assert "with the spread below, from" in line
+    assert governs.startswith("VNE governs, ")
+    assert section.grid.caption == "What each spread does to the onset band"
+    costs = [row[3] for row in section.grid.rows]
+    assert [float(cost) for cost in costs] == sorted((float(cost) for cost in costs), reverse=True)
+    assert "to none of which anything in it is fitted" in section.after[0]  # G20: with the residuals' signs
