@@ -56,6 +56,7 @@ _UNITS: Final[dict[str, dict[str, tuple[float, float]]]] = {
     "temperature difference": {"degC": (1.0, 0.0), "°C": (1.0, 0.0), "C": (1.0, 0.0)},
     "angle": {"deg": (math.pi / 180.0, 0.0), "°": (math.pi / 180.0, 0.0)},
     "ratio": {"%": (0.01, 0.0)},
+    "fuel flow": {"kg/h": (1.0 / 3600.0, 0.0), "lb/h": (POUND / 3600.0, 0.0)},
     "pressure": {"hPa": (100.0, 0.0), "inHg": (INCH_OF_MERCURY, 0.0)},
     "rotation": {"rpm": (math.pi / 30.0, 0.0)},
     "area": {"m2": (1.0, 0.0), "m²": (1.0, 0.0), "ft2": (FOOT * FOOT, 0.0), "ft²": (FOOT * FOOT, 0.0)},

@@ -45,6 +45,8 @@ ORACLE = {
     ("area", "m²"): "meter**2",
     ("area", "ft2"): "foot**2",
     ("area", "ft²"): "foot**2",
+    ("fuel flow", "kg/h"): "kilogram/hour",
+    ("fuel flow", "lb/h"): "pound/hour",
     ("inertia", "kg m2"): "kilogram*meter**2",
     ("inertia", "kg m²"): "kilogram*meter**2",
     ("inertia", "slug ft2"): "slug*foot**2",
@@ -63,6 +65,7 @@ SI = {
     "rotation": "radian/second",
     "area": "meter**2",
     "inertia": "kilogram*meter**2",
+    "fuel flow": "kilogram/second",
 }
 QUANTITIES = (*SI, "number")
 

@@ -14,6 +14,8 @@ from typing import Annotated, ClassVar, Final
 
 from pydantic import Field
 
+from briefkit.aircraft import legs as legs_of
+from briefkit.aircraft.legs import Flown, FuelBurn, Leg, LegEntry
 from briefkit.aircraft.make import needed
 from briefkit.aircraft.model import Aircraft, Stated
 from briefkit.aircraft.tables import Airspeed, Height, Mass, Pair, Temperature, Text
@@ -50,7 +52,7 @@ class FleetEntry:
 
     `aircraft` is the stem of its file and `configuration` the one the entry is for, "" for every one without an entry
     of its own. `status` is "for information" or "company limit, <reference>". Speeds are indicated [m/s], `climb`
-    [m/s], `mass_spread` [kg], `temperature_spread` [K].
+    [m/s], `mass_spread` [kg], `temperature_spread` [K], `fuel_burn` [kg/s].
     """
 
     key: str
@@ -65,6 +67,7 @@ class FleetEntry:
     source: str
     aircraft: str = ""
     configuration: str = ""
+    fuel_burn: Stated | None = None
 
 
 @dataclass(frozen=True)
@@ -96,6 +99,7 @@ class Operation:
     data_hash: str = ""
     sources: tuple[tuple[str, str], ...] = ()
     unanswered: tuple[str, ...] = ()
+    legs: tuple[Leg, ...] = ()
 
     def entry_for(self, aircraft: Aircraft) -> FleetEntry | None:
         """The fleet entry for an aircraft in its configuration: its own, else the one for all others of the file."""
@@ -138,6 +142,7 @@ class _FleetTable(Table):
     minimum_manoeuvring_speed: Airspeed = None
     imc_speed: Airspeed = None
     climb: Annotated[Typed | None, quantity("vertical speed", 0.0, 15.0)] = None
+    fuel_burn: FuelBurn = None
     mass_spread: Annotated[Typed | None, quantity("mass", 0.0, 500.0)] = None
     temperature_spread: Annotated[Typed | None, quantity("temperature difference", 0.0, 15.0)] = None
     source: str = ""
@@ -150,11 +155,12 @@ def load_operation(path: Path | str) -> Operation:
     """
     path = Path(path)
     document = Document(path / OPERATION_FILE if path.is_dir() else path)
-    document.tables("", ("operator", "work_areas", "fleet"), ("invented", "policy"))
+    document.tables("", ("operator", "work_areas", "fleet"), ("invented", "policy", legs_of.KEY))
     operator = document.table("operator", _OperatorTable)
     policy = document.table("policy", _PolicyTable) or _PolicyTable()
     areas = document.named("work_areas", _AreaTable)
     fleet = document.named("fleet", _FleetTable)
+    legs = document.entries(legs_of.KEY, LegEntry)
     invented = document.data.get("invented", "")
     if not isinstance(invented, str):
         document.fault("invented", quoted(invented), "a sentence in quotes")
@@ -162,8 +168,10 @@ def load_operation(path: Path | str) -> Operation:
         _check_area(document, key, area)
     for key, entry in fleet.items():
         _check_entry(document, key, entry)
+    legs_of.check(document, legs, {key: _flown(entry) for key, entry in fleet.items()}, areas)
     document.raise_faults()
     operator = needed(operator)
+    flown = {key: _entry(key, entry) for key, entry in fleet.items()}
     return Operation(
         name=needed(operator.name),
         source=operator.source,
@@ -175,7 +183,7 @@ def load_operation(path: Path | str) -> Operation:
             tuple(policy.limit_approvers or ()),
         ),
         work_areas={key: _area(key, area) for key, area in areas.items()},
-        fleet={key: _entry(key, entry) for key, entry in fleet.items()},
+        fleet=flown,
         invented=str(invented),
         file=document.path.name,
         data_hash=document.data_hash,
@@ -183,8 +191,10 @@ def load_operation(path: Path | str) -> Operation:
             ("operator", operator.source),
             *((f"work_areas.{key}", area.source) for key, area in areas.items()),
             *((f"fleet.{key}", entry.source) for key, entry in fleet.items()),
+            *((key, leg.source) for key, leg in legs),
         ),
         unanswered=document.unanswered(),
+        legs=tuple(legs_of.build(leg, needed(flown[needed(leg.fleet)].fuel_burn)) for _, leg in legs),
     )
 
 
@@ -229,6 +239,10 @@ def _check_entry(document: Document, key: str, entry: _FleetTable) -> None:
         document.fault(f"{place}.status", quoted(entry.status), permitted, 'like "company limit, OM-B 2.3"')
 
 
+def _flown(entry: _FleetTable) -> Flown:
+    return Flown(next((mass for mass in entry.masses or [] if mass), None), entry.fuel_burn)
+
+
 def _stated(typed: Typed | None, source: str) -> Stated:
     typed = needed(typed)
     return Stated(needed(typed.value), typed.text, typed.source or source, typed.spread or 0.0)
@@ -268,4 +282,5 @@ def _entry(key: str, table: _FleetTable) -> FleetEntry:
         source=table.source,
         aircraft=table.aircraft or key,
         configuration=table.configuration or "",
+        fuel_burn=optional(table.fuel_burn),
     )

@@ -23,7 +23,8 @@ def cross_check(operation: Operation, aircraft: Aircraft, areas: Iterable[str] |
     """What of the operation the aircraft's manual forbids; each fault names both files. `areas` defaults to all.
 
     A corner of a work area outside the chart or the limits or where the chart prints no VNE, a mass outside the limits
-    or the chart, a bank above the manual's, a configuration the aircraft file does not have.
+    or the chart, a bank above the manual's, a leg that ends lighter than permitted, a configuration the aircraft file
+    does not have.
     """
     stem = Path(aircraft.file).stem
     entry = operation.entry_for(aircraft)
@@ -37,6 +38,7 @@ def cross_check(operation: Operation, aircraft: Aircraft, areas: Iterable[str] |
             read = other.configuration
             faults.append(Fault(operation.file, f"fleet.{other.key}.configuration", read, permitted))
     faults += _entry_faults(operation, entry, aircraft)
+    faults += _leg_faults(operation, entry, aircraft)
     for key in operation.work_areas if areas is None else areas:
         if key in operation.work_areas:
             area = operation.work_areas[key]
@@ -62,6 +64,17 @@ def _entry_faults(operation: Operation, entry: FleetEntry, aircraft: Aircraft) -
     if limits.max_bank is not None and not _within(entry.brief_bank.value, 0.0, limits.max_bank.value):
         permitted = f"at most {limits.max_bank.text} ({aircraft.file}, {limits.max_bank.source})"
         faults.append(Fault(operation.file, f"fleet.{entry.key}.brief_bank", entry.brief_bank.text, permitted))
+    return faults
+
+
+def _leg_faults(operation: Operation, entry: FleetEntry, aircraft: Aircraft) -> list[Fault]:
+    """A leg whose mass without fuel is under the least the manual permits: the fuel, or its unit, is wrong."""
+    least, faults = aircraft.limits.min_mass, []
+    for number, leg in enumerate(operation.legs, start=1):
+        if leg.fleet == entry.key and leg.take_off_mass.value - leg.fuel.value < least.value - _SLACK:
+            permitted = f"a mass without fuel of {least.text} or more ({aircraft.file}, {least.source})"
+            read = f"{leg.fuel.text} of {leg.take_off_mass.text}"
+            faults.append(Fault(operation.file, f"legs (entry {number}).fuel", read, permitted))
     return faults
 
 

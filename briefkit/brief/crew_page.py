@@ -5,8 +5,7 @@ from __future__ import annotations
 from dataclasses import replace
 from typing import TYPE_CHECKING, Final
 
-from briefkit.aircraft.model import Aircraft
-from briefkit.brief import control, derivation, front, pictures, recognition
+from briefkit.brief import control, derivation, front, overview, pictures, recognition
 from briefkit.brief.identity import Brief
 from briefkit.brief.pages import CrewPage, Section
 from briefkit.brief.sources import sources
@@ -42,7 +41,7 @@ def crew_page(brief: Brief, version: str, standing: Standing | None = None) -> C
     page = replace(
         first_sheet(brief, table),
         recognition=recognition.recognition(aircraft, brief.operation.entry_for(aircraft), area),
-        analysis=_analysis(aircraft, table),
+        analysis=_analysis(brief, table),
         control=control.control(brief, version, listed, standing),
         slip=control.slip(brief.identity),
         sources=listed,
@@ -83,9 +82,16 @@ def first_sheet(brief: Brief, table: ReductionTable) -> CrewPage:
     )
 
 
-def _analysis(aircraft: Aircraft, table: ReductionTable) -> tuple[Section, ...]:
-    """Sheet 3 before the author's own analysis: the method, each row, the pictures, the chart, the assumptions."""
+def _analysis(brief: Brief, table: ReductionTable) -> tuple[Section, ...]:
+    """Sheet 3 before the author's own analysis: method, rows, pictures, legs, what sets where, chart, assumptions."""
+    aircraft, operation = brief.aircraft, brief.operation
     row, read = derivation.worked_row(table), (aircraft.vne.source, aircraft.calibration.source)
+    fleet, areas = operation.entry_for(aircraft), operation.work_areas
+    legs: tuple[Section, ...] = ()
+    set_by: tuple[Section, ...] = ()
+    if fleet is not None:
+        legs = overview.leg_sections(aircraft, fleet, areas[brief.identity.work_area], table, operation.legs)
+        set_by = (overview.set_by_section(aircraft, fleet, areas.values()),)
     on_chart = (
         (Section("One row on the chart", figure=pictures.row_on_chart(aircraft, row), sources=read),) if row else ()
     )
@@ -100,6 +106,8 @@ def _analysis(aircraft: Aircraft, table: ReductionTable) -> tuple[Section, ...]:
         *on_chart,
         derivation.rows_section(aircraft, table),
         *stairs,
+        *legs,
+        *set_by,
         derivation.chart_section(aircraft),
         *recognition.ceilings(aircraft),
         derivation.assumptions(aircraft, table),
