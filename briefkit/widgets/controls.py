@@ -10,6 +10,7 @@ import numpy as np
 from briefkit import units
 from briefkit.aircraft.model import Aircraft
 from briefkit.envelope import region
+from briefkit.envelope.condition import Condition
 from briefkit.errors import ReadingError
 from briefkit.physics import atmosphere
 from briefkit.widgets.words import Dial, text_of
@@ -32,7 +33,7 @@ class Control(w.HBox):  # type: ignore[misc]  # ipywidgets carries no types
             description=dial.name, style={"description_width": "170px"},
             layout={"width": "440px", "min_width": "330px"},
         )  # fmt: skip
-        self.box = w.Text(continuous_update=False, layout={"width": "120px"})
+        self.box = named_box(dial.name, "120px")
         self.box.tooltip = f"{dial.name}, {text_of(dial, low, aircraft)} to {text_of(dial, high, aircraft)}"
         super().__init__([self.slider, self.box], layout={"flex_flow": "row wrap"})
 
@@ -60,6 +61,20 @@ class Control(w.HBox):  # type: ignore[misc]  # ipywidgets carries no types
     def read(self, text: str) -> float:
         """Typed text to a number in the dial's unit: "2,006 lb", or "2,006" alone. Raises `ReadingError`."""
         return read_number(self.dial, text)
+
+
+def named_box(name: str, width: str) -> w.Text:
+    """A box whose name stands beside it already: a screen reader hears it, nobody sees it twice."""
+    made = w.Text(description=name, continuous_update=False, layout={"width": width})
+    made.add_class("named-box")
+    return made
+
+
+def asked(condition: Condition, dial: Dial, number: float) -> Condition:
+    """The condition with one dial at a number in its unit; raises as `Condition` does."""
+    if dial.field == "load_factor":
+        return condition.with_(bank=f"{number:.6f} deg".replace("-", "\u2212"))
+    return condition.changed(**{dial.field: units.to_si(number, dial.quantity, dial.unit)})
 
 
 def typed_text(dial: Dial, number: float, aircraft: Aircraft) -> str:

@@ -16,8 +16,9 @@ from briefkit.envelope.condition import Condition
 from briefkit.errors import ReadingError
 from briefkit.widgets import closing, words
 from briefkit.widgets.answers import Answers
-from briefkit.widgets.controls import Control, ranges
+from briefkit.widgets.controls import Control, asked, ranges
 from briefkit.widgets.exhibit import STYLE, Exhibit, guarded
+from briefkit.widgets.height import ByQnh
 
 
 class LiveCondition(w.VBox):  # type: ignore[misc]  # ipywidgets carries no types
@@ -36,7 +37,9 @@ class LiveCondition(w.VBox):  # type: ignore[misc]  # ipywidgets carries no type
         self._controls = [Control(aircraft, dial, *ends[dial.field]) for dial in words.dials(aircraft)]
         self._heading, self._word = w.HTML(), w.HTML()
         style = w.HTML(STYLE, layout={"display": "none"})
-        super().__init__([style, self._heading, *self._controls, self._word])
+        height = ByQnh(aircraft, self._by_qnh, self._refuse_height)
+        self._height = height
+        super().__init__([style, self._heading, *self._controls[:2], height, *self._controls[2:], self._word])
         self.add_class("briefkit")
         for control in self._controls:
             control.slider.observe(self._callback(self._slide, control), "value")
@@ -108,21 +111,18 @@ class LiveCondition(w.VBox):  # type: ignore[misc]  # ipywidgets carries no type
         return guarded(partial(self._refuse, control), changed)
 
     def _slide(self, control: Control, number: float) -> None:
-        asked = control.slid(number, words.number_of(control.dial, self.condition))
-        if asked is not None:
-            self._ask(control, asked)
+        moved = control.slid(number, words.number_of(control.dial, self.condition))
+        if moved is not None:
+            self._ask(control, moved)
 
     def _type(self, control: Control, text: str) -> None:
         self._ask(control, control.read(text))
 
     def _ask(self, control: Control, number: float) -> None:
-        dial = control.dial
-        if dial.field == "load_factor":
-            degrees = f"{number:.6f} deg".replace("-", "\u2212")
-            asked = self.condition.with_(bank=degrees)
-        else:
-            asked = self.condition.changed(**{dial.field: units.to_si(number, dial.quantity, dial.unit)})
-        self._apply(_checked(self.aircraft, asked))
+        self._apply(_checked(self.aircraft, asked(self.condition, control.dial, number)))
+
+    def _by_qnh(self, elevation: str, qnh: str) -> None:
+        self.change(elevation=elevation, qnh=qnh)
 
     def _apply(self, answers: Answers) -> None:
         self._answers = answers
@@ -138,12 +138,16 @@ class LiveCondition(w.VBox):  # type: ignore[misc]  # ipywidgets carries no type
         entered = "" if typed == shown.replace("\u00a0", " ") else f" Entered: {typed}."
         self._show(f"Refused: {why}.{entered} {control.dial.name} stays at {shown}.")
 
+    def _refuse_height(self, why: str) -> None:
+        self._show(f"Refused: {why}. The height stays as it is.")
+
     def _show(self, refusal: str = "") -> None:
         """Set every control to the present condition, and the words under them."""
         self._busy = True
         try:
             for control in self._controls:
                 control.show(words.number_of(control.dial, self.condition))
+            self._height.clear()
         finally:
             self._busy = False
         sentence = words.sentence(self.aircraft, self.condition)

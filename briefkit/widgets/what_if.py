@@ -22,6 +22,7 @@ from briefkit.session.record import SessionLog, new_log_path
 from briefkit.session.recurrent import Session, SessionError, Stage
 from briefkit.widgets import closing
 from briefkit.widgets.exhibit import STYLE, guarded
+from briefkit.widgets.free_try import FreeTry
 from briefkit.widgets.paper import FOLDER, live_page, write_live_page
 from briefkit.widgets.what_if_style import WHAT_IF_STYLE
 
@@ -32,7 +33,7 @@ STEPS: Final = {
     Stage.COMPUTED: "Record the decision",
     Stage.DECIDED: "Next case",
 }
-KEYS: Final = "s step, n next, p back, r reset, b blank, f fill the window"
+KEYS: Final = "s step, n next, p back, r reset, t try, b blank, f fill"
 # A key or button held down repeats: it must not run through the reveals.
 HELD: Final = 0.35  # s
 MOST_BOXES: Final = 12
@@ -58,7 +59,7 @@ class WhatIf(w.VBox):  # type: ignore[misc]  # ipywidgets carries no types
         self.session = Session(deck, log)
         self._manual: Manual | None = None
         self._computed: Computed | None = None
-        self._filled, self._busy = False, False
+        self._filled, self._busy, self._trying = False, False, False
         self._clock: Callable[[], float] = time.monotonic
         self._last_step = float("-inf")
         self._make(boxes)
@@ -77,17 +78,20 @@ class WhatIf(w.VBox):  # type: ignore[misc]  # ipywidgets carries no types
         self._boxes = [_box(f"Prediction {number}") for number in range(1, boxes + 1)]
         self._predictions = w.HBox(self._boxes, layout={"flex_flow": "row wrap", "overflow": "hidden"})
         self._decision = _box("Decision")
+        case, deck = self.session.case, self.session.deck
+        self._free = FreeTry(deck.aircraft, case.condition, self.session.what_if)
         sides = [
-            w.VBox([self._head, self._predictions, self._said, self._word]),
+            w.VBox([self._head, self._predictions, self._said, self._free, self._word]),
+            w.VBox([self._free.said]),
             w.VBox([self._shown, self._decision]),
         ]
         for side in sides:
             side.add_class("side")
         self._screen = w.HBox(sides, layout={"flex_flow": "row wrap", "overflow": "visible"})
         self._screen.add_class("screen")
-        names = ("", "Next", "Back", "Reset", "Blank", "Fill the window", "Write to a page")
+        names = ("", "Next", "Back", "Reset", "Try another", "Blank", "Fill the window", "Write to a page")
         self._buttons = [w.Button(description=name) for name in names]
-        self._step, self._next, self._back, self._reset, self._blank, self._fill, self._paper = self._buttons
+        self._step, self._next, self._back, self._reset, self._try, self._blank, self._fill, self._paper = self._buttons
         self._blank.add_class("blanker")
         row = w.HBox(self._buttons, layout={"flex_flow": "row wrap", "overflow": "hidden"})
         row.add_class("buttons")
@@ -97,7 +101,10 @@ class WhatIf(w.VBox):  # type: ignore[misc]  # ipywidgets carries no types
         self._moves.add_class("moves")
 
     def _listen(self) -> None:
-        acts = (self.step, self.next, self.back, self.reset, self.toggle_blank, self.toggle_fill, self.write)
+        acts = (
+            self.step, self.next, self.back, self.reset, self.toggle_try, self.toggle_blank, self.toggle_fill,
+            self.write,
+        )  # fmt: skip
         for button, act in zip(self._buttons, acts, strict=True):
             button.on_click(guarded(self._say, lambda _, act=act: act()))
         self._keys.observe(guarded(self._say, self._key), "value")
@@ -143,6 +150,16 @@ class WhatIf(w.VBox):  # type: ignore[misc]  # ipywidgets carries no types
         self._clear()
         self._draw()
 
+    def toggle_try(self) -> None:
+        """Open the sliders for any other condition, or put them away; only once the case's own figures are out."""
+        if self.session.stage < Stage.COMPUTED:
+            raise SessionError("both figures of the case are shown before anything else is tried")
+        if self.session.blank:
+            raise SessionError("the screen is blank; show it first")
+        self._trying = not self._trying
+        self._free.begin(self.session.case.condition)
+        self._draw()
+
     def toggle_blank(self) -> None:
         """Blank the whole window, or show it again. A case may be set while it is blank."""
         self.session.toggle_blank()
@@ -182,6 +199,7 @@ class WhatIf(w.VBox):  # type: ignore[misc]  # ipywidgets carries no types
             rows.append(("Computed", " ".join(part for part in (self._computed.text, self._computed.how) if part)))
         if session.decision:
             rows.append(("Decision", session.decision))
+        rows += self._free.rows()
         title = self._place()
         return StillParts(
             title=title, caption=f"{case.start_text}. Then: {case.change_text}.", alt=f"{title}: {case.prompt}",
@@ -200,7 +218,7 @@ class WhatIf(w.VBox):  # type: ignore[misc]  # ipywidgets carries no types
             self._keys.value = ""
         finally:
             self._busy = False
-        acts = {"s": self.step, " ": self.step, "n": self.next, "p": self.back, "r": self.reset,
+        acts = {"s": self.step, " ": self.step, "n": self.next, "p": self.back, "r": self.reset, "t": self.toggle_try,
                 "b": self.toggle_blank, "f": self.toggle_fill}  # fmt: skip
         act = acts.get(text[-1].lower())
         if act is None:
@@ -209,6 +227,8 @@ class WhatIf(w.VBox):  # type: ignore[misc]  # ipywidgets carries no types
 
     def _clear(self) -> None:
         self._manual = self._computed = None
+        self._trying = False
+        self._free.begin(self.session.case.condition)
         self._last_step = float("-inf")
         for box in (*self._boxes, self._decision):
             box.value = ""
@@ -220,16 +240,19 @@ class WhatIf(w.VBox):  # type: ignore[misc]  # ipywidgets carries no types
             f"<h2>{escape(self._place())}</h2>"
             f"<p class='small'>{escape(session.deck.title)}</p>"
             f"<p>{escape(case.start_text)}.</p><p class='large'>Then: {escape(case.change_text)}.</p>"
-            f"<p>{escape(case.prompt)}</p>"
+            + ("" if self._trying else f"<p>{escape(case.prompt)}</p>")  # the sliders take its place
         )
         self._predictions.layout.display = "flex" if stage is Stage.PREDICT else "none"
         self._decision.layout.display = "flex" if stage is Stage.COMPUTED else "none"
+        self._free.layout.display = "flex" if self._trying else "none"
         self._said.value = _predicted(session.predictions)
         self._shown.value = _figures(self._manual, self._computed) + self._lesson()
         self._step.description = STEPS[stage]
         last = session.index == len(session.deck.cases) - 1
         self._step.disabled = last and stage is Stage.DECIDED
         self._next.disabled, self._back.disabled = last, session.index == 0
+        self._try.disabled = stage < Stage.COMPUTED
+        self._try.description = "Close the tries" if self._trying else "Try another"
         self._blank.description = "Show the screen" if session.blank else "Blank"
         self._fill.description = "Leave the full window" if self._filled else "Fill the window"
         for name, on in (("briefkit-blank", session.blank), ("briefkit-fill", self._filled)):

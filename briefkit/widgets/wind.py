@@ -14,6 +14,7 @@ import numpy as np
 from briefkit import units
 from briefkit.aircraft.model import Aircraft
 from briefkit.errors import ReadingError
+from briefkit.widgets.controls import named_box
 from briefkit.widgets.exhibit import guarded
 
 STEP_DEG: Final = 15.0
@@ -93,7 +94,7 @@ class WindControl(w.VBox):  # type: ignore[misc]  # ipywidgets carries no types
             description="Relative wind from", style=wide, layout={"width": "440px", "min_width": "330px"},
         )  # fmt: skip
         self.slider.tooltip = "Relative wind from, degrees clockwise from the nose"
-        self.bearing = w.Text(continuous_update=False, layout={"width": "120px"})
+        self.bearing = named_box("Relative wind from", "120px")
         self.bearing.tooltip = "Relative wind from, degrees clockwise from the nose: 0° ahead, 90° right, 180° behind"
         self.speed = w.Text(
             description=f"Relative wind, {unit} true", placeholder="as the airspeed", continuous_update=False,

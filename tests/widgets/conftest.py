@@ -2,15 +2,21 @@
 
 from __future__ import annotations
 
+import shutil
 from collections.abc import Callable, Iterator
+from dataclasses import replace
+from pathlib import Path
 from typing import Any
 
 import pytest
 from ipywidgets.widgets import widget as models
 
+from briefkit.aircraft.load import load_aircraft
 from briefkit.aircraft.model import Aircraft
 from briefkit.envelope.condition import Condition
+from briefkit.session.deck import Deck, load_deck
 from briefkit.widgets.live import LiveCondition
+from briefkit.widgets.what_if import WhatIf
 
 
 @pytest.fixture
@@ -62,3 +68,41 @@ def models_open() -> Callable[[], int]:
 def plain() -> Callable[[str], str]:
     """Words with plain spaces: on the page a number and its unit are tied together."""
     return lambda text: text.replace("\u00a0", " ")
+
+
+@pytest.fixture
+def operator(tmp_path: Path, examples: Path) -> Path:
+    """The operator folder of the examples, to be written to."""
+    folder = tmp_path / "operator"
+    shutil.copytree(examples, folder, ignore=shutil.ignore_patterns(".*", "*.html", "*.png", "session_logs"))
+    return folder
+
+
+@pytest.fixture(scope="package")
+def read_deck(examples: Path) -> Deck:
+    """The example's deck, read once: reading holds every case against the tool."""
+    return load_deck(examples / "vellmark-2t", load_aircraft(examples / "aircraft" / "pelquill-2t.toml"))
+
+
+@pytest.fixture
+def deck(operator: Path, read_deck: Deck) -> Deck:
+    """The same as if read in a folder of the test's own."""
+    return replace(read_deck, folder=operator / "vellmark-2t", operator=operator)
+
+
+@pytest.fixture
+def panel(deck: Deck) -> Iterator[WhatIf]:
+    made = WhatIf(deck)
+    made._clock = iter(range(0, 100_000, 10)).__next__  # no key is ever held down
+    yield made
+    made.close()
+
+
+@pytest.fixture
+def press() -> Callable[[Any], None]:
+    """Press a button as the front end does: a comm message."""
+
+    def send(button: Any) -> None:
+        button._handle_msg({"content": {"data": {"method": "custom", "content": {"event": "click"}}}, "buffers": []})
+
+    return send

@@ -5,52 +5,19 @@ from __future__ import annotations
 import html
 import json
 import re
-import shutil
 
 import html5lib
 import pytest
 from ipywidgets import Widget
 
-from briefkit.aircraft.load import load_aircraft
 from briefkit.errors import ReadingError
 from briefkit.figures.still import still
-from briefkit.session.deck import load_deck
 from briefkit.session.record import SessionLog, read_log
 from briefkit.session.recurrent import Stage
 from briefkit.widgets import closing
 from briefkit.widgets.disc import DiscMap
 from briefkit.widgets.paper import ToPaper
 from briefkit.widgets.what_if import WhatIf
-
-
-@pytest.fixture
-def operator(tmp_path, examples):
-    folder = tmp_path / "operator"
-    shutil.copytree(examples, folder, ignore=shutil.ignore_patterns(".*", "*.html", "*.png", "session_logs"))
-    return folder
-
-
-@pytest.fixture
-def deck(operator):
-    return load_deck(operator / "vellmark-2t", load_aircraft(operator / "aircraft" / "pelquill-2t.toml"))
-
-
-@pytest.fixture
-def panel(deck):
-    made = WhatIf(deck)
-    made._clock = iter(range(0, 100_000, 10)).__next__  # no key is ever held down
-    yield made
-    made.close()
-
-
-@pytest.fixture
-def press():
-    """Press a button as the front end does: a comm message."""
-
-    def send(button):
-        button._handle_msg({"content": {"data": {"method": "custom", "content": {"event": "click"}}}, "buffers": []})
-
-    return send
 
 
 def sent(panel: Widget) -> str:
