@@ -15,20 +15,21 @@ from briefkit.aircraft.model import Aircraft
 from briefkit.envelope import region
 from briefkit.envelope.condition import Condition, Conditions
 from briefkit.envelope.equivalent import equivalent_vnes
-from briefkit.envelope.onset import onset_speed, tip_angles
+from briefkit.envelope.onset import TipAngles, onset_speed, tip_angles
 from briefkit.envelope.onset_build import TARGETS
 from briefkit.envelope.solution import rotor_of
 from briefkit.envelope.speeds import indicated_of
-from briefkit.envelope.spread import OnsetBands, onset_bands, quick_onset_bands
+from briefkit.envelope.spread import OnsetBands, quick_onset_bands
 from briefkit.errors import OutsideLimits, Reason
 
 Floats = NDArray[np.float64]
 Reasons = NDArray[np.object_]
 
 CHART_POINTS: Final = 61
-BAND_POINTS: Final = 13
+BAND_POINTS: Final = 31
 _STEEPEST: Final = math.radians(60.0)
 _STRONGEST: Final = 10.0  # m/s of rising air
+_SAME: Final = 0.05  # speeds closer than this are one, in the type's unit
 
 
 class Against(StrEnum):
@@ -41,16 +42,29 @@ class Against(StrEnum):
     GUST = "gust"
 
 
+class Margin(StrEnum):
+    """How the onset band lies to VNE: its middle against half its own width (`envelope.margin` in arrays)."""
+
+    ABOVE = "above VNE"
+    UNDER = "under VNE"
+    UNRESOLVED = "not resolved"
+    NONE = "no figure"
+
+
 @dataclass(frozen=True, eq=False)
 class EquivalentCurve:
     """The equivalent VNE at one bank (n,), in the type's unit; NaN with a reason where refused.
 
-    `bank_deg` is None where the boundary is drawn against the bank itself.
+    `bank_deg` is None where the boundary is drawn against the bank itself. `parts` are the places along x where it
+    leaves the manual's VNE or comes back to it, `ends` those where it has no answer any more though x goes on: the
+    last or first place that has one.
     """
 
     bank_deg: float | None
     ias: Floats
     reason: Reasons
+    parts: tuple[float, ...] = ()
+    ends: tuple[float, ...] = ()
 
 
 @dataclass(frozen=True, eq=False)
@@ -60,6 +74,8 @@ class Boundary:
     `x` and `vne` are (n,); the onset arrays are (m,) over `onset_x`, at the condition's own load factor and rotor
     speed where these are not what is varied; NaN where there is no such indicated speed. Against a gust there is no
     equivalent VNE: a gust's angle at the slow tip is larger than any load factor shows, so only the onset is drawn.
+    `calibrated` is the range of the airspeed calibration, None where the manual has none. `limited` says whether the
+    ends of x are the manual's limits.
     """
 
     against: Against
@@ -73,6 +89,22 @@ class Boundary:
     onset_lower: Floats
     onset_central: Floats
     onset_upper: Floats
+    calibrated: tuple[float, float] | None
+    limited: bool
+
+    def margin_at(self, x: float) -> Margin:
+        """How the band lies to VNE at `x`. A middle nearer to VNE than the band's half-width is not resolved (G19); nor
+        is one against a band whose upper end has no indicated speed, for its width is not known.
+        """
+        edges = (self.onset_lower, self.onset_central, self.onset_upper)
+        lower, central, upper = (float(np.interp(x, self.onset_x, edge)) for edge in edges)
+        vne = float(np.interp(x, self.x, self.vne))
+        if not (math.isfinite(lower) and math.isfinite(vne)):
+            return Margin.NONE
+        half = max(central - lower, (upper - lower) / 2.0)
+        if not (math.isfinite(central) and math.isfinite(upper)) or abs(central - vne) < half:
+            return Margin.UNRESOLVED
+        return Margin.ABOVE if central > vne else Margin.UNDER
 
 
 def boundary(
@@ -90,51 +122,111 @@ def boundary(
     """
     over = Against(against)
     values = _permitted(aircraft, condition, over, CHART_POINTS)
-    many = _along(condition, over, values)
-    level = replace(many, load_factor=np.ones(len(many)), rotor_speed=np.ones(len(many)), climb=np.zeros(len(many)))
-    sparse = _permitted(aircraft, condition, over, BAND_POINTS)
-    band = _band(aircraft, condition, over, sparse)
     quantity, unit, label = _axis(aircraft, over)
-    speed = aircraft.units.speed
-    return Boundary(
+    x = np.asarray(units.from_si(values, quantity, unit))
+    vne, curves = _curves(aircraft, _along(condition, over, values), over, banks_deg, x)
+    foot, top = (
+        float(units.from_si(end, "speed", aircraft.units.speed))
+        for end in (aircraft.calibration.lowest_indicated, aircraft.calibration.highest_indicated)
+    )
+    nothing = np.empty(0)
+    chart = Boundary(
         against=over,
-        x=units.from_si(values, quantity, unit),
+        x=x,
         x_label=label,
         x_unit=unit,
-        speed_unit=speed,
-        vne=equivalent_vnes(aircraft, level, upper=False).vne,
-        equivalent=_curves(aircraft, many, over, banks_deg),
-        onset_x=units.from_si(sparse, quantity, unit),
-        onset_lower=units.from_si(band.lower, "speed", speed),
-        onset_central=units.from_si(band.central, "speed", speed),
-        onset_upper=units.from_si(band.upper, "speed", speed),
+        speed_unit=aircraft.units.speed,
+        vne=vne,
+        equivalent=curves,
+        onset_x=nothing,
+        onset_lower=nothing,
+        onset_central=nothing,
+        onset_upper=nothing,
+        calibrated=(foot, top) if aircraft.calibration.in_manual else None,
+        limited=over is not Against.GUST and (over is not Against.BANK or aircraft.limits.max_bank is not None),
+    )
+    return with_band(aircraft, condition, chart)
+
+
+def with_band(aircraft: Aircraft, condition: Condition, chart: Boundary) -> Boundary:
+    """The same chart curves with the onset band of another condition that shares them: one with another bank."""
+    values = _permitted(aircraft, condition, chart.against, BAND_POINTS)
+    band = _band(aircraft, condition, chart.against, values)
+    quantity, unit, _ = _axis(aircraft, chart.against)
+    lower, central, upper = (
+        np.asarray(units.from_si(end, "speed", aircraft.units.speed)) for end in (band.lower, band.central, band.upper)
+    )
+    return replace(
+        chart,
+        onset_x=np.asarray(units.from_si(values, quantity, unit)),
+        onset_lower=lower,
+        onset_central=central,
+        onset_upper=upper,
     )
 
 
 def _curves(
-    aircraft: Aircraft, many: Conditions, over: Against, banks_deg: tuple[float, ...]
-) -> tuple[EquivalentCurve, ...]:
-    if over is Against.GUST:
-        return ()
-    if over is Against.BANK:
-        answers = equivalent_vnes(aircraft, many, upper=False)
-        return (EquivalentCurve(None, answers.ias, answers.reason),)
+    aircraft: Aircraft, many: Conditions, over: Against, banks_deg: tuple[float, ...], x: Floats
+) -> tuple[Floats, tuple[EquivalentCurve, ...]]:
+    """The manual's VNE and every curve, asked for in one batch: level at 100 % first, then bank by bank."""
+    banks: tuple[float | None, ...] = {Against.GUST: (), Against.BANK: (None,)}.get(over, banks_deg)
+    count, lines = len(many), len(banks)
+    wide = many.take(np.tile(np.arange(count), 1 + lines))
+    load, rotor, climb = (array.copy() for array in (wide.load_factor, wide.rotor_speed, wide.climb))
+    load[:count], rotor[:count], climb[:count] = 1.0, 1.0, 0.0
+    for line, bank in enumerate(banks, start=1):
+        if bank is not None:
+            load[line * count : (line + 1) * count] = 1.0 / math.cos(math.radians(bank))
+    answers = equivalent_vnes(aircraft, replace(wide, load_factor=load, rotor_speed=rotor, climb=climb), upper=False)
+    vne = answers.vne[:count]
     curves = []
-    for bank in banks_deg:
-        turning = replace(many, load_factor=np.full(len(many), 1.0 / math.cos(math.radians(bank))))
-        answers = equivalent_vnes(aircraft, turning, upper=False)
-        curves.append(EquivalentCurve(bank, answers.ias, answers.reason))
-    return tuple(curves)
+    for line, bank in enumerate(banks, start=1):
+        own = slice(line * count, (line + 1) * count)
+        ias = answers.ias[own]
+        curves.append(EquivalentCurve(bank, ias, answers.reason[own], _parts(x, vne, ias), _ends(x, ias)))
+    return vne, tuple(curves)
+
+
+def _parts(x: Floats, vne: Floats, ias: Floats) -> tuple[float, ...]:
+    """Where a curve leaves VNE or meets it again: the straight line through its next two points, carried back to VNE,
+    within the step it lies in.
+    """
+    below = vne - ias
+    with np.errstate(invalid="ignore"):
+        lower = below > _SAME
+    known = np.isfinite(below)
+    found = []
+    for i in np.flatnonzero((lower[:-1] != lower[1:]) & known[:-1] & known[1:]):
+        step = 1 if lower[i + 1] else -1
+        first = i + 1 if lower[i + 1] else i  # the first point under VNE, and the one behind it
+        behind = first + step
+        share = 1.0
+        if 0 <= behind < len(x) and known[behind] and below[behind] > below[first]:
+            share = min(below[first] / (below[behind] - below[first]), 1.0)
+        found.append(float(x[first] - share * (x[first] - x[first - step])))
+    return tuple(found)
+
+
+def _ends(x: Floats, ias: Floats) -> tuple[float, ...]:
+    known = np.flatnonzero(np.isfinite(ias))
+    if not len(known):
+        return ()
+    outer = ((known[0], 0), (known[-1], len(x) - 1))
+    return tuple(float(x[end]) for end, last in outer if end != last)
 
 
 def _band(aircraft: Aircraft, condition: Condition, over: Against, values: Floats) -> OnsetBands:
-    many = _along(condition, over, values)
-    if over is not Against.GUST:
-        return quick_onset_bands(aircraft, many)
-    # The gust moves the middle; the spread is that of still air, which the gust hardly changes.
-    still = onset_bands(aircraft, Conditions.of(condition))
-    rotor = rotor_of(aircraft)
-    curve = tip_angles(rotor, many)
+    if over is Against.GUST:
+        return _gusty(aircraft, condition, values)
+    return quick_onset_bands(aircraft, _along(condition, over, values))
+
+
+def _gusty(aircraft: Aircraft, condition: Condition, values: Floats) -> OnsetBands:
+    """The gust moves the middle; the spread is that of still air, which the gust hardly changes."""
+    one, many, rotor = Conditions.of(condition), Conditions.of(condition).repeat(len(values)), rotor_of(aircraft)
+    still, calm = quick_onset_bands(aircraft, one), tip_angles(rotor, one)
+    # The same air and the same rotor at every gust: one look serves them all.
+    curve = TipAngles(*(np.repeat(array, len(values), axis=0) for array in (calm.speed, calm.angle)))
     first, last = (
         indicated_of(aircraft.calibration, onset_speed(rotor, many, target, curve, values), many.pressure, many.oat)
         for target in TARGETS

@@ -156,16 +156,31 @@ def _combined(
     for speed, moved in ends:
         at = indicated_of(aircraft.calibration, speed, many.pressure, many.oat)
         seen = indicated_of(aircraft.calibration, moved, changed_many.pressure, changed_many.oat)
+        # Faster, and without an indicated speed: above the top of the calibration, so it lowers nothing.
+        off = (moved > np.repeat(speed, 2 * len(names))) & np.isnan(seen)
+        seen = np.where(off, np.inf, seen)
         effects.append((at, seen.reshape(len(many), len(names), 2) - at[:, None, None]))
     (central, around_first), (limit, around_last) = effects
     lowers = np.maximum(-around_first.min(axis=2), 0.0) if names else np.zeros((len(many), 0))
     raises = np.maximum(around_last.max(axis=2), 0.0) if names else np.zeros((len(many), 0))
+    raises = np.where(np.isfinite(raises), raises, np.nan)
     unprinted = 0.0 if aircraft.calibration.in_manual else aircraft.calibration.spread
     lower = central - np.sqrt((lowers**2).sum(axis=1) + unprinted**2) - less
     upper = limit + np.sqrt((raises**2).sum(axis=1) + unprinted**2)
+    lower = np.where(np.isnan(central), _under(aircraft, many, ends[0], unprinted) - less, lower)
     foot, top = aircraft.calibration.lowest_indicated, aircraft.calibration.highest_indicated
     lower, upper = (np.where((end >= foot) & (end <= top), end, np.nan) for end in (lower, upper))
     return OnsetBands(lower, central - less, upper, tuple(names), lowers, raises)
+
+
+def _under(aircraft: Aircraft, many: Conditions, end: tuple[Floats, Floats], unprinted: float) -> Floats:
+    """The lower end where the middle is above the calibration's top: the spreads combined as true airspeeds; NaN where
+    it is above that top too.
+    """
+    speed, moved = end
+    taken = np.maximum(speed[:, None, None] - moved.reshape(len(many), -1, 2), 0.0).max(axis=2)
+    least = speed - np.sqrt((taken**2).sum(axis=1))
+    return indicated_of(aircraft.calibration, least, many.pressure, many.oat) - unprinted
 
 
 def _changed_conditions(aircraft: Aircraft, many: Conditions) -> tuple[Conditions, list[str]]:

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 from dataclasses import replace
 from typing import Final
 
@@ -12,12 +11,12 @@ from numpy.typing import NDArray
 
 from briefkit import units
 from briefkit.aircraft.model import Aircraft
-from briefkit.envelope.boundary import Against, Boundary, EquivalentCurve, boundary
+from briefkit.envelope.boundary import Against, Boundary, boundary, with_band
 from briefkit.envelope.condition import Condition
 from briefkit.errors import Reason, Refusal, SetBy
-from briefkit.figures.boundary import BoundaryFigure, Curves, Here
+from briefkit.figures.boundary import BoundaryFigure, Here
 from briefkit.figures.still import Drawing, StillParts, Table
-from briefkit.widgets import words
+from briefkit.widgets import boundary_words, words
 from briefkit.widgets.answers import Answers
 from briefkit.widgets.exhibit import Exhibit
 
@@ -84,20 +83,11 @@ class StallBoundary(Exhibit):
     def _draw(self, answers: Answers) -> StillParts:
         aircraft, condition = answers.aircraft, answers.condition
         curves = self._curves(aircraft, condition)
-        here, caption = self._here(answers)
-        self._boundary.update(
-            Curves(
-                x=curves.x,
-                manual=curves.vne,
-                turns=[(_name(curve), curve.ias) for curve in curves.equivalent],
-                onset_x=curves.onset_x,
-                onset_lower=curves.onset_lower,
-                onset_central=curves.onset_central,
-                onset_upper=curves.onset_upper,
-            ),
-            here,
-        )
+        here, caption = self._here(answers, curves)
+        self._boundary.update(self._drawn, here)
         title = f"VNE and the equivalent level flight, against {_AXES[self._against]}"
+        if self._against is Against.GUST:
+            title = "VNE and the onset band, against the speed of a rising gust"
         desc = f"Indicated speed against {_AXES[self._against]}. {caption}"
         return StillParts(
             title=title,
@@ -106,19 +96,28 @@ class StallBoundary(Exhibit):
             inputs=words.inputs(aircraft, condition),
             drawings=(Drawing(self._boundary.figure, title, desc),),
             table=self._table(aircraft, curves),
-            notes=self._notes(aircraft, curves),
+            notes=boundary_words.notes(aircraft, curves),
         )
 
     def _curves(self, aircraft: Aircraft, condition: Condition) -> Boundary:
-        """The curves do not depend on the airspeed, nor on the number along the axis: kept while only those change."""
+        """The curves do not depend on the airspeed, nor on the number along the axis: kept while only those change.
+
+        The bank moves the onset band alone: the lines have their own.
+        """
         moved: dict[str, float | None] = {"ias": None}
         if self._against in _REPLACED:
             field, anything = _REPLACED[self._against]
             moved[field] = anything
         key = condition.changed(**moved)
-        if self._kept is None or self._kept[0] != key:
-            self._kept = key, boundary(aircraft, condition, self._against, self._banks)
-        return self._kept[1]
+        if self._kept is not None and self._kept[0] == key:
+            return self._kept[1]
+        if self._kept is not None and _level(self._kept[0]) == _level(key):
+            curves = with_band(aircraft, condition, self._kept[1])
+        else:
+            curves = boundary(aircraft, condition, self._against, self._banks)
+        self._kept = key, curves
+        self._drawn = boundary_words.drawn(aircraft, condition, curves)
+        return curves
 
     def _axis(self, aircraft: Aircraft) -> tuple[str, str]:
         """Quantity and unit of the axis, in the units of the type's manual."""
@@ -131,7 +130,7 @@ class StallBoundary(Exhibit):
             Against.GUST: ("vertical speed", "ft/min" if shown.height == "ft" else "m/s"),
         }[self._against]
 
-    def _here(self, answers: Answers) -> tuple[Here, str]:
+    def _here(self, answers: Answers, curves: Boundary) -> tuple[Here, str]:
         aircraft, condition = answers.aircraft, answers.condition
         quantity, unit = self._axis(aircraft)
         value = {
@@ -144,10 +143,18 @@ class StallBoundary(Exhibit):
         speed = None if condition.ias is None else float(units.from_si(condition.ias, "speed", aircraft.units.speed))
         label = aircraft.units.speed_label()
         words_here = "here" if speed is None else f"here, {units.show_number(speed)} {label}"
-        level = answers.level
-        vne = f"The manual's VNE here is {level.text} ({aircraft.vne.source})."
-        turn = words.turn(condition)
         here = Here(float(units.from_si(value, quantity, unit)), speed, words_here)
+        onset = boundary_words.onset_here(aircraft, curves, here.x)
+        if self._against is Against.GUST:
+            covered = boundary_words.covered_load(aircraft, condition)
+            return here, f"The manual's VNE here is {answers.level.text} ({aircraft.vne.source}). {covered} {onset}"
+        here, said = self._answer(answers, here)
+        return here, f"{said} {onset}"
+
+    def _answer(self, answers: Answers, here: Here) -> tuple[Here, str]:
+        aircraft, condition = answers.aircraft, answers.condition
+        vne = f"The manual's VNE here is {answers.level.text} ({aircraft.vne.source})."
+        turn = words.turn(condition)
         if condition.level_at_full_rotor_speed:
             return here, f"{vne} Level at 100 % rotor speed that is the answer."
         try:
@@ -169,53 +176,22 @@ class StallBoundary(Exhibit):
         """A row at even steps of the axis; speeds floored to one unit, a refused cell says why."""
         label = aircraft.units.speed_label()
         turns = [c for c in curves.equivalent if not np.array_equal(c.ias, curves.vne, equal_nan=True)]
-        names = tuple(_name(c)[0].upper() + _name(c)[1:] for c in turns)
+        names = tuple(name[0].upper() + name[1:] for name in map(boundary_words.name, turns))
         unit = units.SHOWN.get(curves.x_unit, curves.x_unit)
-        header = (f"{curves.x_label}, {unit}", f"VNE, {label}", *names, "Onset band")
+        header = (f"{curves.x_label}, {unit}", f"VNE, {label}", *names, "Onset band", "First signs, 12°")
         rows = []
         for index in np.linspace(0, curves.x.size - 1, _TABLE_ROWS).round().astype(int).tolist():
             cells = [_floored(curves.vne[index], "off the chart")]
             cells += [_floored(c.ias[index], _SHORT.get(c.reason[index], str(c.reason[index]))) for c in turns]
             x = float(curves.x[index])
-            rows.append(
-                (
-                    units.show_number(x, 0 if abs(x - round(x)) < 0.05 else 1),
-                    *cells,
-                    _band(curves, float(curves.x[index])),
-                )
-            )
+            shown = units.show_number(x, 0 if abs(x - round(x)) < 0.05 else 1)
+            rows.append((shown, *cells, boundary_words.band(curves, x), boundary_words.margin(curves, x)))
         return Table(header, tuple(rows), f"{label}, power on, floored to 1 {curves.speed_unit}")
 
-    def _notes(self, aircraft: Aircraft, curves: Boundary) -> tuple[str, ...]:
-        same = [_name(c) for c in curves.equivalent if np.array_equal(c.ias, curves.vne, equal_nan=True)]
-        notes = [
-            "Black is the manual's. Blue is the manual's own chart read at the equivalent level flight. The grey band "
-            "is the rotor model's absolute onset, softer than the chart; it is no speed to fly."
-        ]
-        if same:
-            notes.append(f"Nothing is taken off in {' and '.join(same)}: the manual's VNE holds along the whole line.")
-        if not np.all(np.isfinite(curves.onset_lower) & np.isfinite(curves.onset_upper)):
-            notes.append(
-                "Where the band or its upper end is missing, that speed is outside the calibration or the model."
-            )
-        for reason in sorted({str(r) for curve in curves.equivalent for r in curve.reason if r}):
-            notes.append(f"Where a blue line ends: {reason}.")
-        return tuple(notes)
 
-
-def _name(curve: EquivalentCurve) -> str:
-    if curve.bank_deg is None:
-        return "equivalent VNE"
-    return "level flight" if curve.bank_deg == 0.0 else f"{curve.bank_deg:g}° bank"
+def _level(condition: Condition) -> Condition:
+    return condition.changed(load_factor=1.0)
 
 
 def _floored(speed: float, why: str) -> str:
     return units.show_number(units.round_down(float(speed))) if np.isfinite(speed) else why
-
-
-def _band(curves: Boundary, x: float) -> str:
-    ends = (float(np.interp(x, curves.onset_x, edge)) for edge in (curves.onset_lower, curves.onset_upper))
-    low, high = (units.show_number(units.round_down(end)) if math.isfinite(end) else "" for end in ends)
-    if low and high:
-        return f"{low} to {high}"
-    return f"from {low}" if low else "no figure"

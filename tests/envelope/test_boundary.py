@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 import pytest
 
-from briefkit.envelope.boundary import boundary
+from briefkit.envelope.boundary import Margin, boundary, with_band
 from briefkit.envelope.condition import Condition, Conditions
 from briefkit.envelope.equivalent import covered_bank, equivalent_vne
 from briefkit.envelope.onset import gust_angle
@@ -89,3 +89,55 @@ def test_a_day_the_manual_does_not_permit_is_refused(two_t):
         boundary(two_t, HOT.with_(oat="45 degC"))
     with pytest.raises(ValueError, match="colour"):
         boundary(two_t, HOT, "colour")
+
+
+def test_where_a_line_parts_from_vne_and_where_it_ends(two_t):
+    """Against single answers on both sides of the place."""
+    curve = boundary(two_t, HOT.with_(mass="1,800 lb", pressure_altitude="8,000 ft"), "bank").equivalent[0]
+    (parts,), (end,) = curve.parts, curve.ends
+    here = HOT.with_(mass="1,800 lb", pressure_altitude="8,000 ft")
+    assert equivalent_vne(two_t, here.with_(bank=f"{parts - 0.3:.2f} deg")).below_vne == pytest.approx(0.0, abs=0.02)
+    assert 0.1 < equivalent_vne(two_t, here.with_(bank=f"{parts + 0.7:.2f} deg")).below_vne < 1.0
+    assert end <= covered_bank(two_t, here) < end + 1.0
+    # Slower rotor is worse: the line meets VNE from the other side, and ends at its slow end.
+    slow = boundary(two_t, here, "rotor speed", banks_deg=(20.0, 30.0)).equivalent
+    assert 97.0 < slow[1].ends[0] < slow[0].parts[0] < 100.0
+
+
+def test_a_margin_smaller_than_half_the_band_is_not_resolved(two_t):
+    """G19. Also where the band is open at the top; a number only where first signs are clear of VNE."""
+    drawn = boundary(two_t, HOT.with_(pressure_altitude="8,000 ft", oat="10 degC"), "bank")
+    told = {Margin.NONE: 0, Margin.UNRESOLVED: 0, Margin.UNDER: 0}
+    for x in drawn.onset_x:
+        found = drawn.margin_at(float(x))
+        told[found] += 1
+        lower, central, upper = (
+            float(np.interp(x, drawn.onset_x, edge))
+            for edge in (drawn.onset_lower, drawn.onset_central, drawn.onset_upper)
+        )
+        if found is Margin.UNDER:
+            assert drawn.vne[0] - central >= (upper - lower) / 2.0
+        elif found is Margin.UNRESOLVED:
+            known = np.isfinite(central) and np.isfinite(upper)
+            assert not known or abs(central - drawn.vne[0]) < max(central - lower, (upper - lower) / 2.0)
+    assert min(told.values()) > 0
+
+
+def test_another_bank_moves_the_band_alone(two_t):
+    turning = HOT.with_(bank="25 deg")
+    moved, fresh = with_band(two_t, turning, boundary(two_t, HOT)), boundary(two_t, turning)
+    for field in ("vne", "onset_x", "onset_lower", "onset_central", "onset_upper"):
+        np.testing.assert_array_equal(getattr(moved, field), getattr(fresh, field))
+    for one, other in zip(moved.equivalent, fresh.equivalent, strict=True):
+        np.testing.assert_array_equal(one.ias, other.ias)
+
+
+def test_the_band_begins_below_a_middle_that_is_above_the_calibration(two_t):
+    """At sea level first signs lie above the 120 KIAS the indicator is calibrated to; less their spread they do not."""
+    drawn = boundary(two_t, HOT)
+    above = np.isnan(drawn.onset_central) & np.isfinite(drawn.onset_lower)
+    assert above.any()
+    assert (drawn.onset_lower[above] <= 120.0).all()
+    first = np.flatnonzero(np.isfinite(drawn.onset_central))[0]
+    step = drawn.onset_lower[first - 1] - drawn.onset_lower[first]
+    assert 0.0 < step < 5.0  # it goes on where it was

@@ -122,7 +122,7 @@ def test_g18_the_band_is_told_from_its_lower_edge(name, request):
         mass=aircraft.limits.max_mass.value, pressure_altitude=np.linspace(500.0, 2500.0, 5), oat=293.15
     )
     band = quick_onset_bands(aircraft, many)
-    known = np.isfinite(band.lower)
+    known = np.isfinite(band.lower) & np.isfinite(band.central)  # its middle may lie above the calibration
     assert known.any()
     assert (band.lower[known] < band.central[known]).all()
 

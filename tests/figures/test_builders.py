@@ -247,7 +247,7 @@ def test_a_level_line_that_is_not_the_manuals_stands_on_its_own():
 
 def test_the_condition_is_marked_with_its_speed_and_its_answer():
     made = boundary(here=Here(5000.0, 80.0, "here, 80 KIAS", 84.0, "30° bank: 84 KIAS"))
-    dots = [mark for mark in made.figure.marks if isinstance(mark, bqplot.Scatter)]
+    dots = [mark for mark in made.figure.marks if isinstance(mark, bqplot.Scatter) and mark.marker == "circle"]
     assert sorted(float(dot.y[0]) for dot in dots) == [80.0, 84.0]
     assert {"here, 80 KIAS", "30° bank: 84 KIAS"} <= set(words(made.figure))
     made.update(curves(), Here(5000.0, None, "here"))
@@ -269,6 +269,35 @@ def test_an_update_changes_arrays_and_makes_no_new_marks():
     before = list(made.figure.marks)
     made.update(curves(manual=VNE + 2.0), None)
     assert made.figure.marks == before
+
+
+def test_the_band_is_pale_above_vne_and_stops_where_the_calibration_does():
+    made = boundary(curves(onset_lower=VNE - 5.0, onset_upper=NONE, ceiling=(118.0, "calibrated to 118 KIAS")))
+    pale, full = made._band[0], made._band[1]
+    assert pale.fill_opacities[0] < 0.5
+    assert full.fill_opacities[0] == 1.0
+    assert pale.y.max() == 118.0
+    assert (full.y <= np.interp(full.x, X, VNE) + 1e-9).all()
+    assert (pale.y >= np.interp(pale.x, X, VNE) - 1e-9).all()
+    assert {"calibrated to 118 KIAS", "pale above VNE"} <= set(words(made.figure))
+
+
+def test_a_place_where_a_line_leaves_vne_is_marked_and_named():
+    made = boundary(curves(parts=[[], [(3000.0, "30° bank\nparts at 3,000 ft")]]))
+    assert (made._parts.x[0], made._parts.y[0]) == (3000.0, pytest.approx(np.interp(3000.0, X, VNE)))
+    assert "parts at 3,000 ft" in words(made.figure)
+
+
+def test_the_same_curves_are_not_sent_again():
+    made, shown = boundary(), curves()
+    made.update(shown, Here(5000.0, 80.0, "here"))
+    sent = []
+    made._manual.marks[0].observe(lambda change: sent.append(change), "y")
+    made.update(shown, Here(5500.0, 81.0, "here"))
+    assert sent == []
+    assert made._here.x[0] == 5500.0
+    made.update(curves(manual=VNE + 2.0), None)
+    assert sent
 
 
 def test_a_figure_without_any_vne_is_refused():

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import dataclasses
 import re
+from xml.etree import ElementTree
 
 import html5lib
 import numpy as np
@@ -124,6 +125,62 @@ def test_the_boundary_against_the_other_quantities(fixed, start, against, first,
     assert (parts.table.rows[0][0], parts.table.rows[-1][0]) == (first, last)
     assert ("gust" in parts.title) == (against == "gust")
     assert ("Equivalent VNE" in parts.table.header) == (against == "bank")
+
+
+@pytest.mark.slow
+@pytest.mark.parametrize("name", ["two_t", "three_f", "four_h"])
+def test_no_words_of_the_boundary_overlap_or_leave_the_figure(request, name):
+    """Every variable of every type: boxes of the words on the still, letters half an em wide."""
+    aircraft = request.getfixturevalue(name)
+    mass, oat = {
+        "two_t": ("1,800 lb", "20 degC"),
+        "three_f": ("2,200 kg", "10 degC"),
+        "four_h": ("2,890 kg", "-5 degC"),
+    }[name]
+    for bank in ("0 deg", "30 deg"):
+        condition = Condition(mass=mass, pressure_altitude="2,300 m", oat=oat, ias="85 kt", bank=bank)
+        for against in ("pressure altitude", "mass", "rotor speed", "bank", "gust"):
+            exhibit = StallBoundary(aircraft, condition, against=against)
+            boxes = _boxes_of_words(still(exhibit))
+            exhibit.close()
+            assert all(left >= 0.0 and right <= 440.0 for left, right, _, _ in boxes)
+            for i, one in enumerate(boxes):
+                for other in boxes[i + 1 :]:
+                    apart = one[0] >= other[1] or other[0] >= one[1] or one[2] >= other[3] or other[2] >= one[3]
+                    assert apart, (against, bank, one, other)
+
+
+def _boxes_of_words(html: str) -> list[tuple[float, float, float, float]]:
+    """(left, right, top, bottom) of each word drawn, in the pixels of the figure."""
+    boxes = []
+
+    def walk(element, across, down):
+        moved = re.match(r"translate\(([-\d.]+),([-\d.]+)\)", element.get("transform", ""))
+        if moved:
+            across, down = across + float(moved[1]), down + float(moved[2])
+        if element.tag.endswith("text") and element.text:
+            x, y = across + float(element.get("x", 0.0)), down + float(element.get("y", 0.0))
+            wide = 6.5 * len(element.text)
+            left = x - {"middle": 0.5, "end": 1.0}.get(element.get("text-anchor", "start"), 0.0) * wide
+            boxes.append((left, left + wide, y - 6.0, y + 6.0))
+        for child in element:
+            walk(child, across, down)
+
+    walk(ElementTree.fromstring(re.search(r"<svg.*?</svg>", html, re.DOTALL)[0]), 0.0, 0.0)
+    return boxes
+
+
+def test_the_boundary_says_where_its_lines_part_and_end_and_what_is_not_resolved(fixed, start):
+    parts = fixed(StallBoundary, start.with_(bank="30 deg"), against="mass").still_parts()
+    notes = " ".join(parts.notes).replace("\u00a0", " ")
+    assert "30° bank: parts from the manual's VNE at 1,700 lb; the chart ends at" in notes
+    assert "Airspeed is calibrated from 40 to 120 kt (flight manual 5-2 rev 4)" in notes
+    assert "against VNE it is not resolved" in parts.caption
+    assert parts.table.header[-1] == "First signs, 12°"
+    assert {row[-1] for row in parts.table.rows} <= {"not resolved", "no figure"}
+    drawing = fixed(StallBoundary, start, against="gust").still_parts()
+    assert "covers a load factor of 1." in drawing.caption
+    assert "no speed is given for a gust" in drawing.caption
 
 
 @pytest.mark.slow  # another aircraft, so another onset table
