@@ -22,7 +22,8 @@ from briefkit.errors import Reason
 Floats = NDArray[np.float64]
 
 HOLDS_WITHIN: Final = 1.0 * units.KNOT
-_POINTS: Final = 81  # on each side of the condition
+_POINTS: Final = 40  # on each side of the condition
+_FIELDS: Final = ("pressure_altitude", "oat", "mass", "rotor_speed")
 
 
 @dataclass(frozen=True)
@@ -54,27 +55,32 @@ def rules_of_thumb(aircraft: Aircraft, condition: Condition) -> tuple[RuleOfThum
         ("mass", "mass", mass, "mass", f"+{fifty:.0f} {mass}", heavier, 6.0),
         ("rotor_speed", "ratio", "%", "rotor speed", "−1 %", -0.01, 5.0),
     )
-    rules = [_rule(aircraft, condition, *one) for one in wanted]
-    return tuple(rule for rule in rules if rule is not None)
+    # One batch: most of what a question costs is the call.
+    varied, steps = [], []
+    for field, _, _, _, _, step, reach in wanted:
+        offsets = np.linspace(-reach, reach, 2 * _POINTS + 1) * step
+        values = {name: np.full(len(offsets), float(getattr(condition, name))) for name in _FIELDS}
+        varied.append(values | {field: values[field] + offsets})
+        steps.append(offsets)
+    one = Conditions.of(condition).repeat(len(wanted) * (2 * _POINTS + 1))
+    together = {name: np.concatenate([values[name] for values in varied]) for name in _FIELDS}
+    answers = equivalent_vnes(
+        aircraft, replace(one, **together), upper=False
+    )  # one batch: most of its cost is per call
+    every = np.where(answers.reason == Reason.NONE, answers.ias, np.nan).reshape(len(wanted), -1)
+    rules = []
+    for (field, quantity, unit, name, text, step, _), offsets, ias in zip(wanted, steps, every, strict=True):
+        found = _rule(aircraft, offsets, ias)
+        if found is not None:
+            slope, first, last = found
+            start = float(getattr(condition, field))
+            ends = sorted(float(units.from_si(start + float(offsets[i]), quantity, unit)) for i in (first, last))
+            rules.append(RuleOfThumb(name, text, unit, round(slope * step, 2), ends[0], ends[1]))
+    return tuple(rules)
 
 
-def _rule(
-    aircraft: Aircraft,
-    condition: Condition,
-    field: str,
-    quantity: str,
-    unit: str,
-    name: str,
-    step_text: str,
-    step: float,
-    reach: float,
-) -> RuleOfThumb | None:
-    """One rule over `reach` steps either way; None where there is no slope to be had."""
-    offsets = np.linspace(-reach, reach, 2 * _POINTS + 1) * step
-    start = float(getattr(condition, field))
-    many = replace(Conditions.of(condition).repeat(len(offsets)), **{field: start + offsets})
-    answers = equivalent_vnes(aircraft, many, upper=False)
-    ias = np.where(answers.reason == Reason.NONE, answers.ias, np.nan)
+def _rule(aircraft: Aircraft, offsets: Floats, ias: Floats) -> tuple[float, int, int] | None:
+    """The slope at the middle, and the first and last point it holds at; None where there is no slope to be had."""
     slope = _slope(offsets, ias)
     if slope is None:
         return None
@@ -83,13 +89,12 @@ def _rule(
         holds = np.abs(ias - (ias[_POINTS] + slope * offsets)) <= within
     first = _POINTS - int(np.argmin(np.append(holds[: _POINTS + 1][::-1], False))) + 1
     last = _POINTS + int(np.argmin(np.append(holds[_POINTS:], False))) - 1
-    ends = sorted(float(units.from_si(float(start + offsets[i]), quantity, unit)) for i in (first, last))
-    return RuleOfThumb(name, step_text, unit, round(slope * step, 2), ends[0], ends[1])
+    return slope, first, last
 
 
 def _slope(offsets: Floats, ias: Floats) -> float | None:
     """Of the answers next to the condition; one-sided at an edge."""
-    at, span = _POINTS, 4
+    at, span = _POINTS, 2
     for left, right in ((at - span, at + span), (at - span, at), (at, at + span)):
         if np.isfinite(ias[[left, right]]).all():
             return float((ias[right] - ias[left]) / (offsets[right] - offsets[left]))

@@ -96,8 +96,8 @@ def test_where_a_line_parts_from_vne_and_where_it_ends(two_t):
     curve = boundary(two_t, HOT.with_(mass="1,800 lb", pressure_altitude="8,000 ft"), "bank").equivalent[0]
     (parts,), (end,) = curve.parts, curve.ends
     here = HOT.with_(mass="1,800 lb", pressure_altitude="8,000 ft")
-    assert equivalent_vne(two_t, here.with_(bank=f"{parts - 0.3:.2f} deg")).below_vne == pytest.approx(0.0, abs=0.02)
-    assert 0.1 < equivalent_vne(two_t, here.with_(bank=f"{parts + 0.7:.2f} deg")).below_vne < 1.0
+    assert equivalent_vne(two_t, here.with_(bank=f"{parts - 0.1:.2f} deg")).below_vne == pytest.approx(0.0, abs=0.02)
+    assert 0.05 < equivalent_vne(two_t, here.with_(bank=f"{parts + 0.3:.2f} deg")).below_vne < 0.5
     assert end <= covered_bank(two_t, here) < end + 1.0
     # Slower rotor is worse: the line meets VNE from the other side, and ends at its slow end.
     slow = boundary(two_t, here, "rotor speed", banks_deg=(20.0, 30.0)).equivalent
