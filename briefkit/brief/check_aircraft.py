@@ -73,7 +73,8 @@ def _findings(place: str, aircraft: Aircraft) -> list[Finding]:
 
 
 def similarity_findings(aircraft: Aircraft) -> list[EntryFinding]:
-    """Cells off the curve on which VNE over tip speed collapses against loading, the farthest first.
+    """Cells off the curve on which VNE over tip speed collapses against loading, the farthest first; one finding on
+    "all" where the chart as a whole does not collapse.
 
     A configuration that reads the basic chart, capped or lowered, repeats none of the basic one's.
     """
@@ -81,16 +82,18 @@ def similarity_findings(aircraft: Aircraft) -> list[EntryFinding]:
     if (basic is not None and chart.rows is basic.rows) or Axis.HEIGHT not in chart.variables:
         return []
     shape, found = chart_shape(aircraft), []
-    across = next((at for at, axis in enumerate(Axis) if at and chart.axes[axis]), 1)
-    for cell in shape.findings if len(chart.typed) <= 2 else []:
-        index = [int(shape.row[cell]), 0, 0, 0]
-        index[across] = int(shape.column[cell])
+    table = "vne" if basic is None else f"configuration ({aircraft.configuration})"
+    largest = units.show(LARGEST_RESIDUAL, "speed", unit)
+    permitted = f"within {largest} of the curve all falling cells share (speed over tip speed against loading)"
+    if not shape.collapses:
+        worst = units.show(float(np.nanmax(np.abs(shape.residual))), "speed", unit, 1)
+        count = f"{len(shape.findings)} of {int(np.isfinite(shape.residual).sum())} cells off it, by up to {worst}"
+        return [finding(Kind.SIMILARITY, "all", f"{table}.power_on", count, permitted)]
+    for cell in shape.findings:
         off = units.show(abs(float(shape.residual[cell])), "speed", unit, 1)
         side = "above" if shape.residual[cell] > 0.0 else "below"
-        largest = units.show(LARGEST_RESIDUAL, "speed", unit)
-        permitted = f"within {largest} of the curve all falling cells share (speed over tip speed against loading)"
-        place = place_of(chart, tuple(index))
-        found.append(finding(Kind.SIMILARITY, place, "vne.power_on", f"{off} {side} it", permitted))
+        place = place_of(chart, tuple(int(at) for at in shape.index[cell]))
+        found.append(finding(Kind.SIMILARITY, place, f"{table}.power_on", f"{off} {side} it", permitted))
     return found
 
 

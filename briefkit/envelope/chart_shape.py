@@ -1,8 +1,10 @@
 """What the manual's chart says of itself: which cells are flat, which lie on a cold edge, which fall with loading.
 
 Rotor limits collapse: VNE over tip speed depends on the loading m'/rho' alone, as far as tip Mach number plays no part.
-So the falling cells of a sound chart lie on one curve. A cell more than 2 kt off it is a slip of the pen, or another
-limit that took over there; either way somebody should look.
+So the falling cells of a sound chart lie on one curve, over however many variables it is printed. A cell more than 2 kt
+off it is a slip of the pen, or another limit that took over there; either way somebody should look. Where a good part
+of the cells is off, the chart as a whole does not collapse: its limit is not one of loading alone (a load in newtons,
+stall that depends on Mach number).
 """
 
 from __future__ import annotations
@@ -24,7 +26,9 @@ Floats = NDArray[np.float64]
 Flags = NDArray[np.bool_]
 
 LARGEST_RESIDUAL: Final = 2.0 * units.KNOT
-_DEGREE: Final = 2
+_DEGREE: Final = 2  # over the logarithm of the loading, so that V ~ 1/loading is within it
+_MANY: Final = 30  # falling cells from which one degree more is known well enough: they spread over more loading
+_WHOLE: Final = 1.0 / 3.0  # of the falling cells, off the curve: then it is the chart and not the cell
 _LEAST: Final = 6  # falling cells; fewer make no curve
 _ROUNDS: Final = 30
 _ROBUST: Final = 0.7 * units.KNOT  # residuals beyond this weigh less and less (Huber's weights)
@@ -42,11 +46,11 @@ class Shape(StrEnum):
 class ChartShape:
     """Cells of the chart with a speed (cell,), SI; `residual` [m/s true] from the common curve, NaN where not falling.
 
-    `row`, `column` place a cell in the chart as typed: heights down; temperatures, masses or rotor speeds across.
+    `index` (cell, 4) places a cell in `VneChart.speeds`: height, temperature, mass, rotor speed; 0 on an axis the chart
+    does not have.
     """
 
-    row: NDArray[np.intp]
-    column: NDArray[np.intp]
+    index: NDArray[np.intp]
     shape: NDArray[np.object_]
     loading: Floats
     vne: Floats
@@ -59,6 +63,11 @@ class ChartShape:
         far = np.where(np.isfinite(self.residual), np.abs(self.residual), 0.0)
         order = np.argsort(-far, kind="stable")
         return order[far[order] > LARGEST_RESIDUAL]
+
+    @property
+    def collapses(self) -> bool:
+        """False where more than a third of the falling cells lie off every common curve."""
+        return len(self.findings) <= _WHOLE * np.isfinite(self.residual).sum()
 
 
 def chart_shape(aircraft: Aircraft) -> ChartShape:
@@ -89,7 +98,7 @@ def chart_shape(aircraft: Aircraft) -> ChartShape:
     if len(falling) >= _LEAST:
         residual[falling] = _residuals(loading[falling], vne[falling])
     mach = (vne + aircraft.rotor.tip_speed) * rotor / np.asarray(atmosphere.speed_of_sound(oat))
-    return ChartShape(row, t + m + k, shape, loading, vne, mach, residual)
+    return ChartShape(np.stack([row, t, m, k], axis=1), shape, loading, vne, mach, residual)
 
 
 def _shapes(speeds: Floats) -> NDArray[np.object_]:
@@ -109,8 +118,10 @@ def _shapes(speeds: Floats) -> NDArray[np.object_]:
 
 def _residuals(loading: Floats, vne: Floats) -> Floats:
     """Distance from a smooth curve fitted so that a few cells off it do not pull it (iterated Huber weights)."""
-    x = (loading - loading.mean()) / max(float(np.ptp(loading)), 1e-9)
-    powers = np.stack([x**n for n in range(_DEGREE + 1)], axis=1)
+    spread = np.log(loading)
+    x = (spread - spread.mean()) / max(float(np.ptp(spread)), 1e-9)
+    degree = _DEGREE + (1 if len(x) >= _MANY else 0)
+    powers = np.stack([x**n for n in range(degree + 1)], axis=1)
     weight = np.ones_like(x)
     residual: Floats = np.zeros_like(x)
     for _ in range(_ROUNDS):

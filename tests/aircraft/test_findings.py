@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import pytest
 
-from briefkit.aircraft.answers import Kind
+from briefkit.aircraft.answers import Kind, answered
 from briefkit.aircraft.findings import all_findings, entry_findings
 from briefkit.aircraft.load import load_configurations
 
@@ -166,3 +166,64 @@ def test_a_mistyped_cell_off_the_common_curve_needs_a_reason(file_3f):
     (found,) = similarity_findings(file_3f.replaced(("264     241     213", "264     241     231")).load())
     assert (found.kind, found.cells) == (Kind.SIMILARITY, "row 2,000, column 2,380")
     assert "km/h above it" in found.fault.read.replace("\u00a0", " ")
+
+
+# Made from one curve: VNE true = 42 m/s x sqrt(850 / loading), indicated by the 2T's calibration, whole knots.
+SOUND = """at {light}
+ft \\ degC   -20   0   +20   +40   kt indicated
+0   111   102   94   88
+4,000   94   87   80   74
+8,000   80   73   68   63
+at {heavy}
+ft \\ degC   -20   0   +20   +40   kt indicated
+0   101   93   86   80
+4,000   86   79   73   68
+8,000   73   67   61   57"""
+
+
+def test_cells_of_three_variables_off_the_common_curve_are_named_in_full(file_2t):
+    from briefkit.brief.check_aircraft import similarity_findings
+
+    def chart(text):
+        typed = text.format(light="1,700 lb or less", heavy="2,006 lb")
+        return file_2t.table("vne.power_on", f"source = \"2-4\"\nreading = \"interpolate\"\nchart = '''\n{typed}\n'''")
+
+    assert similarity_findings(chart(SOUND).load()) == []
+    (found,) = similarity_findings(chart(SOUND.replace("86   79   73   68", "86   79   79   68")).load())
+    assert (found.kind, found.cells) == (Kind.SIMILARITY, "row 4,000, column +20, at 2,006 lb")
+
+
+def test_a_configurations_own_chart_is_held_to_its_own_curve(file_2t):
+    from briefkit.brief.check_aircraft import similarity_findings
+
+    rows = [line.split() for line in file_2t.text.split("chart = '''")[1].split("'''")[0].strip().split("\n")[1:]]
+    lower = [[row[0], *(str(int(cell) - 10) for cell in row[1:])] for row in rows]
+
+    def doors_off(cells):
+        block = "\n".join(["ft \\ degC   -20   0   +20   +40   kt indicated", *("   ".join(row) for row in cells)])
+        kit = '[[configuration]]\nname = "doors off"\nsource = "doors supplement p. 2"\n[configuration.power_on]\n'
+        return file_2t.added(f"{kit}reading = \"interpolate\"\nchart = '''\n{block}\n'''").load("doors off")
+
+    assert similarity_findings(doors_off(lower)) == []
+    lower[4][3] = "77"  # 8,000 ft, +20: 69 by the chart above less ten
+    (found,) = similarity_findings(doors_off(lower))
+    assert (found.cells, found.fault.key) == (
+        "row 8,000, column +20",
+        "configuration (doors off).power_on, row 8,000, column +20",
+    )
+
+
+def test_a_chart_that_does_not_collapse_is_one_finding_for_one_answer(file_3f):
+    from briefkit.brief.check_aircraft import similarity_findings
+
+    level = file_3f.replaced(
+        ("1,000      285     269     241", "1,000      285     285     211"),
+        ("2,000      264     241     213", "2,000      284     261     183"),
+        ("3,000      236     213     185", "3,000      266     233     155"),
+        ("4,000      208     185     157", "4,000      238     205     127"),
+    )
+    (found,) = similarity_findings(level.load())
+    assert (found.cells, found.fault.key) == ("all", "vne.power_on, all")
+    assert "cells off it" in found.fault.read
+    said = level.added('[vne.reasons]\nsimilarity = { cells = "all", reason = "a load in newtons, 2-3" }').load()
+    assert answered(said, found)

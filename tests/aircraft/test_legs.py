@@ -19,7 +19,7 @@ def test_the_invented_legs_are_read_as_typed(operation: Operation) -> None:
     assert (leg.burn.text, leg.burn.source) == ("66 lb/h", "flight manual 5-10 rev 4")
     assert leg.burn.value == pytest.approx(66.0 * POUND / 3600.0)
     assert leg.burn.spread == pytest.approx(6.6 * POUND / 3600.0)
-    assert ("legs (entry 1)", "OM-C 4.2 rev 9") in operation.sources
+    assert ("legs (entry 1)", "OM-C 5.1 rev 9") in operation.sources
 
 
 def test_an_operation_without_legs_has_none(examples: Path, tmp_path: Path) -> None:

@@ -9,6 +9,7 @@ import pytest
 
 from briefkit import units
 from briefkit.envelope.chart_shape import Shape, chart_shape
+from briefkit.physics import airspeed, atmosphere
 
 KT = units.KNOT
 
@@ -39,7 +40,7 @@ def test_the_structural_plateau_is_flat_and_left_out(two_t):
 def test_one_wrong_cell_is_found_and_named(two_t, row, column, knots):
     shape = chart_shape(spoiled(two_t, row, column, knots))
     worst = shape.findings[0]
-    assert (shape.row[worst], shape.column[worst]) == (row, column)
+    assert shape.index[worst].tolist() == [row, column, 0, 0]
     assert np.sign(shape.residual[worst]) == np.sign(knots)
 
 
@@ -49,7 +50,7 @@ def test_a_cold_edge_is_told_apart(two_t):
     speeds[:2, 0] = 100.0 * KT
     shape = chart_shape(replace(two_t, vne=replace(two_t.vne, speeds=speeds)))
     cold = shape.shape == Shape.COLD
-    assert {(0, 0), (1, 0)} <= {(int(r), int(c)) for r, c in zip(shape.row[cold], shape.column[cold], strict=True)}
+    assert {(0, 0), (1, 0)} <= {(r, c) for r, c, *_ in shape.index[cold].tolist()}
     assert shape.findings.size == 0
 
 
@@ -58,3 +59,44 @@ def test_a_flat_chart_has_no_curve(two_t):
     shape = chart_shape(replace(two_t, vne=replace(two_t.vne, speeds=speeds)))
     assert np.isnan(shape.residual).all()
     assert set(shape.shape) == {Shape.FLAT}
+
+
+def three_variables(mixed: float = 0.0):
+    """Height by temperature by mass, made from one curve of loading alone: V = 75 m/s x sqrt(610 / loading), floored to
+    whole knots as a manual prints it; `mixed` adds what does not go with loading, so much a kilogram.
+    """
+
+    def made(aircraft):
+        heights, oats = np.arange(0.0, 3001.0, 500.0), units.ZERO_CELSIUS + np.array([-20.0, 0.0, 20.0, 40.0])
+        masses = aircraft.limits.max_mass.value * np.array([0.7, 0.85, 1.0])
+        height, oat, mass = np.meshgrid(heights, oats, masses, indexing="ij")
+        pressure = atmosphere.pressure_at(height.ravel()).reshape(height.shape)
+        true = 75.0 * np.sqrt(610.0 / (mass / atmosphere.density(pressure, oat))) - mixed * (mass - masses[1])
+        calibrated = airspeed.calibrated_from_true(true, pressure, oat)
+        speeds = (np.floor(calibrated / KT) * KT)[..., None]
+        chart = replace(
+            aircraft.vne, heights=tuple(heights), temperatures=tuple(oats), masses=tuple(masses), speeds=speeds
+        )
+        none = replace(aircraft.calibration, indicated=(), calibrated=())
+        return replace(aircraft, vne=chart, calibration=none)
+
+    return made
+
+
+def test_a_chart_of_three_variables_collapses_too(two_t):
+    made = three_variables()(two_t)
+    shape = chart_shape(made)
+    assert shape.index.shape == (7 * 4 * 3, 4)
+    assert np.nanmax(np.abs(shape.residual)) < 1.2 * KT  # whole knots indicated, and nothing else
+    for place in ((3, 2, 1, 0), (5, 1, 2, 0), (1, 3, 0, 0)):
+        speeds = made.vne.speeds.copy()
+        speeds[place] += 6.0 * KT
+        found = chart_shape(replace(made, vne=replace(made.vne, speeds=speeds)))
+        assert found.index[found.findings].tolist() == [list(place)]
+        assert found.collapses
+
+
+def test_a_chart_that_does_not_go_with_loading_is_told_as_a_whole(two_t):
+    shape = chart_shape(three_variables(0.08)(two_t))
+    assert not shape.collapses
+    assert chart_shape(two_t).collapses
