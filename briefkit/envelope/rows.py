@@ -7,8 +7,8 @@ true airspeed at close heights and their running maximum from the top.
 from __future__ import annotations
 
 import weakref
-from dataclasses import dataclass
-from typing import Final
+from dataclasses import dataclass, replace
+from typing import Any, Final
 
 import numpy as np
 from numpy.typing import NDArray
@@ -41,7 +41,8 @@ class Rows:
     Speeds are referred: V'/k' [m/s true], -inf where the chart has none. `heights` are the chart's own, rising and
     common to all rows; a row ends at its `top` (-inf: not permitted at all). `loading` [m3] is the largest m'/(rho'
     k'^2) of a row, `warmth` [K] its T'/k'^2 (-inf on the standard day, where the height asked for looks after it).
-    `best_above` is the running maximum of `vne` from the top, `peak` the index of the point that makes it;
+    `best_above` is the running maximum of `vne` from the top, `peak` the index of the point that makes it; `kept_at` is
+    where each row lies in these three, which rows of some temperatures share with all;
     `pressure_rows` where a row's loading is a pressure (else a density); `first_at` and `bin` serve `place`.
     """
 
@@ -56,6 +57,7 @@ class Rows:
     vne: Floats
     best_above: Floats
     peak: Index
+    kept_at: Index
     standard_day: bool
     pressure_rows: bool
     first_at: Index
@@ -75,6 +77,13 @@ class Rows:
             height = np.maximum(height, cold)
         floored: Floats = np.maximum(height, self.heights[0])
         return floored
+
+    def at_temperatures(self, at: Index) -> Rows:
+        """The rows of some temperatures alone, by their place among all of them."""
+        rows = (at[:, None] * self.columns + np.arange(self.columns)).ravel()
+        names = ("temperature", "mass", "rotor_speed", "top", "loading", "warmth", "kept_at")
+        kept: dict[str, Any] = {name: getattr(self, name)[rows] for name in names}
+        return replace(self, **kept)
 
     def place(self, height: Floats) -> Index:
         """Index of the first stored height at or above each height (within the stored ones)."""
@@ -156,6 +165,7 @@ def _lay_out(aircraft: Aircraft) -> Rows:
         vne=vne,
         best_above=best_above,
         peak=peak,
+        kept_at=np.arange(len(mass)),
         standard_day=standard,
         pressure_rows=not (standard or chart.density_altitude),
         first_at=first_at,

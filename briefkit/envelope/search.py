@@ -6,7 +6,6 @@ made a false 0.02 kt in a trial, which a page would have printed as 5 kt; this o
 
 from __future__ import annotations
 
-from collections.abc import Iterator
 from dataclasses import dataclass, fields
 from typing import Final
 
@@ -27,6 +26,9 @@ _REPORT: Final = 0.5 * units.KNOT  # of points this near the largest, the one ne
 _LOOK: Final = 0.05 * units.KNOT  # a row this far below the best is not looked at exactly
 _COLUMN: Final = 1.0 * units.KNOT  # a column of mass and rotor speed this far below the best has no row of its own
 _CHUNK: Final = 512  # queries at a time: their arrays stay in cache
+_MANY: Final = 1000  # rows of a chart that are looked at in two goes
+_STRIDE: Final = 8  # temperatures a look skips
+_NEAR: Final = 2.0 * units.KNOT
 
 
 @dataclass(frozen=True, eq=False)
@@ -56,10 +58,12 @@ def fastest(aircraft: Aircraft, loading: Floats, warmest: Floats, here: Floats, 
     """
     rows = rows_of(aircraft)
     near = _REPORT if report else 0.0
-    parts = [
-        _fastest(aircraft, rows, loading[at] * (1.0 - SLACK), warmest[at], here[at], near)
-        for at in _chunks(len(loading))
-    ]
+    size = _CHUNK if len(rows.top) < _MANY else _CHUNK // 8
+    parts = []
+    for start in range(0, len(loading), size):
+        at = slice(start, start + size)
+        asked = loading[at] * (1.0 - SLACK)
+        parts.append(_fastest(aircraft, _worth_reading(rows, asked, warmest[at]), asked, warmest[at], here[at], near))
     return Best(*(np.concatenate([getattr(part, f.name) for part in parts]) for f in fields(Best)))
 
 
@@ -85,18 +89,38 @@ def largest_loading(aircraft: Aircraft, warmest: Floats) -> Floats:
     return np.asarray(np.maximum(stored, np.where(known & np.isfinite(speed), own, -np.inf)))
 
 
-def _chunks(count: int) -> Iterator[slice]:
-    return (slice(start, start + _CHUNK) for start in range(0, count, _CHUNK))
+def _worth_reading(rows: Rows, loading: Floats, warmest: Floats) -> Rows:
+    """Of a chart with thousands of rows, the temperatures near those that could hold the answer of any query.
+
+    A look at every eighth temperature tells which: within two kelvin of one that was looked at the speed a row allows
+    is taken to change by less than `_NEAR`. A temperature left out wrongly could only have raised the answer.
+    """
+    if len(rows.top) < _MANY or rows.standard_day:
+        return rows
+    count = len(rows.top) // rows.columns
+    coarse = np.unique(np.append(np.arange(0, count, _STRIDE), count - 1))
+    looked = rows.at_temperatures(coarse)
+    best = _stored_speeds(looked, loading, warmest)[0].reshape(len(loading), len(coarse), rows.columns).max(axis=2)
+    near = (best >= np.maximum(best.max(axis=1), -1e9)[:, None] - _NEAR).any(axis=0)
+    wanted = np.zeros(count, dtype=bool)
+    wanted[coarse] = True
+    for left, right, worth in zip(coarse[:-1], coarse[1:], near[:-1] | near[1:], strict=True):
+        wanted[left:right] |= worth
+    return rows.at_temperatures(np.flatnonzero(wanted))
 
 
-def _fastest(aircraft: Aircraft, rows: Rows, loading: Floats, warmest: Floats, here: Floats, near: float) -> Best:
+def _stored_speeds(rows: Rows, loading: Floats, warmest: Floats) -> tuple[Floats, Index, Floats, NDArray[np.bool_]]:
+    """The running maximum at or above the height asked for (query, row), its index, that height, whether permitted."""
     asked = rows.asked(loading, warmest)
     open_ = (asked <= rows.top) & (rows.warmth <= warmest[:, None] * (1.0 + SLACK))
     index = rows.place(np.where(open_, asked, rows.heights[0]))
-    row = np.arange(len(rows.top))
-    stored = np.where(open_, rows.best_above[row, index], -np.inf)
+    return np.where(open_, rows.best_above[rows.kept_at, index], -np.inf), index, asked, open_
+
+
+def _fastest(aircraft: Aircraft, rows: Rows, loading: Floats, warmest: Floats, here: Floats, near: float) -> Best:
+    stored, index, asked, open_ = _stored_speeds(rows, loading, warmest)
     # The exact point lies between two stored ones: look only where the one below could still win.
-    below = np.where(open_, rows.best_above[row, np.maximum(index - 1, 0)], -np.inf)
+    below = np.where(open_, rows.best_above[rows.kept_at, np.maximum(index - 1, 0)], -np.inf)
     best = stored.max(axis=1)
     query, at = np.nonzero(below >= np.maximum(best, -1e9)[:, None] - near - _LOOK)
     found = [_stored(rows, query, at, index, stored), _exact(aircraft, rows, query, at, asked)]
@@ -119,7 +143,7 @@ class _Points:
 
 def _stored(rows: Rows, query: Index, row: Index, index: Index, stored: Floats) -> _Points:
     """The running maximum of the rows looked at, with the height of the peak that makes it."""
-    at = rows.peak[row, index[query, row]]
+    at = rows.peak[rows.kept_at[row], index[query, row]]
     height = np.minimum(rows.heights[at], rows.top[row])
     return _points(rows, query, row, stored[query, row], height)
 

@@ -50,7 +50,7 @@ class Crowd:
 
         None where every place near it is crowded.
         """
-        offsets = np.arange(6.0, _FAR, 4.0)
+        offsets = np.arange(6.0, _FAR, 7.0)
         lefts = np.concatenate([across - width * np.linspace(0.0, 1.0, 5), across + _ASIDE, across - width - _ASIDE])
         tops = np.concatenate([down + offsets, down - offsets - height, down - 0.5 * height + _NUDGES])
         left, top = (edges.ravel() for edges in np.broadcast_arrays(lefts[None, :], tops[:, None]))
@@ -62,16 +62,18 @@ class Crowd:
         for box in self._boxes:
             apart = (left > box[1] + _CLEAR) | (right < box[0] - _CLEAR)
             free &= apart | (top > box[3] + _CLEAR) | (bottom < box[2] - _CLEAR)
+        free &= (left > across + 5.0) | (right < across - 5.0) | (top > down + 5.0) | (bottom < down - 5.0)
+        kept = np.flatnonzero(free)
+        left, right, top, bottom, cost = (edges[kept] for edges in (left, right, top, bottom, cost))
         for (x, y), dear in self._points:
+            close = (x > across - _FAR - width) & (x < across + _FAR + width)
+            x, y = x[close], y[close]
             inside = (x > left[:, None] - _CLEAR) & (x < right[:, None] + _CLEAR)
             inside &= (y > top[:, None] - _CLEAR) & (y < bottom[:, None] + _CLEAR)
             cost = np.where(inside.any(axis=1), cost + dear, cost)
-        free &= np.isfinite(cost)
-        # Beside the point means not over it.
-        free &= (left > across + 5.0) | (right < across - 5.0) | (top > down + 5.0) | (bottom < down - 5.0)
-        if not free.any():
+        if not np.isfinite(cost).any():
             return None
-        best = int(np.argmin(np.where(free, cost, np.inf)))
+        best = int(np.argmin(cost))
         self._boxes.append((left[best], right[best], top[best], bottom[best]))
         return float(left[best]), float(top[best])
 
