@@ -44,7 +44,6 @@ class RuleOfThumb:
 
 def rules_of_thumb(aircraft: Aircraft, condition: Condition) -> tuple[RuleOfThumb, ...]:
     """The four rules at one condition. Raises as `equivalent_vne` does where it has no answer itself."""
-    equivalent_vne(aircraft, condition)
     height, mass = aircraft.units.height, aircraft.units.mass
     thousand = 1000.0 if height == "ft" else 300.0
     fifty = 50.0 if mass == "kg" else 100.0
@@ -67,6 +66,8 @@ def rules_of_thumb(aircraft: Aircraft, condition: Condition) -> tuple[RuleOfThum
     answers = equivalent_vnes(
         aircraft, replace(one, **together), upper=False
     )  # one batch: most of its cost is per call
+    if answers.reason[_POINTS] != Reason.NONE:  # the condition itself: a single call says what is permitted
+        equivalent_vne(aircraft, condition)
     every = np.where(answers.reason == Reason.NONE, answers.ias, np.nan).reshape(len(wanted), -1)
     rules = []
     for (field, quantity, unit, name, text, step, _), offsets, ias in zip(wanted, steps, every, strict=True):
