@@ -335,6 +335,7 @@ def recompute_command(
 def live_command(
     path: Annotated[Path, typer.Argument(exists=True, help="A brief's folder or its notebook.")],
     browser: Annotated[bool, typer.Option(help="Open the browser.")] = True,
+    low_delay: Annotated[bool, typer.Option(help="Let sliders' small messages leave the server at once.")] = True,
 ) -> None:
     """Open a brief in JupyterLab.
 
@@ -343,7 +344,10 @@ def live_command(
     with _plain_errors():
         from briefkit.brief.lab import open_lab
 
-        open_lab(path, lambda address: typer.echo(f"{address}\nstop with Ctrl-C"), browser=browser)
+        def tell(address: str) -> None:
+            typer.echo(f"{address}\nstop with Ctrl-C")
+
+        open_lab(path, tell, browser=browser, low_delay=low_delay)
 
 
 @contextmanager

@@ -175,8 +175,11 @@ def test_live_serves_this_machine_only_behind_a_token(operator, monkeypatch, cap
         overrides.append(json.loads((Path(settings) / "overrides.json").read_text()))
 
     monkeypatch.setattr(lab, "_serve", serve)
+    arranged: list[bool] = []
+    monkeypatch.setattr(lab, "send_at_once", lambda: arranged.append(True))
     lab.open_lab(operator / "vellmark-2t", print, browser=False)
     (argv,) = served
+    assert arranged == [True]
     options = dict(part.removeprefix("--").split("=", 1) for part in argv)
     assert options["ServerApp.ip"] == "127.0.0.1"
     assert options["ServerApp.allow_remote_access"] == "False"
@@ -186,6 +189,8 @@ def test_live_serves_this_machine_only_behind_a_token(operator, monkeypatch, cap
     assert len(options["IdentityProvider.token"]) >= 32
     lab.open_lab(operator / "vellmark-2t", print, browser=False)
     assert served[1] != argv, "a token is used once"
+    done = CliRunner().invoke(app, ["live", str(operator / "vellmark-2t"), "--no-browser", "--no-low-delay"])
+    assert (done.exit_code, len(served), len(arranged)) == (0, 3, 2)
     assert overrides[0] == {
         "@jupyterlab/apputils-extension:notification": {"fetchNews": "false", "checkForUpdates": False}
     }

@@ -15,6 +15,7 @@ from typing import Final
 from urllib.parse import quote
 
 from briefkit.brief.identity import NOTEBOOK, operator_folder
+from briefkit.brief.low_delay import send_at_once
 from briefkit.errors import BuildError
 
 _LOOPBACK: Final = "127.0.0.1"
@@ -23,10 +24,11 @@ _START_SECONDS: Final = 120
 _OVERRIDES: Final = {"@jupyterlab/apputils-extension:notification": {"fetchNews": "false", "checkForUpdates": False}}
 
 
-def open_lab(path: Path, tell: Callable[[str], None], *, browser: bool = True) -> None:
+def open_lab(path: Path, tell: Callable[[str], None], *, browser: bool = True, low_delay: bool = True) -> None:
     """Serve the operator folder and open the brief's notebook; returns when the server is stopped.
 
-    `path` is a brief's folder or its notebook; `tell` hears the address once it answers. Raises:
+    `path` is a brief's folder or its notebook; `tell` hears the address once it answers. `low_delay` lets the kernel's
+    small messages leave at once, where the installed server allows it. Raises:
         BuildError: JupyterLab is not installed, or there is no notebook here.
         FaultyFile: no operation.toml here or above.
     """
@@ -42,6 +44,8 @@ def open_lab(path: Path, tell: Callable[[str], None], *, browser: bool = True) -
         place = "/lab/tree/" + quote(notebook.relative_to(root).as_posix())
         address = f"http://{_LOOPBACK}:{port}{place}?token={token}"
         Thread(target=_tell_when_open, args=(port, lambda: tell(address)), daemon=True).start()
+        if low_delay:
+            send_at_once()
         _serve(arguments(root, place, port, token, Path(private), browser=browser))
 
 
