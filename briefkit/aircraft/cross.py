@@ -13,6 +13,8 @@ from typing import Final
 from briefkit import units
 from briefkit.aircraft import estimates
 from briefkit.aircraft.chart_text import TypedChart
+from briefkit.aircraft.make import needed
+from briefkit.aircraft.model import Hub
 from briefkit.aircraft.tables import LimitsTable, RotorTable, UnitsTable
 from briefkit.errors import Fault
 from briefkit.reading.quantity import Typed
@@ -72,6 +74,7 @@ def rotor_faults(rotor: RotorTable) -> list[Fault]:
         faults.append(
             _fault("rotor.hinge_offset", "nothing", "hinge_offset is needed with an articulated hub", "add it")
         )
+    faults += _hinge_faults(rotor)
     if rotor.radius and rotor.rpm and not 150.0 <= (tip := _si(rotor.radius) * _si(rotor.rpm)) <= 260.0:
         remedy = "look again: the radius is half the diameter, rpm is that of the rotor at 100 %"
         faults.append(
@@ -83,6 +86,26 @@ def rotor_faults(rotor: RotorTable) -> list[Fault]:
             )
         )
     return faults
+
+
+def _hinge_faults(rotor: RotorTable) -> list[Fault]:
+    """A flap hinge, or the equivalent one of a hingeless hub, outboard of where the blade begins."""
+    cutout = rotor.root_cutout.value if rotor.root_cutout else None
+    if cutout is None or rotor.hub not in ("articulated", "hingeless"):
+        return []
+    if rotor.hinge_offset and rotor.hinge_offset.value is not None:
+        key, offset, read = "rotor.hinge_offset", rotor.hinge_offset.value, rotor.hinge_offset.text
+    elif rotor.hub == "hingeless":
+        typed = rotor.flap_frequency
+        frequency = typed.value if typed and typed.value else estimates.flap_frequency(Hub.HINGELESS, 0.0).value
+        key, offset = "rotor.flap_frequency", estimates.equivalent_hinge_offset(frequency)
+        read = f"{frequency:g}, a hinge equivalent at {100.0 * offset:.1f} %"
+    else:
+        return []
+    if offset <= cutout * (1.0 + 1e-9):
+        return []
+    permitted = f"a hinge inside the root cut-out, {needed(rotor.root_cutout).text}"
+    return [_fault(key, read, permitted, "root_cutout is where the blade begins, from the rotor's centre")]
 
 
 def loading_faults(rotor: RotorTable, limits: LimitsTable) -> list[Fault]:

@@ -2,10 +2,11 @@
 
 from __future__ import annotations
 
+import hashlib
 from pathlib import Path
 from typing import Final
 
-from briefkit.aircraft import answers, configuration, cross, hover, make, manual_speeds, power_off, vne
+from briefkit.aircraft import answers, configuration, cross, hover, make, manual_speeds, power_off, section_table, vne
 from briefkit.aircraft.calibration_text import CalibrationRows, read_calibration
 from briefkit.aircraft.make import needed
 from briefkit.aircraft.model import Aircraft, DisplayUnits, HoverLine, HoverTable
@@ -28,7 +29,7 @@ from briefkit.reading.quantity import quoted
 
 NONE_IN_MANUAL: Final = "none in manual"
 _REQUIRED: Final = ("type", "units", "rotor", "limits", "calibration", "vne")
-_OPTIONAL: Final = ("invented", "manual", "hover", "recovery", configuration.KEY)
+_OPTIONAL: Final = ("invented", "manual", "hover", "recovery", configuration.KEY, section_table.KEY)
 
 
 def load_aircraft(path: Path | str, configuration: str = "") -> Aircraft:
@@ -75,6 +76,8 @@ class _Parts:
         self.speeds = document.entries("manual.speeds", SpeedEntry)
         self.hover = document.entries("hover", HoverEntry)
         self.recovery = document.table("recovery", RecoveryTable)
+        self.section_entry = document.table(section_table.KEY, section_table.SectionEntry)
+        self.section = section_table.read_section(document, self.section_entry)
         self.invented = document.data.get("invented", "")
         if not isinstance(self.invented, str):
             document.fault("invented", quoted(self.invented), "a sentence in quotes")
@@ -202,11 +205,17 @@ class _Parts:
             recovery_source=recovery.source,
             invented=self.invented,
             file=document.path.name,
-            data_hash=document.data_hash,
+            data_hash=self._data_hash(),
             sources=self._sources(),
             unanswered=document.unanswered(),
             configurations=(name, *(needed(one.entry.name) for one in self.configurations)),
+            section=self.section,
         )
+
+    def _data_hash(self) -> str:
+        """That of the file, with its section table's where it names one: an edit of either is an edit."""
+        own = self.document.data_hash
+        return own if self.section is None else hashlib.sha256(f"{own} {self.section.digest}".encode()).hexdigest()
 
     def _hover_lines(self) -> tuple[HoverLine, ...]:
         tables = iter(self.hover_tables)
@@ -231,6 +240,8 @@ class _Parts:
         ]
         if self.recovery:
             found.append(("recovery", self.recovery.source))
+        if self.section:
+            found.append((section_table.KEY, self.section.source))
         return tuple(found)
 
 

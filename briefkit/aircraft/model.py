@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 
 from briefkit import units
 from briefkit.aircraft.chart import VneChart
+from briefkit.aircraft.section_table import OperatorSection
 from briefkit.errors import OutsideCalibration, Reason
 from briefkit.physics import atmosphere
 
@@ -322,8 +323,9 @@ class Aircraft:
 
     `serials` are those this configuration may be flown on; `refused_serials` the others of the file, each with the
     reason. `configurations` names every one the file knows, the basic one first; `basic_vne` is the basic chart, None
-    for the basic configuration itself. `data_hash` is the SHA-256 of the file as read; `unanswered` lists dotted keys
-    typed "?" (a draft may have them, a released page may not), `sources` the source of each table that this
+    for the basic configuration itself. `section` is the operator's own blade section, where the file names a table.
+    `data_hash` is the SHA-256 of the file as read (with its section table's, where it names one); `unanswered` lists
+    keys typed "?" (a draft may have them, a released page may not), `sources` the source of each table that this
     configuration rests on.
     """
 
@@ -350,6 +352,7 @@ class Aircraft:
     configurations: tuple[str, ...] = ()
     refused_serials: tuple[tuple[str, str], ...] = ()
     basic_vne: VneChart | None = None
+    section: OperatorSection | None = None
 
     @property
     def mirrored(self) -> bool:

@@ -2,21 +2,39 @@
 
 Lines that begin with # are notes. Rows go by Mach number, within it by rising angle, and every Mach number has the same
 angles: a table with holes would have to be guessed at, so it is refused with the row named.
+
+The aircraft file names it: the CSV stands beside that file, so that it lies in the operator folder and is covered by
+what is signed. `spread` is the half-width of its angle of maximum lift.
+
+    [section]
+    table = "pelquill-2t-section.csv"
+    source = "wind-tunnel report 12 rev 1, table 3"
+    spread = "1 deg"
 """
 
 from __future__ import annotations
 
+import hashlib
+import math
+import re
+import tomllib
 from dataclasses import dataclass
 from itertools import pairwise
 from pathlib import Path
-from typing import Final
+from typing import Annotated, ClassVar, Final
 
 import numpy as np
+from numpy.typing import NDArray
 
+from briefkit.aircraft.tables import Text
 from briefkit.errors import Fault, FaultyFile, OutsideLimits, ReadingError
-from briefkit.physics.section import TableSection
+from briefkit.physics.section import Naca0012, TableSection
+from briefkit.reading.document import SIZE_LIMIT, Document, Table
+from briefkit.reading.quantity import Typed, quantity, quoted
 from briefkit.units import read
 
+KEY: Final = "section"
+_FILE = re.compile(r"[A-Za-z0-9][A-Za-z0-9 _.-]*\.csv")
 COLUMNS: Final = ("mach", "alpha_deg", "cl", "cd")
 _RANGES: Final = {"mach": (0.0, 1.0), "alpha_deg": (-180.0, 180.0), "cl": (-4.0, 4.0), "cd": (0.0001, 3.0)}
 
@@ -28,6 +46,82 @@ class _Row:
     alpha: float
     lift: float
     drag: float
+
+
+class SectionEntry(Table):
+    required: ClassVar[tuple[str, ...]] = ("table",)
+    table: Text | None = None
+    spread: Annotated[Typed | None, quantity("angle", 0.0, math.radians(8.0))] = None
+    source: str = ""
+
+
+@dataclass(frozen=True, eq=False)
+class OperatorSection:
+    """The operator's section as stated: its table, the file's name, source and the half-width of its stall angle [rad].
+
+    `digest` is the SHA-256 of the file. A section for `trim` and for `stall_measures`.
+    """
+
+    table: TableSection
+    file: str
+    source: str
+    spread: float
+    digest: str
+
+    @property
+    def highest_mach(self) -> float:
+        """The last Mach number of the table."""
+        return self.table.highest_mach
+
+    def coefficients(
+        self, angle: NDArray[np.float64], mach: NDArray[np.float64], lift_slope: NDArray[np.float64]
+    ) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+        """Those of the table, as typed."""
+        return self.table.coefficients(angle, mach, lift_slope)
+
+    def stall_angle(self, mach: NDArray[np.float64]) -> NDArray[np.float64]:
+        """Angle of maximum lift [rad] less its spread; beyond the table's last Mach number no more than NACA 0012's."""
+        own = self.table.stall_angle(mach)
+        beyond = np.asarray(mach) > self.highest_mach
+        return np.where(beyond, np.minimum(own, Naca0012().stall_angle(mach)), own) - self.spread
+
+
+def read_section(document: Document, entry: SectionEntry | None) -> OperatorSection | None:
+    """The section an aircraft file names; None where there is none, or a faulty one with its faults in the document."""
+    if entry is None or entry.table is None or document.has_fault_below(KEY):
+        return None
+    key, folder = f"{KEY}.table", document.path.parent
+    if not _FILE.fullmatch(entry.table):
+        document.fault(key, quoted(entry.table), "the name of a .csv file beside this one, without folders")
+        return None
+    path = folder / entry.table
+    if path.is_symlink() or (path.exists() and not path.is_file()):
+        document.fault(key, quoted(entry.table), "a file of its own, no link", "put the file itself beside this one")
+        return None
+    try:
+        if path.stat().st_size > SIZE_LIMIT:
+            document.fault(key, f"{path.stat().st_size:,} bytes", f"at most {SIZE_LIMIT:,} bytes")
+            return None
+        table = read_section_table(path)
+    except OSError as error:
+        document.fault(key, f"{quoted(entry.table)}, {(error.strerror or 'not readable').lower()}", "a readable file")
+        return None
+    except FaultyFile as faulty:
+        for fault in faulty.faults:
+            document.fault(f"{key}, {fault.file}, {fault.key}", fault.read, fault.permitted, fault.remedy)
+        return None
+    spread = (entry.spread.value or 0.0) if entry.spread else 0.0
+    return OperatorSection(table, entry.table, entry.source, spread, hashlib.sha256(path.read_bytes()).hexdigest())
+
+
+def section_file(aircraft_file: Path) -> Path | None:
+    """The section table an aircraft file names, without reading either for sense; None where it names none.
+
+    Raises OSError where the aircraft file cannot be read and ValueError where it is not TOML.
+    """
+    named = tomllib.loads(aircraft_file.read_bytes().decode("utf-8-sig")).get(KEY)
+    table = named.get("table") if isinstance(named, dict) else None
+    return aircraft_file.parent / table if isinstance(table, str) and _FILE.fullmatch(table) else None
 
 
 def read_section_table(path: Path) -> TableSection:

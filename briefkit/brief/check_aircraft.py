@@ -47,6 +47,9 @@ def _findings(place: str, aircraft: Aircraft) -> list[Finding]:
         if getattr(aircraft.rotor, name).spread == 0.0:
             remedy = 'add spread = "...", the half-width you would bet on at 95 %'
             found.append(Finding(Level.BLOCKS, f"{place}: rotor.{name}", "no spread", remedy))
+    if aircraft.section is not None and aircraft.section.spread == 0.0:
+        remedy = 'add spread = "1 deg", the half-width of its angle of maximum lift'
+        found.append(Finding(Level.BLOCKS, f"{place}: section", "no spread", remedy))
     for entry in fields(aircraft.rotor):
         stated = getattr(aircraft.rotor, entry.name)
         if isinstance(stated, Stated) and not stated.known:

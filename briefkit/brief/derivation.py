@@ -197,7 +197,20 @@ def assumptions(aircraft: Aircraft, table: ReductionTable) -> Section:
         "What the rotor model assumes",
         before=tuple(before),
         grid=Grid(header, rows, "What each spread does to the onset band", Ink.CONTEXT, numbers=False),
-        after=(published_line(),),
+        after=(*section_line(aircraft), published_line()),
+    )
+
+
+def section_line(aircraft: Aircraft) -> tuple[str, ...]:
+    """Where the operator's own section is used and where it is not."""
+    section = aircraft.section
+    if section is None:
+        return ()
+    spread = units.show(section.spread, "angle", "deg", 1)
+    return (
+        f"The operator’s own blade section ({section.source}) stands behind pictures of the angle over stall: its "
+        f"angle of maximum lift, less its spread of {spread}. The onset band keeps the section without stall that the "
+        "published 12 and 16 degrees were computed with.",
     )
 
 

@@ -20,6 +20,7 @@ from pathlib import Path
 from typing import Any, Final
 
 from briefkit.aircraft.operation import OPERATION_FILE
+from briefkit.aircraft.section_table import section_file
 from briefkit.brief.compare import Revision, revision_of, turns_of
 from briefkit.brief.identity import BRIEF_FILE, NOTEBOOK, Brief, load_brief, operator_folder
 from briefkit.brief.register import REGISTER_FILE, Issued, Register, add_issued, citations, load_register
@@ -110,6 +111,8 @@ def archived(brief: Brief, page: str) -> bytes:
         f"{_INSIDE}/{BRIEF_FILE}": (identity.folder / identity.file).read_bytes(),
         f"{_INSIDE}/{NOTEBOOK}": _without_outputs(identity.notebook),
     }
+    if (section := section_file(identity.aircraft_path)) is not None:
+        files[section.relative_to(identity.operator).as_posix()] = section.read_bytes()
     for path in covered(identity):
         files[f"{_INSIDE}/{path.relative_to(identity.folder).as_posix()}"] = path.read_bytes()
     made = io.BytesIO()

@@ -1,9 +1,10 @@
 """What a signature covers: one hash over everything a page is made from, kept part by part so that a change has a name.
 
 Covered: cell sources and the pictures pasted into cells, `brief.toml` without its signatures, every other file of the
-brief's folder (a notebook may read any of them: its deck, modules, tables, pictures), the aircraft file, the operation
-file, the handout's template, and briefkit's version. Never stored outputs. It finds an edit; it is no lock: whoever can
-write the folder can also write a signature, so the folder's own access rights are part of the control.
+brief's folder (a notebook may read any of them: its deck, modules, tables, pictures), the aircraft file with the
+section table it names, the operation file, the handout's template, and briefkit's version. Never stored outputs. It
+finds an edit; it is no lock: whoever can write the folder can also write a signature, so the folder's own access rights
+are part of the control.
 """
 
 from __future__ import annotations
@@ -19,6 +20,7 @@ from pathlib import Path
 from typing import Any, Final
 
 from briefkit.aircraft.operation import OPERATION_FILE
+from briefkit.aircraft.section_table import section_file
 from briefkit.brief.identity import BRIEF_FILE, NOTEBOOK, Identity, Signature
 from briefkit.brief.pages import template_folder
 from briefkit.errors import BuildError
@@ -62,6 +64,8 @@ def seal_of(identity: Identity, cells: Iterable[Any] | None = None) -> Seal:
             identity.aircraft: _file(identity.aircraft_path),
             OPERATION_FILE: _file(identity.operator / OPERATION_FILE),
         }
+        if (section := section_file(identity.aircraft_path)) is not None:
+            parts[section.relative_to(identity.operator).as_posix()] = _file(section)
         for path in covered(identity):
             name = path.relative_to(identity.folder).as_posix()
             parts[f"{name} (brief)" if name in parts else name] = _file(path)

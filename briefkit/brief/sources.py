@@ -10,7 +10,9 @@ from typing import Final
 
 from markupsafe import escape
 
+from briefkit.aircraft.legs import Leg
 from briefkit.aircraft.model import Aircraft, Stated
+from briefkit.aircraft.operation import FleetEntry, WorkArea
 from briefkit.brief.identity import Brief
 from briefkit.brief.pages import Source
 from briefkit.envelope import cues
@@ -38,12 +40,17 @@ def sources(brief: Brief) -> tuple[Source, ...]:
         ("operator, order of documents, policy", operation.source),
         *([("masses, bank, status", fleet.source), *_stated(fleet, fleet.source)] if fleet is not None else ()),
         (area.name, area.source),
+        *((f"leg, {leg.name}", leg.source) for leg in operation.legs if fleet and _flown(leg, fleet, area)),
         ("recognition, recovery, cautions", cues.HANDBOOK),
     ]
     for what, source in stated:
         if source:
             found.setdefault(source, {})[what] = None
     return tuple(Source(at, text, ", ".join(what)) for at, (text, what) in enumerate(found.items(), start=1))
+
+
+def _flown(leg: Leg, fleet: FleetEntry, area: WorkArea) -> bool:
+    return (leg.fleet, leg.work_area) == (fleet.key, area.key)
 
 
 def _of_aircraft(aircraft: Aircraft) -> Iterator[tuple[str, str]]:
@@ -66,6 +73,8 @@ def _of_aircraft(aircraft: Aircraft) -> Iterator[tuple[str, str]]:
     for hover in aircraft.hover_tables:
         yield f"{hover.kind} hover ceilings", hover.source
     yield "recovery", aircraft.recovery_source
+    if aircraft.section is not None:
+        yield "blade section", aircraft.section.source
 
 
 def _stated(table: object, of_table: str) -> Iterator[tuple[str, str]]:

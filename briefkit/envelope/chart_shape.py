@@ -67,7 +67,7 @@ class ChartShape:
     @property
     def collapses(self) -> bool:
         """False where more than a third of the falling cells lie off every common curve."""
-        return len(self.findings) <= _WHOLE * np.isfinite(self.residual).sum()
+        return bool(len(self.findings) <= _WHOLE * np.isfinite(self.residual).sum())
 
 
 def chart_shape(aircraft: Aircraft) -> ChartShape:

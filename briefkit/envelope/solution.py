@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 
 from briefkit import units
 from briefkit.aircraft.model import Aircraft
+from briefkit.aircraft.section_table import OperatorSection
 from briefkit.envelope import here
 from briefkit.envelope.condition import Condition, Conditions
 from briefkit.errors import NoTrim, OutsideLimits, ReadingError, Reason
@@ -30,7 +31,8 @@ class Solution:
 
     `tip_angle_deg` is the angle of attack at the retreating tip (r = 1, azimuth 270), `blade_loading` CT/sigma,
     `residual` the largest relative imbalance left, `tas` in m/s, `phase_lag_deg` atan((gamma/8)/(nu^2 - 1)) at local
-    density. `trim` holds the arrays of the disc, a batch of one.
+    density. `trim` holds the arrays of the disc, a batch of one. `section` is the operator's own, whose stall angle the
+    disc is held against; the flight itself is solved with the attached section of the published boundaries.
     """
 
     tip_angle_deg: float
@@ -47,6 +49,7 @@ class Solution:
     tas: float
     phase_lag_deg: float
     trim: Trim
+    section: OperatorSection | None = None
 
     @property
     def true_airspeed(self) -> Speed:
@@ -123,9 +126,10 @@ def solve(aircraft: Aircraft, condition: Condition) -> Solution:
     numbers = {
         name: float(getattr(many, name)[0])
         for name in Solution.__dataclass_fields__
-        if name not in ("trim", "phase_lag_deg")
+        if name not in ("trim", "phase_lag_deg", "section")
     }
-    return Solution(**numbers, phase_lag_deg=phase_lag_deg(aircraft, condition), trim=many.trim)
+    lag = phase_lag_deg(aircraft, condition)
+    return Solution(**numbers, phase_lag_deg=lag, trim=many.trim, section=aircraft.section)
 
 
 def solve_many(aircraft: Aircraft, conditions: Conditions | Iterable[Condition]) -> Solutions:

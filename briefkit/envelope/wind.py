@@ -45,5 +45,6 @@ def solve_in_wind(aircraft: Aircraft, condition: Condition, bearing: float, spee
     return Solution(
         advance_ratio=float(solved.mu[0]), blade_loading=float(solved.ct_sigma[0]),
         advancing_mach=float(solved.advancing_mach[0]), residual=float(solved.residual[0]), tas=speed,
-        phase_lag_deg=phase_lag_deg(aircraft, condition), trim=solved, **angles,
+        phase_lag_deg=phase_lag_deg(aircraft, condition), trim=solved,
+        section=aircraft.section, **angles,
     )  # fmt: skip

@@ -98,7 +98,7 @@ def field_of(quantity: str, solution: Solution, root: float, turn: float = 0.0) 
 
 
 def _over_stall(solution: Solution) -> Field:
-    measures = stall_measures(solution.trim, grid=(_AZIMUTHS, _RINGS))
+    measures = stall_measures(solution.trim, solution.section, (_AZIMUTHS, _RINGS))
     over = np.degrees(measures.over_stall[0])
     excess = float(np.degrees(measures.excess[0]))
     place = f"{units.show_number(100.0 * measures.excess_radius[0])} % radius, azimuth " + words.angle(
@@ -109,16 +109,28 @@ def _over_stall(solution: Solution) -> Field:
         f"Nearest to stall at {place}: {words.angle(abs(excess))} {past} the stall angle there. "
         f"{units.show_number(100.0 * measures.stalled_share[0])} % of the disc is past it."
     )
-    notes = (
-        "Held against the stall angle of NACA 0012 at each Mach number: another section stalls elsewhere (common "
-        "practice, no source).",
-        f"{_ends(OVER_STALL)} {_SLOW}",
-    )
+    notes = (_whose(solution), f"{_ends(OVER_STALL)} {_SLOW}")
     values = _within(over, np.isnan(over), OVER_STALL)
     return Field(
         measures.radii, measures.azimuths, values, "Angle over stall", caption,
         "Angle of attack less the stall angle", notes, 1, "°",
     )  # fmt: skip
+
+
+def _whose(solution: Solution) -> str:
+    """Whose stall angle it is: the operator's section where the aircraft file names one."""
+    section = solution.section
+    if section is None:
+        return (
+            "Held against the stall angle of NACA 0012 at each Mach number: another section stalls elsewhere (common "
+            "practice, no source)."
+        )
+    less = words.angle(math.degrees(section.spread))
+    return (
+        f"Held against the operator's own section ({section.source}): its angle of maximum lift at each Mach number, "
+        f"less its spread of {less}; above Mach {units.show_number(section.highest_mach, 2)}, where its table ends, no "
+        "more than NACA 0012's."
+    )
 
 
 _SLOW: Final = (
