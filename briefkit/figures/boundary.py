@@ -21,7 +21,7 @@ Floats = NDArray[np.float64]
 _ROOM: Final = Margins(40, 122, 64, 46)
 _HEIGHT: Final = 374
 _SAME: Final = 0.05  # speeds closer than this, everywhere, are one line
-_PALE: Final = 0.4  # of the band's own grey, where it lies above VNE
+_PALE: Final = 0.55  # of the band's own grey, where it lies above VNE
 _LETTER: Final = 6.6  # px, of the words inside the figure
 _ROW: Final = 14.0
 

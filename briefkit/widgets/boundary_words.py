@@ -13,11 +13,12 @@ from briefkit.envelope import region
 from briefkit.envelope.boundary import Against, Boundary, EquivalentCurve, Margin
 from briefkit.envelope.condition import Condition
 from briefkit.envelope.equivalent import covered_bank
-from briefkit.errors import Refusal
+from briefkit.errors import Reason, Refusal
 from briefkit.figures.boundary import Curves
 from briefkit.widgets import words
 
 _TIE: Final = "\u00a0"
+_ENDS: Final = str(Reason.BEYOND_CHART)  # "the chart ends at" says it
 
 
 def name(curve: EquivalentCurve) -> str:
@@ -116,7 +117,7 @@ def onset_here(aircraft: Aircraft, curves: Boundary, x: float) -> str:
         return "The rotor model has no onset band here."
     label, said = aircraft.units.speed_label(), margin(curves, x)
     vne = float(np.interp(x, curves.x, curves.vne))
-    reduced = " It begins under VNE." if low < vne else ""
+    reduced = " It begins under VNE." if low < vne else " It begins above VNE, which governs."
     told = "against VNE it is not resolved" if said == str(Margin.UNRESOLVED) else f"first signs are {said}"
     unit = "" if said == str(Margin.UNRESOLVED) else f" ({aircraft.units.speed})"
     return f"The onset band here is {found} {label}, softer than the chart; {told}{unit}.{reduced}"
@@ -143,7 +144,12 @@ def notes(aircraft: Aircraft, curves: Boundary) -> tuple[str, ...]:
         "spread to the limit of control (16°) with its own: softer than the chart, pale where it lies above VNE, and "
         "no speed to fly. A margin to VNE smaller than half the band, or than a band open at the top, is not resolved."
     )
-    said += [_told(curves, curve) for curve in curves.equivalent]
+    told: dict[str, list[str]] = {}
+    for curve in curves.equivalent:
+        told.setdefault(_told(curves, curve), []).append(name(curve))
+    for where, called in told.items():
+        listed = " and ".join([", ".join(called[:-1]), called[-1]] if len(called) > 1 else called)
+        said.append(f"{listed[0].upper()}{listed[1:]}: {where}.")
     if curves.calibrated is not None:
         foot, top = (units.show_number(end) for end in curves.calibrated)
         said.append(
@@ -154,7 +160,7 @@ def notes(aircraft: Aircraft, curves: Boundary) -> tuple[str, ...]:
         said.append("Where the band or its upper end is missing, that speed is outside the calibration or the model.")
     said += [
         f"Where a blue line ends: {reason}."
-        for reason in sorted({str(r) for curve in curves.equivalent for r in curve.reason if r})
+        for reason in sorted({str(r) for curve in curves.equivalent for r in curve.reason if r} - {_ENDS})
     ]
     return tuple(said)
 
@@ -165,11 +171,9 @@ def _own(aircraft: Aircraft, asked: str) -> list[ManualSpeed]:
 
 def _told(curves: Boundary, curve: EquivalentCurve) -> str:
     """Where a line leaves VNE, and where it ends."""
-    called = name(curve)
-    called = called[0].upper() + called[1:]
     known = np.isfinite(curve.ias)
     if not known.any():
-        return f"{called}: no figure anywhere on this line."
+        return "no figure anywhere on this line"
     if not curve.parts:
         apart = bool(np.nanmax(curves.vne[known] - curve.ias[known]) > 0.05)
         where = "below the manual's VNE all along" if apart else "nothing is taken off, the manual's VNE holds"
@@ -177,4 +181,4 @@ def _told(curves: Boundary, curve: EquivalentCurve) -> str:
         where = "parts from the manual's VNE at " + " and ".join(_at(curves, x, curve) for x in curve.parts)
     if curve.ends:
         where += "; the chart ends at " + " and ".join(_place(curves, x) for x in curve.ends)
-    return f"{called}: {where}."
+    return where
