@@ -67,7 +67,7 @@ class EquivalentChart(Exhibit):
         here = Mark(
             self._place(aircraft, condition.pressure_altitude, condition.oat),
             vne,
-            (f"{mass}, {turn}" if turn else mass, f"VNE {said.number(vne)} here"),
+            (f"{mass}, {turn}" if turn else mass, f"VNE {_floored(vne)} here"),
         )
         there = None
         if answer is not None and moved:
@@ -130,7 +130,7 @@ def _table(aircraft: Aircraft, condition: Condition, vne: float, answer: Equival
     rows = [
         (
             "here", units.show(condition.mass, "mass", shown.mass), _height(aircraft, condition.pressure_altitude),
-            said.temperature(condition.oat), f"VNE {said.number(vne)} {label}",
+            said.temperature(condition.oat), f"VNE {_floored(vne)} {label}",
         )
     ]  # fmt: skip
     if answer is None:
@@ -152,6 +152,11 @@ def _notes(aircraft: Aircraft) -> tuple[str, ...]:
     if aircraft.vne.masses and aircraft.vne.temperatures:
         notes.append("The lines are those for the first mass of the chart that is not lighter.")
     return tuple(notes)
+
+
+def _floored(vne: float) -> str:
+    """VNE here, which may lie between the chart's entries: floored to one unit, as the answer is."""
+    return units.show_number(units.round_down(vne))
 
 
 def _height(aircraft: Aircraft, metres: float) -> str:

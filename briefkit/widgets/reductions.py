@@ -34,7 +34,7 @@ class Reductions(TableExhibit):
         self._stairs = stairs_parts(aircraft, self._block)
         rows = tuple((row.mass.text, row_text(aircraft, self._block, row)) for row in self._block.rows)
         self._listed = Table(
-            ("Up to mass", "Slow to VNE less"), rows, "The same as a table; in between the heavier line"
+            ("Up to mass", "Slow to VNE less"), rows, "The same as a table; between two masses the heavier line holds"
         )
         return (*(drawing.figure for drawing in self._stairs.drawings), *super()._build(aircraft))
 

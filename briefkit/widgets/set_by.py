@@ -61,9 +61,13 @@ class SetByTable(TableExhibit):
         self._show(table, now=None if condition is None else 0)
         refused = sum(row[3] == "no figure" for row in self._rows)
         ours = sum(row[4] == str(SetBy.EQUIVALENT) for row in self._rows)
+        theirs, count = len(self._rows) - ours - refused, len(self._rows)
+        none = (
+            "; every one has a figure" if not refused else f"; {refused} {'has' if refused == 1 else 'have'} no figure"
+        )
         caption = (
-            f"Of {len(self._rows)} places, the manual's own chart at the equivalent level flight sets the answer at "
-            f"{ours}, the manual's VNE at {len(self._rows) - ours - refused}; {refused} have no figure."
+            f"Of {count} cases (place, day, mass) the manual's VNE is the answer in {theirs}, and the manual's own chart "
+            f"read at the equivalent level flight, in {ours}{none}."
         )
         return StillParts(
             title="What sets the answer",
