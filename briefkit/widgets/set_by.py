@@ -62,12 +62,10 @@ class SetByTable(TableExhibit):
         refused = sum(row[3] == "no figure" for row in self._rows)
         ours = sum(row[4] == str(SetBy.EQUIVALENT) for row in self._rows)
         theirs, count = len(self._rows) - ours - refused, len(self._rows)
-        none = (
-            "; every one has a figure" if not refused else f"; {refused} {'has' if refused == 1 else 'have'} no figure"
-        )
+        none = f"; {refused} {'has' if refused == 1 else 'have'} no figure" if refused else ""
         caption = (
-            f"Of {count} cases (place, day, mass) the manual's VNE is the answer in {theirs}, and the manual's own chart "
-            f"read at the equivalent level flight, in {ours}{none}."
+            f"Of {count} cases (place, day, mass) the manual's VNE is the answer in {theirs}, and the manual's own "
+            f"chart, read at the equivalent level flight, in {ours}{none}."
         )
         return StillParts(
             title="What sets the answer",
