@@ -3,9 +3,13 @@
 from __future__ import annotations
 
 import datetime as dt
+import os
+import pickle
+import time
+from collections.abc import Callable
 from dataclasses import dataclass
 from pathlib import Path
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 import pytest
 
@@ -14,6 +18,7 @@ from briefkit.aircraft.model import Aircraft
 from briefkit.aircraft.operation import Operation, load_operation
 
 if TYPE_CHECKING:
+    from briefkit.brief.build import Result
     from briefkit.brief.pages import CrewPage
     from briefkit.brief.run import Ran
 
@@ -73,11 +78,54 @@ class Exported:
 
 
 @pytest.fixture(scope="session")
-def exported() -> Exported:
+def exported(tmp_path_factory: pytest.TempPathFactory) -> Exported:
     """Takes some seconds: tests that use it are slow."""
-    from briefkit.brief.export import compose, contents, load_brief
-    from briefkit.brief.run import run
 
-    brief = load_brief(EXAMPLES / "vellmark-2t")
-    crew, ran = contents(brief, TODAY), run(brief.identity.notebook)
-    return Exported(crew, ran, compose(crew, ran, brief.identity.folder))
+    def make(_: Path) -> Exported:
+        from briefkit.brief.export import compose, contents, load_brief
+        from briefkit.brief.run import run
+
+        brief = load_brief(EXAMPLES / "vellmark-2t")
+        crew, ran = contents(brief, TODAY), run(brief.identity.notebook)
+        return Exported(crew, ran, compose(crew, ran, brief.identity.folder))
+
+    return once_a_run(tmp_path_factory, "exported", make)
+
+
+@pytest.fixture(scope="session")
+def built(tmp_path_factory: pytest.TempPathFactory) -> tuple[Result, ...]:
+    """The three example briefs with everything that `briefkit build` sets beside their pages."""
+
+    def make(folder: Path) -> tuple[Result, ...]:
+        from briefkit.brief.build import build
+        from briefkit.session.sheets import deck_pages
+
+        results = build([EXAMPLES], folder / "pages", TODAY, beside=deck_pages)
+        assert [result.error for result in results] == ["", "", ""]
+        return results
+
+    return once_a_run(tmp_path_factory, "built", make)
+
+
+def once_a_run(factory: pytest.TempPathFactory, name: str, make: Callable[[Path], Any]) -> Any:
+    """What `make` gives, made by the first worker of a run that asks; the others wait for it and read it."""
+    base = factory.getbasetemp()
+    folder = (base.parent if "PYTEST_XDIST_WORKER" in os.environ else base) / f"once-{name}"
+    made, failed = folder / "made", folder / "failed"
+    try:
+        folder.mkdir()
+    except FileExistsError:
+        deadline = time.monotonic() + 300.0
+        while not made.exists():
+            assert not failed.exists(), f"{name} could not be made; see the other worker"
+            assert time.monotonic() < deadline, f"{name} was not made in time"
+            time.sleep(0.1)
+        return pickle.loads(made.read_bytes())
+    try:
+        value = make(folder)
+        (folder / "part").write_bytes(pickle.dumps(value))
+        (folder / "part").rename(made)
+    except BaseException:
+        failed.touch()
+        raise
+    return value

@@ -17,6 +17,7 @@ from markupsafe import Markup, escape
 
 from briefkit.errors import BuildError
 from briefkit.figures import theme
+from briefkit.figures.parts import figure_columns
 
 _UNIT_GAP: Final = re.compile(
     r"(?<=±) |(?<=\d) (?=(?:°C|%|kt|KIAS|KTAS|km/h|mph|lb|kg|ft|m|hPa|inHg|rpm|degrees?|deg)\b|°|%)"
@@ -49,6 +50,13 @@ class Grid:
     numbers: bool = True
     row_headings: bool = True
     anchors: tuple[str, ...] = ()
+
+    @property
+    def setting(self) -> str:
+        """Classes of the table: how its columns are set, and whether it is wide, or long enough to be cut."""
+        words = ["numbers"] if self.numbers else ["texts", *(f"n{column}" for column in figure_columns(self.rows))]
+        words += ["dense"] * (len(self.header) > 6) + ["long"] * (len(self.rows) > 12)
+        return " ".join(words)
 
     def __post_init__(self) -> None:
         for row in self.rows:

@@ -10,10 +10,10 @@ from briefkit.brief.pages import Grid, Ink, Section
 from briefkit.envelope import cues
 
 _CAUTIONS = (
-    "VNE governs, as the flight manual, its supplements, placards and markings give it. Supplements change VNE.",
+    "VNE governs: flight manual, supplements, placards, markings.",
     "Never look for the onset in flight to check a number.",
     "The reduction does not cover gusts, rolling in, sideslip, the centre of gravity, or power-off flight.",
-    "Autorotation has its own VNE and its own rotor-speed range: the manual’s.",
+    "Autorotation has its own VNE and rotor speeds: the manual’s.",
     "The computation knows nothing of structure, control loads, the tail rotor or fitted equipment.",
 )
 
@@ -29,21 +29,22 @@ def recognition(
 def which_one(aircraft: Aircraft) -> Section:
     """The table that keeps one reflex from being used for another condition."""
     likenesses = cues.which_one(aircraft)
-    # One source stands in the caption, so that the words have the width of the sheet; what has none carries a mark.
+    # One source stands beside the heading, so that the words have the width of the sheet; what has none has a mark.
     rows = tuple((_marked(one), one.when, one.sign, one.first) for one in likenesses)
     named = sorted({one.source for one in likenesses if one.source != cues.NO_SOURCE})
     bare = any(one.source == cues.NO_SOURCE for one in likenesses)
-    caption = f"From {' and '.join(named)}" + (f"; † {cues.NO_SOURCE}" if bare else "")
+    whose = " and ".join(named) + (f"; † {cues.NO_SOURCE}" if bare else "")
     header = ("Condition", "When", "What you notice", "First act")
-    grid = Grid(header, rows, caption, Ink.CONTEXT, numbers=False)
+    heading = "Which one is it?"
+    grid = Grid(header, rows, heading, Ink.CONTEXT, numbers=False)
     mirrored = cues.sides(aircraft).mirrored
     shake = cues.vibration(aircraft)
     after = (
-        f"Blade stall shakes mainly at {aircraft.rotor.blades} per revolution, {shake.blade:.1f} Hz at 100 %; a new "
-        f"shake at once per revolution alone, {shake.once:.1f} Hz, points to track and balance †.",
+        f"Blade stall shakes mainly at {aircraft.rotor.blades} per revolution, {shake.blade:.1f} Hz. A new shake at 1 "
+        f"per revolution, {shake.once:.1f} Hz, is track or balance †.",
         *((f"Left and right are {mirrored}.",) if mirrored else ()),
     )
-    return Section("Which one is it?", grid=grid, after=after, sources=(cues.HANDBOOK,))
+    return Section(heading, whose, grid=grid, after=after, sources=(cues.HANDBOOK,))
 
 
 def _marked(one: cues.Likeness) -> str:
@@ -56,11 +57,11 @@ def low_g(aircraft: Aircraft) -> tuple[Section, ...]:
         return ()
     roll = cues.sides(aircraft).advancing
     points = (
-        f"Light in the seat in forward flight: first gently aft on the cyclic to load the rotor. The aircraft may roll "
-        f"{roll}: correct the roll only once the rotor is loaded. Cyclic against the roll earlier can bump the mast.",
-        f"No abrupt forward cyclic. Slow down in turbulence ({cues.CHAPTER_11}).",
+        f"Light in the seat: first gently aft on the cyclic, to load the rotor. Correct the roll ({roll}) only then: "
+        "before, it can bump the mast.",
+        "No abrupt forward cyclic. Slow down in turbulence.",
     )
-    return (Section("Two blades: low g", points=points),)
+    return (Section("Two blades: low g", cues.CHAPTER_11, points=points),)
 
 
 def cautions() -> Section:

@@ -2,10 +2,15 @@
 
 from __future__ import annotations
 
+import re
+from collections.abc import Sequence
 from dataclasses import dataclass
-from typing import Protocol, runtime_checkable
+from typing import Final, Protocol, runtime_checkable
 
 import bqplot
+
+# A number with its sign, its spread's mark and at most one word of unit: "−1.4°", "± 5.2 %", "10 kt", "1,800 lb".
+_FIGURE: Final = re.compile(r"(?:[-+−]|±\s?)?\d[\d,]*(?:\.\d+)?\*?(?:[\s\u00a0]?[^\s\d,.;]+)?")
 
 
 @dataclass(frozen=True)
@@ -24,6 +29,16 @@ class Table:
     header: tuple[str, ...]
     rows: tuple[tuple[str, ...], ...]
     caption: str = ""
+
+
+def figure_columns(rows: Sequence[Sequence[str]]) -> tuple[int, ...]:
+    """Which columns of a table hold figures, counted from 1, the first column apart: theirs are set to the right."""
+    columns = list(zip(*rows, strict=True))[1:]
+    return tuple(
+        number
+        for number, cells in enumerate(columns, start=2)
+        if 2 * sum(_FIGURE.fullmatch(cell.strip()) is not None for cell in cells) > len(cells)
+    )
 
 
 @dataclass(frozen=True)

@@ -14,7 +14,7 @@ import bqplot
 import ipywidgets as w
 
 from briefkit.figures.markup import element, finite_text, words
-from briefkit.figures.parts import Drawing, HasStillInputs, HasStillParts, StillParts, Table
+from briefkit.figures.parts import Drawing, HasStillInputs, HasStillParts, StillParts, Table, figure_columns
 from briefkit.figures.svg import svg
 
 __all__ = ["Drawing", "HasStillInputs", "HasStillParts", "StillParts", "Table", "still", "svg"]
@@ -85,7 +85,9 @@ def table_html(table: Table) -> str:
         for row in table.rows
     ]
     caption = element("caption", {}, words(table.caption)) if table.caption else ""
-    return element("table", {}, caption, element("thead", {}, element("tr", {}, *head)), element("tbody", {}, *rows))
+    columns = " ".join(f"n{number}" for number in figure_columns(table.rows)) or None
+    heading = element("thead", {}, element("tr", {}, *head))
+    return element("table", {"class": columns}, caption, heading, element("tbody", {}, *rows))
 
 
 # --- widget trees ---------------------------------------------------------------------------------------------------

@@ -12,21 +12,22 @@ import pytest
 
 from briefkit.brief.build import build
 from briefkit.brief.run import Picture, Words
+from briefkit.session.sheets import deck_pages
 
 pytestmark = pytest.mark.slow
 
 
-def test_guard_g34_built_twice_and_from_two_folders_the_same_bytes(examples, exported, tmp_path, today):
+def test_guard_g34_built_twice_and_from_two_folders_the_same_bytes(examples, built, exported, tmp_path, today):
     """Three pages, each under 400 kB; nothing of the folder, the machine or the notebook's own data is in them."""
     elsewhere = tmp_path / "another folder"
     shutil.copytree(examples, elsewhere, ignore=shutil.ignore_patterns(".*", "__pycache__"))
-    first, second = build([examples], tmp_path / "one", today), build([elsewhere], tmp_path / "two", today)
-    assert [result.error for result in first + second] == [""] * 6
-    assert [result.notes for result in first] == [()] * 3
-    ours = {file.name: file.read_bytes() for file in (tmp_path / "one").iterdir()}
+    second = build([elsewhere], tmp_path / "two", today, beside=deck_pages)
+    assert [result.error for result in second] == [""] * 3
+    assert [result.notes for result in built] == [()] * 3
+    ours = {file.name: file.read_bytes() for file in built[0].page.parent.iterdir()}
     assert {file.name: file.read_bytes() for file in (tmp_path / "two").iterdir()} == ours
     assert ours["NB-2T-001.html"].decode("utf-8") == exported.html
-    assert all(20_000 < result.size < 400_000 for result in first)
+    assert all(20_000 < result.size < 400_000 for result in built)
     told = (
         str(tmp_path),
         str(examples),

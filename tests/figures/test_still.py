@@ -10,6 +10,7 @@ import html5lib
 import ipywidgets as w
 import pytest
 
+from briefkit.figures.parts import figure_columns
 from briefkit.figures.still import Drawing, StillParts, Table, still
 
 SVG = "{http://www.w3.org/2000/svg}"
@@ -63,6 +64,16 @@ def test_the_table_is_a_real_one(parts):
     assert [cell.get("scope") for cell in table.iterfind("thead//th")] == ["col", "col"]
     assert [cell.get("scope") for cell in table.iterfind("tbody//th")] == ["row", "row"]
     assert texts(table, "tbody//td") == ["85", "80"]
+
+
+def test_columns_of_figures_are_set_to_the_right():
+    """Most of a column's cells are a number with at most one word of unit; the first column names the rows."""
+    rows = (
+        ("6,000", "−1.4°", "282 kt", "± 5.2 %", "from 88", "8,000 ft, +20 °C", "flight manual 2-4"),
+        ("8,000", "1.2", "no figure", "± 1.0°", "no figure", "whole area", "5.73 per radian as published"),
+        ("9,000", "+20 °C", "1,800 lb", "80*", "77", "9,860 ft, +20 °C", ""),
+    )
+    assert figure_columns(rows) == (2, 3, 4)
 
 
 def test_an_alt_no_drawing_says_becomes_the_label_of_the_figure(parts):
