@@ -12,6 +12,7 @@ import sys
 import time
 import urllib.request
 from collections.abc import Callable, Iterator
+from contextlib import contextmanager
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
@@ -119,7 +120,13 @@ def lab(chromium: Any, tmp_path_factory: pytest.TempPathFactory) -> Iterator[Lab
     """One server for a test module, on loopback, in a folder of its own, with nothing of the user's configuration."""
     if shutil.which("jupyter-lab", path=str(Path(sys.executable).parent)) is None:
         pytest.skip("needs JupyterLab (the lab extra)")
-    folder = tmp_path_factory.mktemp("lab")
+    with serving(tmp_path_factory.mktemp("lab"), chromium) as served:
+        yield served
+
+
+@contextmanager
+def serving(folder: Path, browser: Any, low_delay: bool = True) -> Iterator[Lab]:
+    """A server on loopback in `folder`, `low_delay` as `briefkit live` sets it."""
     home, books = folder / "home", folder / "books"
     (home / "settings").mkdir(parents=True)
     books.mkdir()
@@ -129,8 +136,11 @@ def lab(chromium: Any, tmp_path_factory: pytest.TempPathFactory) -> Iterator[Lab
         "HOME": str(home), "JUPYTER_CONFIG_DIR": str(home / "config"), "JUPYTER_DATA_DIR": str(home / "data"),
         "JUPYTER_RUNTIME_DIR": str(home / "runtime"), "IPYTHONDIR": str(home / "ipython"),
     }  # fmt: skip
+    start = "from jupyterlab.labapp import main; main()"
+    if low_delay:
+        start = f"from briefkit.brief.low_delay import send_at_once; assert send_at_once(); {start}"
     command = [
-        sys.executable, "-m", "jupyterlab", "--no-browser", "--ServerApp.ip=127.0.0.1", f"--ServerApp.port={port}",
+        sys.executable, "-c", start, "--no-browser", "--ServerApp.ip=127.0.0.1", f"--ServerApp.port={port}",
         f"--IdentityProvider.token={token}", f"--ServerApp.root_dir={books}", "--ServerApp.port_retries=0",
         "--LabApp.expose_app_in_browser=True", f"--LabApp.app_settings_dir={home / 'settings'}", "--allow-root",
     ]  # fmt: skip
@@ -138,7 +148,7 @@ def lab(chromium: Any, tmp_path_factory: pytest.TempPathFactory) -> Iterator[Lab
         server = subprocess.Popen(command, env=environment, stdout=log, stderr=subprocess.STDOUT)
         try:
             _wait_until(lambda: _answers(port), 40.0, f"JupyterLab did not start; see {folder / 'log'}")
-            yield Lab(f"http://127.0.0.1:{port}", token, books, chromium)
+            yield Lab(f"http://127.0.0.1:{port}", token, books, browser)
         finally:
             server.terminate()
             server.wait(timeout=20)
