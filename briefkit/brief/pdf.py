@@ -52,8 +52,9 @@ def print_pdfs(results: Iterable[Result], paper: str) -> Iterator[Path]:
 def print_pdf(page: Path, paper: str, day: dt.date) -> Path:
     """Print a built page to a PDF beside it.
 
-    `paper` is one of `PAPERS`; `day` (the day of issue) stands in the file where Chromium would put the clock. The rest
-    of its bytes is Chromium's, and not promised to be the same twice: the page is the controlled document.
+    `paper` is one of `PAPERS`; `day` (the day of issue) stands in the file where Chromium would put the clock. The same
+    page gives the same bytes on one machine with one Chromium and its fonts; another may set it otherwise, so the page
+    is the controlled document, not its PDF.
 
     Raises:
         BuildError: no Chromium, or it fails or takes longer than `SECONDS`.
