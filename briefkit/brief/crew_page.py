@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import replace
 from typing import TYPE_CHECKING, Final
 
-from briefkit.brief import control, derivation, front, overview, pictures, recognition
+from briefkit.brief import assumptions, control, derivation, front, overview, pictures, recognition
 from briefkit.brief.identity import Brief
 from briefkit.brief.pages import CrewPage, Section
 from briefkit.brief.sources import sources
@@ -110,5 +110,5 @@ def _analysis(brief: Brief, table: ReductionTable) -> tuple[Section, ...]:
         *set_by,
         derivation.chart_section(aircraft),
         *recognition.ceilings(aircraft),
-        derivation.assumptions(aircraft, table),
+        assumptions.assumptions(aircraft, table),
     )

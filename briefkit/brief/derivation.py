@@ -1,22 +1,21 @@
-"""Sheet 3: how the reduction was found, so that a pilot can follow it by hand in the manual, and what it rests on."""
+"""Sheet 3: how the reduction was found, so that a pilot can follow it by hand in the manual."""
 
 from __future__ import annotations
 
 import math
 from dataclasses import dataclass
 
+import numpy as np
+
 from briefkit import units
-from briefkit.aircraft.model import Aircraft, Stated
+from briefkit.aircraft.model import Aircraft
 from briefkit.brief import words
 from briefkit.brief.pages import Grid, Ink, Section
-from briefkit.brief.published import published_line
+from briefkit.envelope.chart_shape import LARGEST_RESIDUAL, Shape, chart_shape
 from briefkit.envelope.condition import Condition
-from briefkit.envelope.equivalent import LOAD_EXPONENT, EquivalentVne, equivalent_vne
-from briefkit.envelope.margin import margin_to_vne
+from briefkit.envelope.equivalent import LOAD_EXPONENT, EquivalentVne
 from briefkit.envelope.reductions import ReductionRow, ReductionTable, RowKind
 from briefkit.envelope.speeds import indicated_speed, true_speed
-from briefkit.envelope.spread import OnsetBand, onset_band
-from briefkit.errors import Refusal
 from briefkit.physics import atmosphere
 from briefkit.units import Speed, SpeedKind
 
@@ -66,7 +65,7 @@ def method(aircraft: Aircraft, table: ReductionTable) -> Section:
         "here.",
     ]
     row = worked_row(table)
-    after = (worked_line(aircraft, row),) if row is not None else ()
+    after = (worked_line(aircraft, row), plain_line(aircraft, row)) if row is not None else ()
     return Section("How the reduction was found", before=tuple(sentences), after=after)
 
 
@@ -97,6 +96,19 @@ def worked_line(aircraft: Aircraft, row: ReductionRow) -> str:
     )
 
 
+def plain_line(aircraft: Aircraft, row: ReductionRow) -> str:
+    """The upper edge of the worked row: the same reading with the load factor as it is, without the guard."""
+    if row.at is None or row.answer is None:
+        raise ValueError("only a row with an answer has an upper edge")
+    kind, unit = aircraft.units.speed_label(), aircraft.units.speed
+    upper = words.number(row.answer.upper)
+    more = words.number(row.answer.upper - row.answer.ias)
+    return (
+        f"Without the guard, the load factor being {row.at.load_factor:.3f} as it is, the chart would give {upper} "
+        f"{kind} there, {more} {unit} more: the upper edge of what it can say. The lower one is printed."
+    )
+
+
 def _below(aircraft: Aircraft, row: ReductionRow, hand: Hand) -> str:
     """The difference, with what a stated climb adds to it by the rotor model."""
     if row.at is None or row.at.climb <= 0.0:
@@ -120,7 +132,7 @@ def rows_section(aircraft: Aircraft, table: ReductionTable) -> Section:
     if all(row.kind is RowKind.VNE_LIMITS for row in table.rows):
         masses = ", ".join(row.mass.text for row in table.rows)
         nothing = f"Nothing is taken off at {masses}, at any of {searched}."
-        return Section(heading, before=(nothing,))
+        return Section(heading, before=(nothing, *covered_line(table)))
     kind = aircraft.units.speed_label()
     rows = []
     for row in table.rows:
@@ -150,7 +162,7 @@ def rows_section(aircraft: Aircraft, table: ReductionTable) -> Section:
         "Below VNE",
         "Printed",
     )
-    after = (f"Each row is the largest of {searched}.",)
+    after = (f"Each row is the largest of {searched}.", *covered_line(table))
     return Section(
         heading,
         grid=Grid(header, tuple(rows), "What sets each row of section 2", Ink.COMPUTED, numbers=False),
@@ -159,126 +171,47 @@ def rows_section(aircraft: Aircraft, table: ReductionTable) -> Section:
     )
 
 
+def covered_line(table: ReductionTable) -> tuple[str, ...]:
+    """For a pull-up or a gust: how much load the chart covers all over the work area, and never a speed."""
+    covered = [f"{row.covered_load:.2f} at {row.mass.text}" for row in table.rows if row.covered_load >= 1.0]
+    if not covered:
+        return ()
+    return (
+        "For a pull-up or a gust there is no speed here. The load factor that the manual’s chart covers all over the "
+        f"area, rotor at 100 %: {', '.join(covered)}. A gust can do more than its load factor shows.",
+    )
+
+
 def chart_section(aircraft: Aircraft) -> Section:
     """The manual's chart as typed."""
     chart = aircraft.vne
     header = (chart.rows[0][0], *chart.rows[0][1:])
     grid = Grid(header, chart.rows[1:], f"VNE power on, {aircraft.units.speed_label()}, as typed from {chart.source}")
-    return Section("The manual’s chart", grid=grid, after=(f"Reading rule: {chart.reading}.",))
+    return Section("The manual’s chart", grid=grid, after=(f"Reading rule: {chart.reading}.", shape_line(aircraft)))
 
 
-def assumptions(aircraft: Aircraft, table: ReductionTable) -> Section:
-    """What the rotor model's onset band rests on; the reduction rests on none of it."""
-    row = worked_row(table) or table.rows[0]
-    at = row.at
-    before = [
-        "The reduction above uses the manual’s chart, calibration and limits, the mass, the bank and the day; none of "
-        "the estimates below. They enter only the rotor model, whose absolute onset is softer than the chart: "
-        "analysis, not for use in flight."
-        + (" Taken: " + "; ".join(taken) + "." if (taken := _taken(aircraft)) else ""),
-    ]
-    if at is None:
-        return Section("What the rotor model assumes", before=tuple(before))
-    level = at.changed(load_factor=1.0)
-    try:
-        band = onset_band(aircraft, level)
-    except Refusal as refusal:
-        return Section(
-            "What the rotor model assumes", before=(*before, f"No onset band at {words.place(aircraft, at)}: {refusal}")
+def shape_line(aircraft: Aircraft) -> str:
+    """What the chart says of itself: how many cells are flat, on a cold edge, falling, and whether these collapse."""
+    found, unit = chart_shape(aircraft), aircraft.units.speed
+    flat, cold, falling = (found.shape == kind for kind in (Shape.FLAT, Shape.COLD, Shape.FALLING))
+    parts = []
+    if flat.any():
+        highest = units.show(float(np.nanmax(aircraft.vne.speeds)), "speed", unit)
+        parts.append(
+            f"{flat.sum()} flat at its highest value, {highest}, set by something other than the rotor’s loading"
         )
-    rows = tuple(
-        (one.name, _input(aircraft, one.name), one.spread, _effect(one.lowers_by), _effect(one.raises_by))
-        for one in band.contributions
-    )
-    unit = aircraft.units.speed
-    header = ("Input", "Value and source", "Spread", f"Lowers by, {unit}", f"Raises by, {unit}")
-    before += [_band_line(aircraft, row, level, band), margin_line(aircraft, level, band)]
-    return Section(
-        "What the rotor model assumes",
-        before=tuple(before),
-        grid=Grid(header, rows, "What each spread does to the onset band", Ink.CONTEXT, numbers=False),
-        after=(*section_line(aircraft), published_line()),
-    )
-
-
-def section_line(aircraft: Aircraft) -> tuple[str, ...]:
-    """Where the operator's own section is used and where it is not."""
-    section = aircraft.section
-    if section is None:
-        return ()
-    spread = units.show(section.spread, "angle", "deg", 1)
+    if cold.any():
+        parts.append(f"{cold.sum()} on a cold edge, where the advancing tip sets it")
+    parts.append(f"{falling.sum()} falling with loading, as blade stall or something lower does")
+    said = f"Of its {len(found.shape)} cells {'; '.join(parts)}."
+    far = np.abs(found.residual[np.isfinite(found.residual)])
+    if not far.size:
+        return f"{said} Too few fall to tell whether they lie on one curve."
+    within, off = units.show(float(far.max()), "speed", unit, 1), len(found.findings)
+    if not off:
+        return f"{said} Speed over tip speed against loading, these lie on one curve within {within}."
+    largest = units.show(LARGEST_RESIDUAL, "speed", unit)
     return (
-        f"The operator’s own blade section ({section.source}) stands behind pictures of the angle over stall: its "
-        f"angle of maximum lift, less its spread of {spread}. The onset band keeps the section without stall that the "
-        "published 12 and 16 degrees were computed with.",
+        f"{said} Speed over tip speed against loading, {off} of these lie more than {largest} off the curve of the "
+        f"others, by up to {within}: another limit, or a slip; the aircraft file says why."
     )
-
-
-def _effect(change: float | None) -> str:
-    return "outside" if change is None else words.number(change)
-
-
-def _band_line(aircraft: Aircraft, row: ReductionRow, level: Condition, band: OnsetBand) -> str:
-    kind = aircraft.units.speed_label()
-
-    def end(speed: float | None) -> str:
-        return f"{words.number(speed)} {kind}" if speed is not None else "outside the calibrated range"
-
-    where = f"{row.mass.text} at {words.place(aircraft, level)}"
-    return (
-        f"Level, {where}. First signs (12 degrees at the retreating tip): {end(band.central)}; with the spread below, "
-        f"from {end(band.lower)}. Limit of control (16 degrees), with its spread: {end(band.upper)}."
-    )
-
-
-def margin_line(aircraft: Aircraft, level: Condition, band: OnsetBand) -> str:
-    """How the band lies to the manual's VNE at the same place, told from its lower edge, and "not resolved" where the
-    margin is smaller than the band's half-width.
-    """
-    try:
-        vne = equivalent_vne(aircraft, level.changed(rotor_speed=1.0, climb=0.0)).vne
-    except Refusal as refusal:
-        return f"VNE governs; no margin to it here: {refusal}."
-    kind, unit, found = aircraft.units.speed_label(), aircraft.units.speed, margin_to_vne(aircraft, band, vne)
-    governs = f"VNE governs, {words.number(vne.number)} {kind} there"
-    if found.lower is None:
-        said = f"{governs}. Reduced margin: the band begins under the calibrated range"
-    elif found.reduced:
-        low, under = words.number(found.lower.number), words.number((vne - found.lower).number)
-        said = f"{governs}. Reduced margin: the band begins at {low} {kind}, {under} {unit} under it"
-    else:
-        above = words.number((found.lower - vne).number)
-        said = f"{governs}; the band begins {above} {unit} above it and is no speed to fly"
-    if found.margin is None or found.half_width is None:
-        return f"{said}; margin of the first signs: not resolved."
-    side = "above" if found.margin.value >= 0.0 else "under"
-    first = f"first signs {words.number(abs(found.margin.number))} {unit} {side} VNE"
-    width = f"{'at least ' if found.at_least else ''}{words.number(found.half_width.number)} {unit}"
-    return f"{said}; {first}, the band’s half-width {width}{'' if found.resolved else ': not resolved'}."
-
-
-def _taken(aircraft: Aircraft) -> list[str]:
-    taken = []
-    if not aircraft.calibration.in_manual:
-        taken.append("indicated airspeed as calibrated, the manual gives no calibration")
-    taken.append("the manual’s VNE to hold at 100 % rotor speed")
-    if aircraft.vne.covers_temperatures:
-        taken.append(f"the chart to hold at every permitted temperature ({aircraft.vne.covers_temperatures})")
-    return taken
-
-
-_STATED = {
-    "blade chord": "chord",
-    "blade twist": "twist",
-    "blade flap inertia": "flap_inertia",
-    "flap frequency": "flap_frequency",
-    "section lift slope": "lift_slope",
-    "drag area": "drag_area",
-}
-
-
-def _input(aircraft: Aircraft, name: str) -> str:
-    if name not in _STATED:
-        return "as stated for the operation"
-    stated: Stated = getattr(aircraft.rotor, _STATED[name])
-    return f"{stated.text}, {stated.basis or stated.source}"

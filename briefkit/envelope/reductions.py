@@ -7,7 +7,7 @@ is the manual's own grammar. It can only lower what a crew is told.
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from enum import StrEnum
 
 import numpy as np
@@ -52,7 +52,8 @@ class ReductionRow:
     """One mass. `bank_deg` is the bank the row holds to; `reduction` is in the type's unit, rounded up to its step.
 
     `at` is the block point that sets the row and `answer` the equivalent VNE there (None where no number is printed);
-    `exact` is the largest reduction before rounding.
+    `exact` is the largest reduction before rounding. `covered_load` is the load factor that the chart reaches at every
+    point of the block, floored to 0.01; 0 where somewhere not even level flight is on it.
     """
 
     mass: Stated
@@ -62,6 +63,7 @@ class ReductionRow:
     exact: float
     at: Condition | None
     answer: EquivalentVne | None
+    covered_load: float = 0.0
 
 
 @dataclass(frozen=True)
@@ -106,7 +108,12 @@ def reductions(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea) -> Reducti
     block = block_of(aircraft, area)
     floor = floor_of(aircraft, fleet)
     bank = fleet.brief_bank.value
-    rows = tuple(_row(aircraft, fleet, mass, block, bank, floor) for mass in fleet.masses)
+    rows = tuple(
+        replace(
+            _row(aircraft, fleet, mass, block, bank, floor), covered_load=_covered_load(aircraft, fleet, mass, block)
+        )
+        for mass in fleet.masses
+    )
     return ReductionTable(math.degrees(bank), aircraft.units.speed, rows, block, floor)
 
 
@@ -137,6 +144,13 @@ def _row(aircraft: Aircraft, fleet: FleetEntry, mass: Stated, block: Block, bank
     if reduction == 0.0 and kind is RowKind.REDUCTION:
         kind = RowKind.VNE_LIMITS
     return ReductionRow(mass, kind, bank_deg, reduction, exact, at, equivalent_vne(aircraft, at))
+
+
+def _covered_load(aircraft: Aircraft, fleet: FleetEntry, mass: Stated, block: Block) -> float:
+    banks, reasons = covered_banks(aircraft, _points(fleet, mass, block, 0.0))
+    if np.any(reasons != Reason.NONE):
+        return 0.0
+    return math.floor(100.0 / math.cos(float(np.min(banks))) + 1e-9) / 100.0
 
 
 def _points(fleet: FleetEntry, mass: Stated, block: Block, bank: float) -> Conditions:

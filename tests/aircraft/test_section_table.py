@@ -8,8 +8,8 @@ import numpy as np
 import pytest
 
 from briefkit.aircraft.section_table import read_section_table
+from briefkit.brief.assumptions import section_line
 from briefkit.brief.check_aircraft import aircraft_findings
-from briefkit.brief.derivation import section_line
 from briefkit.brief.finding import Level
 from briefkit.envelope.condition import Condition
 from briefkit.envelope.solution import rotor_of, solve

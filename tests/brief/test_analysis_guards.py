@@ -9,7 +9,7 @@ import re
 
 import pytest
 
-from briefkit.brief.derivation import assumptions, margin_line
+from briefkit.brief.assumptions import assumptions, margin_line
 from briefkit.envelope.condition import Condition
 from briefkit.envelope.margin import margin_to_vne
 from briefkit.envelope.reductions import reductions
