@@ -161,15 +161,12 @@ def test_it_flies(with_section):
     flown = trim(rotor_of(aircraft), solve(aircraft, FAST).trim.state, section=aircraft.section)
     # The advancing tip meets more than Mach 0.6, where the table ends: refused, not guessed.
     assert not flown.solved[0]
-    slow = solve(aircraft, FAST.with_(ias="45 kt")).trim.state
-    np.testing.assert_array_equal(
-        trim(rotor_of(aircraft), slow, section=aircraft.section).t0,
-        trim(rotor_of(aircraft), slow, section=own(aircraft)).t0,
-    )
-
-
-def own(aircraft):
-    return aircraft.section.table
+    written(with_section.folder, [line.replace("0.6, ", "0.9, ") for line in EARLY])
+    plain = solve(aircraft, FAST).trim
+    flown = trim(rotor_of(aircraft), plain.state, section=with_section.load().section)
+    assert flown.solved[0]
+    # Lift of 0.1 a degree at any Mach number, where the attached section's grows with it: more pitch for the same flight.
+    assert np.degrees(flown.t0 - plain.t0)[0] > 0.3
 
 
 def test_faults_of_the_table_are_faults_of_the_file_by_row(with_section):
