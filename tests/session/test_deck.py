@@ -31,6 +31,21 @@ def faults(brief, operator):
     return caught.value.faults
 
 
+@pytest.mark.parametrize(("folder", "stem", "configuration", "unit"), [
+    ("corrant-3f", "ormbrae-3f", "external load", "km/h"), ("ysbrane-4h", "kvillarn-4h", "basic", "KIAS"),
+])  # fmt: skip
+def test_the_other_examples_have_a_deck_in_their_own_unit(examples, folder, stem, configuration, unit):
+    """One case where stall is not what decides, one the tool refuses, and where it is cold the tip's reason."""
+    deck = load_deck(examples / folder, load_aircraft(examples / "aircraft" / f"{stem}.toml", configuration))
+    assert {case.says for case in deck.cases} >= {Says.MANUAL_VNE, Says.REFUSED}
+    assert any(unit in case.expected for case in deck.cases)
+    assert not any(other in f"{case.expected} {case.teaching}" for case in deck.cases
+                   for other in {"km/h", "KIAS"} - {unit})  # fmt: skip
+    said = deck.answers(next(case for case in deck.cases if case.says is Says.MANUAL_VNE))
+    assert said.computed.reduction == 0.0
+    assert unit in said.manual.text
+
+
 def test_the_example_trains_judgement_too(deck):
     """practice.md 5: one variable at a time, then a nasty pair; stall not the limit; a refusal."""
     assert {case.says for case in deck.cases} >= {Says.REDUCTION, Says.COVERED_BANK, Says.MANUAL_VNE, Says.REFUSED}

@@ -5,18 +5,22 @@ from __future__ import annotations
 import html
 import json
 import re
+import shutil
 
 import html5lib
 import pytest
 from ipywidgets import Widget
 
+from briefkit.brief.identity import load_identity
+from briefkit.brief.seal import covered, seal_of
+from briefkit.brief.write import sweep
 from briefkit.errors import ReadingError
 from briefkit.figures.still import still
-from briefkit.session.record import SessionLog, read_log
+from briefkit.session.record import SessionLog, new_log_path, read_log
 from briefkit.session.recurrent import Stage
 from briefkit.widgets import closing
 from briefkit.widgets.disc import DiscMap
-from briefkit.widgets.paper import ToPaper
+from briefkit.widgets.paper import ToPaper, write_live_page
 from briefkit.widgets.what_if import WhatIf
 
 
@@ -190,6 +194,28 @@ def test_from_live_to_paper_writes_what_was_shown_and_no_more(panel, deck, opera
     assert "<script" not in page
     assert deck.aircraft.data_hash[:12] in page
     assert "80" in html5lib.parse(page, namespaceHTMLElements=False).findtext(".//table/tbody/tr[4]/td")
+
+
+@pytest.mark.parametrize("at_the_top", [False, True])
+def test_what_a_session_writes_is_neither_signed_nor_swept(operator, at_the_top):
+    """Pages and logs of sessions stand in the operator folder, which may be a brief's own folder too."""
+    folder = operator if at_the_top else operator / "vellmark-2t"
+    if at_the_top:
+        for name in ("brief.toml", "brief.ipynb", "deck.toml"):
+            (operator / "vellmark-2t" / name).rename(operator / name)
+        for other in ("vellmark-2t", "corrant-3f", "ysbrane-4h"):
+            shutil.rmtree(operator / other)
+    before = seal_of(load_identity(folder))
+    page = write_live_page(operator, folder.name, "<!doctype html>")
+    log = new_log_path(folder)
+    log.parent.mkdir()
+    log.write_text("{}\n", encoding="utf-8")
+    assert seal_of(load_identity(folder)) == before
+    assert not any(path.is_relative_to(page.parent) for path in covered(load_identity(folder)))
+    for out in (operator, page.parent, folder):
+        sweep(out)  # what every build does first, wherever it is told to write
+    assert page.is_file()
+    assert log.is_file()
 
 
 def test_the_panel_s_still_has_no_buttons(panel):
