@@ -74,7 +74,8 @@ _NO_LETTER: Final = re.compile(
     + "]"
 )
 _CELLS: Final = _names("td th dd text tspan")
-_BROKEN_CELL: Final = re.compile(r"\b(?:[nN]a[nN]|NAN|[iI]nf|INF|[iI]nfinity|None)\b")
+# "None." before another sentence is an answer in words.
+_BROKEN_CELL: Final = re.compile(r"\b(?:[nN]a[nN]|NAN|[iI]nf|INF|[iI]nfinity|None(?!\. [A-Z]))\b")
 _BROKEN_TEXT: Final = re.compile(r"\b(?:nan|NaN|NAN)\b")
 _BROKEN_SHAPE: Final = re.compile(r"nan|inf", re.IGNORECASE)
 

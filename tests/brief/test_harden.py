@@ -123,6 +123,7 @@ def test_an_index_may_point_to_its_neighbours_only():
         "<table><tr><td>96.4 to NaN KIAS</td></tr></table>",
         "<table><tr><th>-inf</th></tr></table>",
         "<table><tr><td>None</td></tr></table>",
+        "<table><tr><td>VNE less None.</td></tr></table>",
         "<table><tr><td><b>None kt</b></td></tr></table>",
         "<dl><dd>nan kt</dd></dl>",
         "<p>onset at nan KIAS</p>",
@@ -142,6 +143,7 @@ def test_a_number_that_is_not_one_stops_the_page(body):
     "body",
     [
         "<table><tr><td>none in manual</td></tr></table>",
+        "<table><tr><td>None. The load decides.</td></tr></table>",
         "<p>None of this is a target. Information, finance, Nanaimo, 29.92 inHg.</p>",
         "<table><tr><td>29.92 inHg, inflow, banana</td></tr></table>",
         "<svg><g class='nan'/><text>inflow</text></svg>",
