@@ -258,6 +258,8 @@ def _stated(brief: Brief) -> Iterator[tuple[str, tuple[Stated, int]]]:
     fleet = brief.operation.entry_for(aircraft)
     if fleet is not None:
         yield "brief_bank", (fleet.brief_bank, -1)
+        if fleet.fuel_burn is not None:
+            yield "fuel_burn", (fleet.fuel_burn, -1)  # a larger one makes the aircraft lighter along a leg
         for key in ("imc_speed", "minimum_manoeuvring_speed", "climb"):
             if (stated := getattr(fleet, key)) is not None:
                 yield key, (stated, 1)

@@ -168,11 +168,13 @@ def two_brief(examples: Path):
 def test_words_dates_sources_and_cells_are_listed(revisions, signing, nb) -> None:
     _, new, differences = revisions
     signing.edit(new / "brief.toml", ("2032-02-29", "2031-12-31"), ("OM-C rev 9", "OM-C rev 10"))
-    signing.edit(new.parent / "operation.toml", ('brief_bank = "30 deg"  ', 'brief_bank = "25 deg"  '))
+    burn = ('value = "66 lb/h"', 'value = "76 lb/h"')
+    signing.edit(new.parent / "operation.toml", ('brief_bank = "30 deg"  ', 'brief_bank = "25 deg"  '), burn)
     nb.write(new / "brief.ipynb", nb.text("# Why we slow down\n\nHeavy, high, cold."), nb.code(nb.slider))
     found = named(differences())
     assert found["expires"] == ("2032-02-29", "2031-12-31", False)
     assert found["brief_bank"] == ("30 deg", "25 deg", False)
+    assert found["fuel_burn"] == ("66 lb/h", "76 lb/h", True)  # along a leg the lighter lines come sooner
     assert found["notebook cell 1"] == ("Heavy, high, hot.", "Heavy, high, cold.", False)
     assert "OM-C rev 10" in found["basis"][1]
     # At 25 degrees crews were told to be 10 kt below VNE, and are now told 5.
