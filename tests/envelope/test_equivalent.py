@@ -11,6 +11,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from briefkit import units
+from briefkit.envelope import search
 from briefkit.envelope.climb import climb_cost
 from briefkit.envelope.condition import Condition, Conditions
 from briefkit.envelope.equivalent import LOAD_EXPONENT, covered_bank, equivalent_vne, equivalent_vnes
@@ -284,3 +285,23 @@ def test_climb_cost_keeps_the_tip_angle(two_t):
     climbing = tip_angle_at(rotor, replace(many, climb=np.array([2.54])), best.vne - cost)
     assert cost[0] > 1.0
     assert math.degrees(abs(float(level[0] - climbing[0]))) < 0.01
+
+
+def test_a_chart_of_thousands_of_rows_looked_at_in_two_goes_says_the_same(three_f, monkeypatch):
+    """Against reading every row, at random conditions with and without a turn, one by one as a panel asks."""
+    rng, count = np.random.default_rng(20341), 60
+    height = rng.uniform(0.0, 4000.0, count)
+    many = Conditions.si(
+        mass=rng.uniform(1300.0, 2380.0, count),
+        pressure_altitude=height,
+        oat=np.minimum(rng.uniform(240.0, 320.0, count), three_f.limits.max_temperature_at(height)),
+        load_factor=rng.uniform(1.0, 1.4, count),
+        rotor_speed=rng.uniform(0.98, 1.01, count),
+    )
+    assert len(search.rows_of(three_f).top) > search._MANY
+    single = [equivalent_vnes(three_f, many.take(np.array([i])), upper=False) for i in range(count)]
+    monkeypatch.setattr(search, "_MANY", 10**9)
+    whole = equivalent_vnes(three_f, many, upper=False)
+    assert np.isfinite(whole.ias).sum() > 30
+    np.testing.assert_array_equal(np.concatenate([one.ias for one in single]), whole.ias)
+    assert [one.reason[0] for one in single] == whole.reason.tolist()
