@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 import os
 import shutil
 from collections.abc import Iterator
@@ -26,8 +27,8 @@ STAGES = (
 )
 
 
-def cells(operator: Path) -> tuple[list[str], list[str]]:
-    """A notebook of exhibits, and one of the panel."""
+def cells(operator: Path) -> list[str]:
+    """A notebook of exhibits, and the panel at its end."""
     start = f"""
 from pathlib import Path
 from briefkit import *
@@ -38,15 +39,15 @@ fleet = operation.entry_for(aircraft)
 vellmark = operation.work_areas["vellmark"]
 turn = Condition(mass="1,800 lb", pressure_altitude="8,000 ft", oat="20 degC", ias="60 kt", bank="30 deg")
 """
-    exhibits = [
+    return [
         start,
         "EquivalentChart(aircraft, turn)",
         "SetByTable(aircraft, fleet, [vellmark])",
         "Reductions(aircraft, fleet, vellmark)",
         "RulesOfThumb(aircraft, turn)",
         "CueCard(aircraft, turn)",
+        "panel = WhatIf(load_deck(operator / 'vellmark-2t', aircraft))\npanel",
     ]
-    return exhibits, [start, "panel = WhatIf(load_deck(operator / 'vellmark-2t', aircraft))\npanel"]
 
 
 @pytest.fixture(scope="module")
@@ -58,7 +59,8 @@ def operator(tmp_path_factory: pytest.TempPathFactory) -> Path:
 
 @pytest.fixture(scope="module")
 def panel(lab: Any, operator: Path) -> Iterator[Any]:
-    seen = lab.open(cells(operator)[1])
+    """The notebook, run once for the module: one page, one kernel."""
+    seen = lab.open(cells(operator))
     seen.page.wait_for_selector(".briefkit-what-if input[type=text]", timeout=60_000)
     yield seen
     seen.page.context.close()
@@ -75,8 +77,14 @@ def focused(page: Any) -> str:
     """What the keyboard speaks to: a button's words, or a box's label."""
     return str(page.evaluate(
         "() => { const it = document.activeElement; const box = it.closest('.widget-text');"
+        " if (it.matches('.noUi-handle')) return 'slider';"
         " return it.tagName === 'BUTTON' ? it.innerText : box ? box.querySelector('label').innerText : it.tagName; }"
     ))  # fmt: skip
+
+
+def tries(operator: Path) -> list[Any]:
+    (path,) = (operator / "session_logs").glob("*.jsonl")
+    return [step for step in read_log(path).steps if step.kind == "what-if"]
 
 
 def tab_to(page: Any, name: str, key: str = "Tab") -> None:
@@ -85,6 +93,32 @@ def tab_to(page: Any, name: str, key: str = "Tab") -> None:
             return
         page.keyboard.press(key)
     pytest.fail(f"{name!r} is not reached by {key}; at {focused(page)!r}")
+
+
+def at_rest(page: Any) -> None:
+    """Wait until nothing of the exhibits moves any more."""
+    assert page.evaluate("""async () => {
+      const look = () => [...document.querySelectorAll('.briefkit, .briefkit *')].map(it => {
+        const box = it.getBoundingClientRect();
+        return [box.x, box.y, box.width, box.height].map(Math.round);
+      }).join();
+      let last = '';
+      for (let i = 0; i < 100; i++) {
+        await new Promise(done => setTimeout(done, 60));
+        const now = look();
+        if (now === last) return true;
+        last = now;
+      }
+      return false;
+    }""")
+
+
+def press(page: Any, name: str, then: str) -> None:
+    """Space on a button, and what must be on the screen afterwards. A key held down is one step: not sooner."""
+    tab_to(page, name)
+    page.wait_for_timeout(360)
+    page.keyboard.press("Space")
+    page.wait_for_function(f"{TEXT}.includes({then!r})", timeout=20_000)
 
 
 def clipped(page: Any) -> list[str]:
@@ -123,12 +157,12 @@ def clipped(page: Any) -> list[str]:
 
 
 @pytest.mark.parametrize("width", [800, 1920])
-def test_every_exhibit_appears_neither_cut_nor_overlapping(lab, operator, width):
-    seen = lab.open(cells(operator)[0], width)
-    page = seen.page
+def test_every_exhibit_appears_neither_cut_nor_overlapping(panel, width):
+    page = panel.page
+    page.set_viewport_size({"width": width, "height": 1600})
     page.wait_for_function(f"{TEXT}.includes('If it starts')", timeout=90_000)
     page.wait_for_function("document.querySelectorAll('.bqplot').length === 2", timeout=30_000)
-    page.wait_for_timeout(1000)
+    at_rest(page)
     text = str(page.evaluate(TEXT))
     for words in (
         "The equivalent level flight", "73 KIAS here, 6 kt below VNE", "What sets the answer", "Before a turn",
@@ -139,10 +173,8 @@ def test_every_exhibit_appears_neither_cut_nor_overlapping(lab, operator, width)
     for place in range(5):
         photograph(page, f"exhibit-{place}-{width}", page.locator(".briefkit").nth(place))
     assert clipped(page) == []
-    assert seen.outside == []
-    assert seen.console == []
-    page.context.close()
-    lab.end_kernels()
+    assert panel.outside == []
+    assert panel.console == []
 
 
 def test_a_case_is_predicted_revealed_and_logged_by_keyboard_only(panel, operator):
@@ -154,39 +186,73 @@ def test_a_case_is_predicted_revealed_and_logged_by_keyboard_only(panel, operato
     assert focused(page) == "Prediction 2"
     page.keyboard.type("70 KIAS")
     for now, then in pairwise(STAGES[:4]):
-        tab_to(page, now)
-        page.wait_for_timeout(500)
-        page.keyboard.press("Space")
-        page.wait_for_function(f"{TEXT}.includes({then!r})", timeout=20_000)
+        press(page, now, then)
     text = str(page.evaluate(TEXT))
     assert "74 KIAS, 10 less; 70 KIAS" in text
     assert text.index("The manual\n") < text.index("Computed\n")
     tab_to(page, "Decision", "Shift+Tab")
     page.keyboard.type("at most 20 degrees, 10 kt slower")
-    tab_to(page, "Record the decision")
-    page.wait_for_timeout(500)
-    page.keyboard.press("Space")
-    page.wait_for_function(f"{TEXT}.includes('What to take from it')", timeout=20_000)
+    press(page, "Record the decision", "What to take from it")
     (path,) = (operator / "session_logs").glob("*.jsonl")
     log = read_log(path)
     assert [step.kind for step in log.steps] == ["opened", "case", "predictions", "manual", "computed", "decision"]
     assert log.steps[2].predictions == ("74 KIAS, 10 less", "70 KIAS")
     assert log.steps[-1].decision == "at most 20 degrees, 10 kt slower"
     # Keys pressed on a button must not reach the notebook's own single-key commands (a cell added, cut or run).
-    assert page.evaluate("window.bkPanel.content.widgets.length") == 2
+    assert page.evaluate("window.bkPanel.content.widgets.length") == len(cells(operator))
+
+
+@pytest.mark.parametrize("width", [1920, 800])
+def test_another_condition_is_tried_by_keyboard_only(panel, operator, width):
+    page = panel.page
+    page.set_viewport_size({"width": width, "height": 900 if width < 1000 else 1080})
+    tab_to(page, "One key:")
+    page.keyboard.press("f")
+    page.wait_for_selector(".briefkit-fill", timeout=10_000)
+    page.keyboard.press("t")
+    page.wait_for_selector(".free-try .noUi-handle", timeout=10_000)
+    before = tries(operator)
+    tab_to(page, "slider", "Shift+Tab")
+    while not page.evaluate("document.activeElement.closest('.widget-hslider').innerText").startswith("Bank"):
+        page.keyboard.press("Shift+Tab")
+        tab_to(page, "slider", "Shift+Tab")
+    page.keyboard.press("ArrowLeft")
+    page.wait_for_function(f"{TEXT}.includes('Tried')", timeout=10_000)
+    page.wait_for_function(f"{TEXT}.includes('bank 29°')", timeout=10_000)
+    page.keyboard.press("Tab")
+    page.keyboard.press("Control+A")
+    page.keyboard.type("steep")
+    page.keyboard.press("Enter")
+    page.wait_for_function(f"{TEXT}.includes('Refused')", timeout=10_000)
+    now = tries(operator)
+    assert len(now) == len(before) + 1
+    assert now[-1].inputs["load_factor"] == pytest.approx(1.0 / math.cos(math.radians(29.0)), abs=1e-6)
+    at_rest(page)
+    photograph(page, f"panel-tried-{width}")
+    assert clipped(page) == []
+    # What was tried is on the screen beside or under the sliders, without scrolling.
+    assert page.evaluate("""() => { const tried = [...document.querySelectorAll('.briefkit-fill h3')].find(
+        it => it.textContent === 'Tried').getBoundingClientRect();
+        const moves = document.querySelector('.briefkit-fill .moves').getBoundingClientRect();
+        return tried.top > 0 && tried.bottom < moves.top; }""")
+    tab_to(page, "One key:")
+    page.keyboard.press("t")
+    page.wait_for_function(f"!{TEXT}.includes('Tried')", timeout=10_000)
+    page.keyboard.press("f")
+    page.wait_for_selector(".briefkit-fill", state="detached", timeout=10_000)
 
 
 @pytest.mark.parametrize("width", [800, 1920])
 def test_it_fills_the_window_without_menus_or_code_and_neither_cuts_nor_overlaps(panel, width):
     page = panel.page
     page.set_viewport_size({"width": width, "height": 900 if width < 1000 else 1080})
-    page.wait_for_timeout(500)
+    at_rest(page)
     photograph(page, f"panel-in-lab-{width}")
     assert clipped(page) == []
     tab_to(page, "One key:", "Tab")
     page.keyboard.press("f")
     page.wait_for_selector(".briefkit-fill", timeout=10_000)
-    page.wait_for_timeout(500)
+    at_rest(page)
     photograph(page, f"panel-filled-{width}")
     covered = page.evaluate(
         "() => [[5, 5], [innerWidth / 2, 12], [innerWidth - 30, 60], [40, innerHeight - 8], [200, 120]].every("
@@ -204,7 +270,7 @@ def test_it_fills_the_window_without_menus_or_code_and_neither_cuts_nor_overlaps
     # What does not fit is scrolled to, by keyboard too: the last line can be seen above the row of moves.
     for _ in range(6):
         page.keyboard.press("PageDown")
-        page.wait_for_timeout(150)
+    at_rest(page)
     photograph(page, f"panel-filled-{width}-end")
     assert page.evaluate(
         "() => { const all = [...document.querySelectorAll('.briefkit-fill .screen p')].map("
@@ -220,7 +286,7 @@ def test_one_key_blanks_the_whole_window_and_one_shows_it_again(panel):
     tab_to(page, "One key:")
     page.keyboard.press("b")
     page.wait_for_selector(".briefkit-blank", timeout=10_000)
-    page.wait_for_timeout(300)
+    at_rest(page)
     photograph(page, "panel-blank")
     shown = page.evaluate("() => document.querySelector('.briefkit-blank').innerText.trim().split('\\n')")
     assert [line for line in shown if line.strip()] in (
@@ -232,7 +298,7 @@ def test_one_key_blanks_the_whole_window_and_one_shows_it_again(panel):
         "document.elementFromPoint(x, y).closest('.briefkit-blank')).backgroundColor === 'rgb(0, 0, 0)')"
     )
     page.keyboard.press("n")
-    page.wait_for_timeout(500)
+    page.wait_for_function("document.querySelector('.briefkit-what-if h2').textContent.includes('Case 2 of 7')")
     page.keyboard.press("b")
     page.wait_for_selector(".briefkit-blank", state="detached", timeout=10_000)
     page.wait_for_function(f"{TEXT}.includes('Case 2 of 7')", timeout=10_000)
@@ -242,16 +308,17 @@ def test_a_kernel_killed_in_mid_deck_leaves_a_whole_log(panel, lab, operator):
     page = panel.page
     page.evaluate("document.querySelector('.briefkit-what-if input').focus()")
     page.keyboard.type("less 10 kt")
-    tab_to(page, STAGES[0])
-    page.wait_for_timeout(500)
-    page.keyboard.press("Space")
-    page.wait_for_function(f"{TEXT}.includes('less 10 kt')", timeout=20_000)
+    press(page, STAGES[0], "less 10 kt")
     (path,) = (operator / "session_logs").glob("*.jsonl")
     before = read_log(path)
     assert before.steps[-1].predictions == ("less 10 kt",)
     page.evaluate("""async () => { const kernel = window.bkPanel.sessionContext.session.kernel;
+        const gone = new Promise((yes, no) => {
+          kernel.statusChanged.connect((_, now) => /restarting|dead/.test(now) && yes(now));
+          setTimeout(() => no(new Error('the kernel lives')), 20000);
+        });
         kernel.requestExecute({code: 'import os, signal; os.kill(os.getpid(), signal.SIGKILL)'});
-        await new Promise(done => setTimeout(done, 3000)); }""")
+        await gone; }""")
     after = read_log(path)
     assert after.faults == ()
     assert after.steps == before.steps
