@@ -90,8 +90,9 @@ def _analysis(brief: Brief, table: ReductionTable) -> tuple[Section, ...]:
     legs: tuple[Section, ...] = ()
     set_by: tuple[Section, ...] = ()
     if fleet is not None:
-        legs = overview.leg_sections(aircraft, fleet, areas[brief.identity.work_area], table, operation.legs)
-        set_by = (overview.set_by_section(aircraft, fleet, areas.values()),)
+        briefed = areas[brief.identity.work_area]
+        legs = overview.leg_sections(aircraft, fleet, briefed, table, operation.legs)
+        set_by = (overview.set_by_section(aircraft, fleet, areas.values(), briefed, table),)
     on_chart = (
         (Section("One row on the chart", figure=pictures.row_on_chart(aircraft, row), sources=read),) if row else ()
     )

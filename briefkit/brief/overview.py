@@ -15,19 +15,25 @@ from briefkit.brief import words
 from briefkit.brief.front import row_text
 from briefkit.brief.pages import Grid, Ink, Section
 from briefkit.envelope.overview import SetByDay, masses_by_hour, set_by_days
-from briefkit.envelope.reductions import ReductionTable, RowKind
+from briefkit.envelope.reductions import ReductionRow, ReductionTable, RowKind
 from briefkit.errors import Reason, SetBy
 
 _HOUR: Final = 3600.0
-_VNE, _BEYOND, _NONE = "VNE", "beyond", "no figure"
+_VNE, _BEYOND, _NONE, _NO_TURN = "VNE", "beyond", "no figure", "no turn"
 _MINUS: Final = re.compile(r"(?<![\w.])-(?=\d)")
 
 
-def set_by_section(aircraft: Aircraft, fleet: FleetEntry, areas: Iterable[WorkArea]) -> Section:
-    """What sets the answer at the briefed bank: work areas and days down, masses across, at the top of each area."""
+def set_by_section(
+    aircraft: Aircraft, fleet: FleetEntry, areas: Iterable[WorkArea], briefed: WorkArea, table: ReductionTable
+) -> Section:
+    """What sets the answer at the briefed bank: work areas and days down, masses across, at the top of each area.
+
+    First the work area that is briefed as section 2 has it: a point may need less than the whole block, and nobody
+    should find a smaller figure here without its larger one beside it.
+    """
     bank, unit = words.degrees(fleet.brief_bank.value), aircraft.units.speed
     masses = [mass.text for mass in fleet.masses]
-    rows: list[tuple[str, ...]] = []
+    rows: list[tuple[str, ...]] = [(f"{briefed.name}, all of it: section 2", *(_row_cell(row) for row in table.rows))]
     refused: dict[str, list[str]] = {}
     for day in set_by_days(aircraft, fleet, tuple(areas)):
         where = f"{day.area}, {words.temperature(day.oat)}"
@@ -43,15 +49,20 @@ def set_by_section(aircraft: Aircraft, fleet: FleetEntry, areas: Iterable[WorkAr
         f"the chart at {bank}."
     )
     after = (
-        "Points, not blocks: section 2 takes the largest reduction over its whole work area. The manual’s other speeds "
-        "and the floor come before it."
+        "Below the first line: points, the top of each work area on its coldest and its hottest day. A day between "
+        "them can need more: what holds for a crew is section 2. The manual’s other speeds, and the floor, come first."
     )
-    caption = f"At {bank} of bank and the top of each work area, on its coldest and its hottest day"
-    grid = Grid(("Where", *masses), tuple(rows), caption, Ink.COMPUTED) if rows else None
+    grid = Grid(("Where", *masses), tuple(rows), f"At {bank} of bank", Ink.COMPUTED)
     return Section(
-        "What sets the answer where", before=(key,) if rows else (), grid=grid, points=tuple(points), after=(after,),
+        "What sets the answer where", before=(key,), grid=grid, points=tuple(points), after=(after,),
         sources=(aircraft.vne.source, fleet.source),
     )  # fmt: skip
+
+
+def _row_cell(row: ReductionRow) -> str:
+    if row.kind is RowKind.REDUCTION:
+        return units.show_number(row.reduction)
+    return {RowKind.VNE_LIMITS: _VNE, RowKind.UNDER_FLOOR: _NO_TURN}.get(row.kind, _BEYOND)
 
 
 def _set(refusal: str) -> str:

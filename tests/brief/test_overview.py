@@ -65,9 +65,9 @@ def test_where_nothing_is_taken_off_a_leg_says_so(two_t, operation, fleet, table
     assert said.before[0].endswith("Nothing is taken off at any of its masses: VNE still limits.")
 
 
-def test_what_sets_the_answer_where(two_t, operation, fleet):
+def test_what_sets_the_answer_where(two_t, operation, fleet, table):
     areas = tuple(operation.work_areas.values())
-    section = set_by_section(two_t, fleet, areas)
+    section = set_by_section(two_t, fleet, areas, operation.work_areas["vellmark"], table)
     assert section.grid.header == ("Where", *(mass.text for mass in fleet.masses))
     shown = {row[0]: row[1:] for row in section.grid.rows}
     for one in set_by_table(two_t, fleet, areas):
@@ -89,7 +89,18 @@ def test_what_sets_the_answer_where(two_t, operation, fleet):
     assert not any("-" in point.replace("2-4", "") for point in section.points)  # true minus signs
 
 
-def test_an_aircraft_without_a_figure_anywhere_has_no_empty_table(two_t, operation, fleet):
-    section = set_by_section(two_t, fleet, (operation.work_areas["ysbrane_winter"],))
-    assert section.grid is None
+def test_the_line_of_section_2_stands_above_its_points(two_t, operation, fleet, table):
+    """A point may need less than its block: 1,800 lb, 5 kt at the top of the area, 10 on a day between (page.md 1)."""
+    section = set_by_section(two_t, fleet, operation.work_areas.values(), operation.work_areas["vellmark"], table)
+    assert section.grid.rows[0] == (
+        "Vellmark work area, all of it: section 2", "beyond", "beyond", "10", "5", "VNE",
+    )  # fmt: skip
+    points = [row for row in section.grid.rows[1:] if row[0].startswith("Vellmark work area")]
+    assert [row[3] for row in points] == ["5", "5"]
+
+
+def test_areas_without_a_figure_leave_only_the_line_of_section_2(two_t, operation, fleet, table):
+    winter = operation.work_areas["ysbrane_winter"]
+    section = set_by_section(two_t, fleet, (winter,), operation.work_areas["vellmark"], table)
+    assert len(section.grid.rows) == 1
     assert len(section.points) == 2
