@@ -3,15 +3,14 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
-from dataclasses import dataclass
 from typing import Final
 
 import bqplot
 import numpy as np
-from numpy.typing import ArrayLike, NDArray
+from numpy.typing import NDArray
 
 from briefkit.figures import canvas, theme
+from briefkit.figures.boundary_lines import Curves, Here, Lines, limits_of, speeds_of, stops
 from briefkit.figures.canvas import Margins, put, write
 from briefkit.figures.curves import Curve, End, EndWords
 from briefkit.figures.placing import Crowd, widest
@@ -20,49 +19,9 @@ Floats = NDArray[np.float64]
 
 _ROOM: Final = Margins(40, 122, 64, 46)
 _HEIGHT: Final = 374
-_SAME: Final = 0.05  # speeds closer than this, everywhere, are one line
 _PALE: Final = 0.55  # of the band's own grey, where it lies above VNE
 _LETTER: Final = 6.6  # px, of the words inside the figure
 _ROW: Final = 14.0
-
-
-@dataclass(frozen=True)
-class Here:
-    """The present condition on the figure: its place, its speed, and the equivalent VNE there, with their words.
-
-    No speed leaves its ring out, no answer its dot; the line stays.
-    """
-
-    x: float
-    speed: float | None
-    words: str
-    answer: float | None = None
-    answer_words: str = ""
-
-
-@dataclass(frozen=True, eq=False)
-class Curves:
-    """What the figure shows, in the units it is printed in; NaN marks a gap (refused), and a gap stays a gap.
-
-    `x` (n,) rising; `manual` (n,) the manual's VNE; `turns` (name, (n,) speeds) of the equivalent VNE;
-    `onset_lower`, `onset_central`, `onset_upper` (m,) the absolute onset band over `onset_x` (m,) rising; where only
-    its upper end has no value the band is drawn open, up to the end of the calibration or the top of the figure.
-    `parts` are, for each turn, the places where it leaves the manual's VNE, with their words. `ceiling` is where the
-    airspeed calibration ends, with its words: nothing lies above it. `foot` says what bounds the figure left and right
-    and `limited` whether that is the manual.
-    """
-
-    x: ArrayLike
-    manual: ArrayLike
-    turns: Sequence[tuple[str, ArrayLike]]
-    onset_x: ArrayLike
-    onset_lower: ArrayLike
-    onset_central: ArrayLike
-    onset_upper: ArrayLike
-    parts: Sequence[Sequence[tuple[float, str]]] = ()
-    ceiling: tuple[float, str] | None = None
-    foot: str = ""
-    limited: bool = False
 
 
 class BoundaryFigure:
@@ -111,10 +70,10 @@ class BoundaryFigure:
         """
         if len(curves.turns) != len(self._turns):
             raise ValueError(f"this figure was built for {len(self._turns)} computed lines, not {len(curves.turns)}")
-        lines = _Lines.of(curves)
+        lines = Lines.of(curves)
         if not np.any(np.isfinite(lines.manual)):
             raise ValueError("the manual's VNE has no value anywhere on this figure")
-        limits = _limits(lines, here, self._area.height)
+        limits = limits_of(lines, here, self._area.height)
         if self._shown is None or self._shown[0] is not curves or self._shown[1] != limits:
             self._set_limits(limits, curves)
             grown = self._draw_band(lines)
@@ -157,7 +116,7 @@ class BoundaryFigure:
             up.append([curves.ceiling[0]] * 2)
         put(self._limits, across, up)
 
-    def _draw_band(self, lines: _Lines) -> bool:
+    def _draw_band(self, lines: Lines) -> bool:
         """The band in two greys: as it is under VNE, pale above, where it is no speed to fly."""
         pale: list[tuple[Floats, Floats]] = []
         full: list[tuple[Floats, Floats]] = []
@@ -174,8 +133,8 @@ class BoundaryFigure:
             put(mark, across, up, fill_opacities=[_PALE if index < len(pale) else 1.0])
         return self._middle.update(lines.band_x, lines.central) or grown
 
-    def _write_ends(self, lines: _Lines) -> None:
-        level = tuple(f"and {name}" for name in lines.merged)
+    def _write_ends(self, lines: Lines) -> None:
+        level = tuple(row for name in lines.merged for row in _fitting(f"and {name}"))
         ends = [_end(lines.x, lines.manual, ("VNE, manual", *level), theme.INK, bold=True)]
         for name, speeds in lines.turns:
             if name not in lines.merged and np.isfinite(speeds[-1]):
@@ -204,7 +163,7 @@ class BoundaryFigure:
         place = area.x_at(area.width - 6.0 if right else 6.0)
         write(self._limit_words, [(place, area.y_at(area.down(top) - 9.0), text)], align="end" if right else "start")
 
-    def _name_places(self, lines: _Lines, curves: Curves, here: Here | None) -> None:
+    def _name_places(self, lines: Lines, curves: Curves, here: Here | None) -> None:
         """Bars where a line ends before the figure does, diamonds where it leaves VNE; words by both, clear of all."""
         area, crowd = self._area, Crowd(self._area)
         crowd.add_line(lines.x, lines.manual)
@@ -214,14 +173,14 @@ class BoundaryFigure:
         crowd.add_line(lines.band_x, lines.central, cost=30.0)
         if here is not None:
             crowd.add_line([here.x - 1e-9, here.x + 1e-9], [area.y.min, area.y.max], cost=20.0)
-            for speed in _speeds(here):
+            for speed in speeds_of(here):
                 crowd.add_mark(area.across(here.x), area.down(speed))
         if curves.ceiling is not None:
             crowd.add_line([lines.x[0], lines.x[-1]], [curves.ceiling[0]] * 2)
         asked: list[tuple[float, float, tuple[str, ...]]] = []
         bars_x, bars_y = [], []
         for name, speeds in lines.turns:
-            for place in [] if name in lines.merged else _stops(speeds):
+            for place in [] if name in lines.merged else stops(speeds):
                 across, down = area.across(float(lines.x[place])), area.down(float(speeds[place]))
                 asked.append((across, down, ("chart ends",) if len(lines.turns) == 1 else (f"{name},", "chart ends")))
                 bars_x.append([float(lines.x[place])] * 2)
@@ -263,97 +222,16 @@ class BoundaryFigure:
             write(mark, [(area.x_at(middle), area.y_at(down), words)], align="middle")
 
 
-@dataclass(frozen=True, eq=False)
-class _Lines:
-    """The curves as arrays; `merged` names the turns that are the manual's line."""
-
-    x: Floats
-    manual: Floats
-    turns: list[tuple[str, Floats]]
-    band_x: Floats
-    lower: Floats
-    central: Floats
-    upper: Floats
-    ceiling: float
-    merged: list[str]
-
-    @classmethod
-    def of(cls, curves: Curves) -> _Lines:
-        manual = np.asarray(curves.manual, dtype=float)
-        turns = [(name, np.asarray(speeds, dtype=float)) for name, speeds in curves.turns]
-        return cls(
-            x=np.asarray(curves.x, dtype=float),
-            manual=manual,
-            turns=turns,
-            band_x=np.asarray(curves.onset_x, dtype=float),
-            lower=np.asarray(curves.onset_lower, dtype=float),
-            central=np.asarray(curves.onset_central, dtype=float),
-            upper=np.asarray(curves.onset_upper, dtype=float),
-            ceiling=math.nan if curves.ceiling is None else curves.ceiling[0],
-            merged=[name for name, speeds in turns if _same(speeds, manual)],
-        )
-
-    @property
-    def open(self) -> bool:
-        """Whether the band has a lower end somewhere that has no upper one."""
-        return bool(np.any(np.isfinite(self.lower) & ~np.isfinite(self.upper)))
-
-    @property
-    def above(self) -> bool:
-        """Whether some of the band lies above the manual's VNE."""
-        upper = np.where(np.isfinite(self.lower) & ~np.isfinite(self.upper), np.inf, self.upper)
-        with np.errstate(invalid="ignore"):
-            return bool(np.any(upper > np.interp(self.band_x, self.x, self.manual)))
-
-    def stretches(self, top: float) -> list[tuple[Floats, Floats, Floats, Floats]]:
-        """(x, lower, upper, VNE) of each stretch of the band, at enough places to cut it along VNE."""
-        top = self.ceiling if math.isfinite(self.ceiling) else top
-        upper = np.where(np.isfinite(self.upper), self.upper, top)
-        found = []
-        for across, lower in canvas.finite_runs(self.band_x, self.lower):
-            fine = np.union1d(np.linspace(across[0], across[-1], 121), across)
-            vne = np.interp(fine, self.x, np.where(np.isfinite(self.manual), self.manual, top))
-            found.append((fine, np.interp(fine, across, lower), np.interp(fine, self.band_x, upper), vne))
-        return found
-
-
 def _polygon(x: Floats, lower: Floats, upper: Floats) -> tuple[Floats, Floats]:
     return np.concatenate([x, x[::-1]]), np.concatenate([lower, upper[::-1]])
 
 
-def _limits(lines: _Lines, here: Here | None, height: float) -> tuple[float, float, float, float]:
-    """Round limits round everything shown, with room under the lines and, where the calibration ends, over it."""
-    everything = np.concatenate(
-        [lines.manual, *(speeds for _, speeds in lines.turns), lines.lower, lines.central, lines.upper, _speeds(here)]
-    )
-    finite = everything[np.isfinite(everything)]
-    reach = float(np.ptp(finite))
-    step = 10.0 if reach <= 120.0 else 20.0
-    low = max(math.floor((finite.min() - 0.12 * reach) / step) * step, 0.0)
-    high = math.ceil((finite.max() + 0.03 * reach) / step) * step
-    if math.isfinite(lines.ceiling) and (lines.open or lines.ceiling < high + 0.1 * reach):
-        high = max(high, lines.ceiling)
-        room = 20.0  # px over the calibration's end, for its words
-        high = max(high, lines.ceiling + (lines.ceiling - low) * room / (height - room))
-    return float(lines.x[0]), float(lines.x[-1]), low, high
-
-
-def _stops(speeds: Floats) -> list[int]:
-    """Where a line begins or ends inside the figure: the outer ends of its values, if not at the figure's own."""
-    finite = np.flatnonzero(np.isfinite(speeds))
-    if finite.size == 0:
-        return []
-    first, last = int(finite[0]), int(finite[-1])
-    return ([first] if first > 0 else []) + ([last] if last < speeds.size - 1 else [])
-
-
-def _speeds(here: Here | None) -> list[float]:
-    return [] if here is None else [speed for speed in (here.speed, here.answer) if speed is not None]
-
-
-def _same(one: Floats, other: Floats) -> bool:
-    gaps = np.array_equal(np.isfinite(one), np.isfinite(other))
-    return gaps and bool(np.nanmax(np.abs(one - other), initial=0.0) < _SAME)
+def _fitting(words: str) -> tuple[str, ...]:
+    """Words at a line's end in as many rows as the margin needs."""
+    if canvas.text_width(words) <= _ROOM.right - 4.0:
+        return (words,)
+    first, _, last = words.rpartition(" ")
+    return (first, last)
 
 
 def _end(x: Floats, y: Floats, rows: tuple[str, ...], colour: str, *, bold: bool = False) -> End:

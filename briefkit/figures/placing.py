@@ -14,7 +14,7 @@ from briefkit.figures.canvas import Plane
 Floats = NDArray[np.float64]
 
 _CLEAR: Final = 3.0  # px between words and what they keep clear of
-_FAR: Final = 90.0  # px: farther off, words no longer seem to belong
+_FAR: Final = 50.0  # px: farther off, words no longer seem to belong
 _ASIDE: Final = np.array([9.0, 20.0, 31.0])
 _NUDGES: Final = np.array([0.0, -8.0, 8.0, -16.0, 16.0, -28.0, 28.0])  # px up and down, for words beside their point
 _SAMPLE: Final = 3.0  # px between the points a line is taken as

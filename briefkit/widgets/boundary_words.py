@@ -14,7 +14,7 @@ from briefkit.envelope.boundary import Against, Boundary, EquivalentCurve, Margi
 from briefkit.envelope.condition import Condition
 from briefkit.envelope.equivalent import covered_bank
 from briefkit.errors import Reason, Refusal
-from briefkit.figures.boundary import Curves
+from briefkit.figures.boundary_lines import Curves
 from briefkit.widgets import words
 
 _TIE: Final = "\u00a0"
@@ -114,7 +114,7 @@ def onset_here(aircraft: Aircraft, curves: Boundary, x: float) -> str:
     """The band at the present condition in one sentence, told from its lower end."""
     found, low = band(curves, x), float(np.interp(x, curves.onset_x, curves.onset_lower))
     if not math.isfinite(low):
-        return "The rotor model has no onset band here."
+        return "There is no onset band here: it lies outside the airspeed calibration or the rotor model."
     label, said = aircraft.units.speed_label(), margin(curves, x)
     vne = float(np.interp(x, curves.x, curves.vne))
     reduced = " It begins under VNE." if low < vne else " It begins above VNE, which governs."

@@ -14,7 +14,8 @@ from briefkit.aircraft.model import Aircraft
 from briefkit.envelope.boundary import Against, Boundary, boundary, with_band
 from briefkit.envelope.condition import Condition
 from briefkit.errors import Reason, Refusal, SetBy
-from briefkit.figures.boundary import BoundaryFigure, Here
+from briefkit.figures.boundary import BoundaryFigure
+from briefkit.figures.boundary_lines import Here
 from briefkit.figures.still import Drawing, StillParts, Table
 from briefkit.widgets import boundary_words, words
 from briefkit.widgets.answers import Answers

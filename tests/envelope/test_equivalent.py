@@ -287,6 +287,7 @@ def test_climb_cost_keeps_the_tip_angle(two_t):
     assert math.degrees(abs(float(level[0] - climbing[0]))) < 0.01
 
 
+@pytest.mark.slow
 def test_a_chart_of_thousands_of_rows_looked_at_in_two_goes_says_the_same(three_f, monkeypatch):
     """Against reading every row, at random conditions with and without a turn, one by one as a panel asks."""
     rng, count = np.random.default_rng(20341), 60

@@ -9,7 +9,8 @@ import numpy as np
 import pytest
 
 from briefkit.figures import theme
-from briefkit.figures.boundary import BoundaryFigure, Curves, Here
+from briefkit.figures.boundary import BoundaryFigure
+from briefkit.figures.boundary_lines import Curves, Here
 from briefkit.figures.chart import ChartFigure, Mark
 from briefkit.figures.disc import DiscFigure, levels_for, reversed_region
 from briefkit.figures.flapping import FlapCurveFigure, TipPathFigure
@@ -286,6 +287,12 @@ def test_a_place_where_a_line_leaves_vne_is_marked_and_named():
     made = boundary(curves(parts=[[], [(3000.0, "30° bank\nparts at 3,000 ft")]]))
     assert (made._parts.x[0], made._parts.y[0]) == (3000.0, pytest.approx(np.interp(3000.0, X, VNE)))
     assert "parts at 3,000 ft" in words(made.figure)
+
+
+def test_a_long_name_of_a_line_that_is_the_manuals_takes_two_rows():
+    made = BoundaryFigure(x_words="bank, °", speed_words="KIAS", turns=1)
+    made.update(curves(turns=[("equivalent VNE", VNE)]))
+    assert {"and equivalent", "VNE"} <= set(words(made.figure))
 
 
 def test_the_same_curves_are_not_sent_again():
