@@ -29,7 +29,7 @@ CHART_POINTS: Final = 61
 BAND_POINTS: Final = 31
 _STEEPEST: Final = math.radians(60.0)
 _STRONGEST: Final = 10.0  # m/s of rising air
-_SAME: Final = 0.05  # speeds closer than this are one, in the type's unit
+_SAME, _SEEN = 0.05, 0.5  # in the type's unit: speeds closer than the first are one, those within the second look it
 
 
 class Against(StrEnum):
@@ -194,6 +194,10 @@ def _parts(x: Floats, vne: Floats, ias: Floats) -> tuple[float, ...]:
     below = vne - ias
     with np.errstate(invalid="ignore"):
         lower = below > _SAME
+    # A stretch that never leaves VNE by as much as can be seen is none.
+    edges = np.flatnonzero(np.diff(np.concatenate(([False], lower, [False])).astype(int)))
+    for first, end in zip(edges[::2], edges[1::2], strict=True):
+        lower[first:end] = below[first:end].max() > _SEEN
     known = np.isfinite(below)
     found = []
     for i in np.flatnonzero((lower[:-1] != lower[1:]) & known[:-1] & known[1:]):

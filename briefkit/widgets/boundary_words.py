@@ -65,12 +65,19 @@ def _place(curves: Boundary, x: float) -> str:
 
 
 def _at(curves: Boundary, x: float, curve: EquivalentCurve) -> str:
-    """A place rounded to where VNE still stands: towards the part of the axis that is easier on the rotor."""
-    step = {"ft": 100.0, "m": 50.0, "lb": 10.0, "kg": 10.0, "%": 0.1}.get(curves.x_unit, 1.0)
+    """Where a line leaves VNE, rounded towards the part of the axis where VNE still stands."""
     beyond = np.interp(x + 0.5 * (curves.x[1] - curves.x[0]), curves.x, curves.vne - curve.ias)
-    up = not beyond > 0.0
-    if not math.isfinite(beyond):
-        up = False
+    return _rounded(curves, x, up=math.isfinite(beyond) and not beyond > 0.0)
+
+
+def _last(curves: Boundary, x: float, curve: EquivalentCurve) -> str:
+    """Where a line ends, rounded towards the part of the axis where it still has an answer."""
+    before = np.interp(x - 0.5 * (curves.x[1] - curves.x[0]), curves.x, curve.ias)
+    return _rounded(curves, x, up=not math.isfinite(before))
+
+
+def _rounded(curves: Boundary, x: float, *, up: bool) -> str:
+    step = {"ft": 100.0, "m": 50.0, "lb": 10.0, "kg": 10.0, "%": 0.1}.get(curves.x_unit, 1.0)
     share = round(x / step, 6)
     return _place(curves, (math.ceil(share) if up else math.floor(share)) * step)
 
@@ -180,5 +187,5 @@ def _told(curves: Boundary, curve: EquivalentCurve) -> str:
     else:
         where = "parts from the manual's VNE at " + " and ".join(_at(curves, x, curve) for x in curve.parts)
     if curve.ends:
-        where += "; the chart ends at " + " and ".join(_place(curves, x) for x in curve.ends)
+        where += "; the chart ends at " + " and ".join(_last(curves, x, curve) for x in curve.ends)
     return where
