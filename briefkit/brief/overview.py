@@ -34,11 +34,11 @@ def set_by_section(
     bank, unit = words.degrees(fleet.brief_bank.value), aircraft.units.speed
     masses = [mass.text for mass in fleet.masses]
     rows: list[tuple[str, ...]] = [(f"{briefed.name}, all of it: section 2", *(_row_cell(row) for row in table.rows))]
-    refused: dict[str, list[str]] = {}
+    refused: dict[str, dict[str, list[str]]] = {}
     for day in set_by_days(aircraft, fleet, tuple(areas)):
         where = f"{day.area}, {words.temperature(day.oat)}"
         if day.refusal:
-            refused.setdefault(day.refusal, []).append(where)
+            refused.setdefault(day.refusal, {}).setdefault(day.area, []).append(words.temperature(day.oat))
         if any(day.set_by) or Reason.BEYOND_CHART in day.reason:
             rows.append((where, *_cells(aircraft, day)))
     points = [f"No figure, {_listed(where)}: {_set(refusal)}." for refusal, where in refused.items()]
@@ -69,8 +69,9 @@ def _set(refusal: str) -> str:
     return _MINUS.sub("\u2212", refusal).replace("'", "’")
 
 
-def _listed(where: list[str]) -> str:
-    return where[0] if len(where) == 1 else f"{', '.join(where[:-1])} and {where[-1]}"
+def _listed(where: dict[str, list[str]]) -> str:
+    """ "Corrant Saddle work area at −10 °C and +22 °C; Ysbrane Point winter coast at −38 °C"."""
+    return "; ".join(f"{area} at {' and '.join(days)}" for area, days in where.items())
 
 
 def _cells(aircraft: Aircraft, day: SetByDay) -> tuple[str, ...]:
