@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import weakref
 from dataclasses import dataclass, replace
+from functools import cached_property
 from typing import Any, Final
 
 import numpy as np
@@ -77,6 +78,12 @@ class Rows:
             height = np.maximum(height, cold)
         floored: Floats = np.maximum(height, self.heights[0])
         return floored
+
+    @cached_property
+    def coldest_first(self) -> tuple[Floats, Floats]:
+        """`warmth`, rising, and the largest `loading` of all rows no warmer."""
+        order = np.argsort(self.warmth)
+        return self.warmth[order], np.maximum.accumulate(self.loading[order])
 
     def at_temperatures(self, at: Index) -> Rows:
         """The rows of some temperatures alone, by their place among all of them."""
