@@ -45,6 +45,7 @@ class Flapping(Exhibit):
         super().__init__(source, condition)
         if not isinstance(self._source, Fixed):
             self._hold = w.ToggleButton(value=self._from is not None, layout={"width": "auto"})
+            self._hold.tooltip = "Held as they are trimmed now, while the condition changes"
             self._hold.description = TRIM if self._from else HOLD
             self._hold.observe(guarded(self.mark_old, self._pressed), "value")
             self.children = (self._caption, self._hold, self._picture, self._state)

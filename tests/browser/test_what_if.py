@@ -246,6 +246,7 @@ def test_another_condition_is_tried_by_keyboard_only(panel, operator, width):
 def test_it_fills_the_window_without_menus_or_code_and_neither_cuts_nor_overlaps(panel, width):
     page = panel.page
     page.set_viewport_size({"width": width, "height": 900 if width < 1000 else 1080})
+    page.evaluate("document.querySelector('.briefkit-what-if').scrollIntoView()")
     at_rest(page)
     photograph(page, f"panel-in-lab-{width}")
     assert clipped(page) == []
