@@ -170,7 +170,10 @@ def test_articulated_and_hingeless_hubs_take_what_is_left_out_from_what_is_typed
     assert "uniform blade" in rotor.flap_frequency.basis
     assert rotor.precone.value == 0.0
     hingeless = changed(
-        typed, ('hub = "teetering"', 'hub = "hingeless"\nflap_frequency = "1.10"'), ('flap_stop = "11 deg"\n', "")
+        typed,
+        ('hub = "teetering"', 'hub = "hingeless"\nflap_frequency = "1.10"'),
+        ('flap_stop = "11 deg"\n', ""),
+        ('root_cutout = "12 %"', 'root_cutout = "13 %"'),  # outboard of the equivalent hinge
     )
     rotor = load(tmp_path, hingeless).rotor
     assert rotor.flap_frequency.known
