@@ -320,7 +320,11 @@ def _check_subject(document: Document, subject: _SubjectTable, operator: Path) -
     except (OSError, RuntimeError, ValueError):
         target = operator
     if inside.is_absolute() or "\\" in subject.aircraft or not target.is_relative_to(operator):
-        document.fault(key, quoted(subject.aircraft), permitted, "from the folder that holds operation.toml, with /")
+        led = not inside.is_absolute() and ".." not in inside.parts and "\\" not in subject.aircraft
+        remedy = (
+            "a link leads out of it: keep the file itself there" if led else "from the folder of operation.toml, with /"
+        )
+        document.fault(key, quoted(subject.aircraft), permitted, remedy)
     elif not target.is_file():
         known = [str(other.relative_to(operator).as_posix()) for other in sorted(operator.glob("aircraft/*.toml"))]
         remedy = did_you_mean(subject.aircraft, known, f"there is {', '.join(known)}" if known else "")

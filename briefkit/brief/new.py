@@ -20,6 +20,7 @@ from typing import Final
 from briefkit import units
 from briefkit.aircraft.operation import OPERATION_FILE, WorkArea, load_operation
 from briefkit.brief.identity import BRIEF_FILE, NOTEBOOK, operator_folder
+from briefkit.brief.templates import template_folder
 from briefkit.brief.write import write_page
 from briefkit.errors import BriefkitError, Fault, FaultyFile, ReadingError
 from briefkit.physics import atmosphere
@@ -190,15 +191,6 @@ def _fits(area: WorkArea) -> bool:
     return heights and area.low_temperature.value >= coldest and area.high_temperature.value <= hottest
 
 
-def starter_folder() -> Path:
-    """The starters: inside the package in a wheel, beside it in a checkout."""
-    package = Path(__file__).resolve().parents[1]
-    for folder in (package / "templates" / "starters", package.parent / "templates" / "starters"):
-        if folder.is_dir():
-            return folder
-    raise BriefkitError("the starters are missing from this installation; install briefkit again")
-
-
 def _operator_above(folder: Path) -> Path | None:
     try:
         return operator_folder(folder)
@@ -232,18 +224,18 @@ def _values(answers: Answers, today: dt.date) -> dict[str, str]:
         **(_METRES if metric else _FEET),
         **_BY_MASS[answers.mass_unit],
     }
-    values["chart"] = (starter_folder() / values.pop("chart_file")).read_text(encoding="utf-8")
+    values["chart"] = (template_folder("starters") / values.pop("chart_file")).read_text(encoding="utf-8")
     return values
 
 
 def _filled(name: str, values: dict[str, str]) -> str:
-    text = Template((starter_folder() / name).read_text(encoding="utf-8")).substitute(values)
+    text = Template((template_folder("starters") / name).read_text(encoding="utf-8")).substitute(values)
     return re.sub(r"(?m)^([a-z\[].*?) {2,}(#.*)$", lambda line: f"{line[1]:<{_COMMENT_COLUMN}} {line[2]}", text)
 
 
 def _filled_notebook(name: str, values: dict[str, str]) -> str:
     """The starter notebook with its code cells filled in; markdown stays as it is, dollars and all."""
-    notebook = json.loads((starter_folder() / name).read_text(encoding="utf-8"))
+    notebook = json.loads((template_folder("starters") / name).read_text(encoding="utf-8"))
     for cell in notebook["cells"]:
         if cell["cell_type"] == "code":
             cell["source"] = [Template(line).substitute(values) for line in cell["source"]]

@@ -9,12 +9,12 @@ import re
 from dataclasses import dataclass
 from enum import StrEnum
 from functools import cache
-from pathlib import Path
 from typing import Final
 
 import jinja2
 from markupsafe import Markup, escape
 
+from briefkit.brief.templates import template_folder
 from briefkit.errors import BuildError
 from briefkit.figures import theme
 from briefkit.figures.parts import figure_columns
@@ -140,15 +140,6 @@ class CrewPage:
     def running(self) -> str:
         """The line every printed page carries."""
         return " | ".join(part for part in (self.mark, f"{self.number} {self.revision}", self.expires) if part)
-
-
-def template_folder() -> Path:
-    """The handout's template and style: inside the package in a wheel, beside it in a checkout."""
-    package = Path(__file__).resolve().parents[1]
-    for folder in (package / "templates" / "handout", package.parent / "templates" / "handout"):
-        if folder.is_dir():
-            return folder
-    raise BuildError("the handout template is missing from this installation; install briefkit again")
 
 
 def render(page: CrewPage, analysis: tuple[str, ...]) -> str:

@@ -22,7 +22,7 @@ from typing import Any, Final
 from briefkit.aircraft.operation import OPERATION_FILE
 from briefkit.aircraft.section_table import section_file
 from briefkit.brief.identity import BRIEF_FILE, NOTEBOOK, Identity, Signature
-from briefkit.brief.pages import template_folder
+from briefkit.brief.templates import template_folder
 from briefkit.errors import BuildError
 
 _SHOWN: Final = 16

@@ -29,7 +29,7 @@ def write_page(path: Path, text: str | bytes) -> int:
             with contextlib.suppress(OSError):
                 beside.unlink(missing_ok=True)
             raise
-        _flush_folder(path.parent)
+        flush_folder(path.parent)
     except OSError as error:
         raise BuildError(f"{path}: cannot be written ({error.strerror}); what was there is as it was") from None
     return len(content)
@@ -53,7 +53,8 @@ def _write_through(file: Path, content: bytes) -> None:
     file.chmod(0o644)  # whatever the umask: crews must be able to read it
 
 
-def _flush_folder(folder: Path) -> None:
+def flush_folder(folder: Path) -> None:
+    """Have the folder's own list of files on the disk, so that a file put in it stays after a failure of power."""
     if os.name == "nt":  # a folder cannot be opened there, and the replacement is already durable
         return
     handle = os.open(folder, os.O_RDONLY)

@@ -22,6 +22,7 @@ from pathlib import Path
 from typing import Any, Final
 
 from briefkit.brief.identity import operator_folder
+from briefkit.brief.write import flush_folder
 from briefkit.errors import BriefkitError
 from briefkit.session.deck import Deck
 from briefkit.session.privacy import refuse_personal
@@ -150,7 +151,7 @@ class SessionLog:
             finally:
                 os.close(handle)
             if not self._size:
-                _flush_folder(self.path.parent)
+                flush_folder(self.path.parent)
         except OSError as error:
             raise RecordError(f"{self.path}: the step was not recorded ({error.strerror})") from None
         self._last, self._size = _digest(line), self._size + len(line) + 1
@@ -279,13 +280,3 @@ def _write_all(handle: int, content: bytes) -> None:
 
 def _digest(line: bytes) -> str:
     return hashlib.sha256(line).hexdigest()[:16]
-
-
-def _flush_folder(folder: Path) -> None:
-    if os.name == "nt":  # a folder cannot be opened there
-        return
-    handle = os.open(folder, os.O_RDONLY)
-    try:
-        os.fsync(handle)
-    finally:
-        os.close(handle)

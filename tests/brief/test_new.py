@@ -16,7 +16,8 @@ from briefkit.aircraft.operation import load_operation
 from briefkit.brief.check import Level, findings, stands_against
 from briefkit.brief.crew_page import crew_page
 from briefkit.brief.identity import Brief, load_brief
-from briefkit.brief.new import QUESTIONS, Answers, new, starter_folder
+from briefkit.brief.new import QUESTIONS, Answers, new
+from briefkit.brief.templates import template_folder
 from briefkit.envelope.reductions import RowKind, reductions
 from briefkit.errors import FaultyFile, ReadingError
 from briefkit.reading.document import Document
@@ -203,4 +204,4 @@ def test_a_teetering_hub_has_two_blades() -> None:
 
 
 def test_the_starters_are_found() -> None:
-    assert (starter_folder() / "brief.ipynb").is_file()
+    assert (template_folder("starters") / "brief.ipynb").is_file()

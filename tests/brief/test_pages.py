@@ -8,7 +8,7 @@ import warnings
 import html5lib
 import pytest
 
-from briefkit.brief import pages
+from briefkit.brief import templates
 from briefkit.brief.harden import harden
 from briefkit.brief.pages import CrewPage, Grid, Ink, Section, css_string, render, set_cell, set_text
 from briefkit.errors import BuildError
@@ -99,13 +99,13 @@ def test_a_short_row_is_refused():
 
 
 def test_the_template_is_found_in_a_wheel_and_beside_the_package_in_a_checkout(tmp_path, monkeypatch):
-    module = tmp_path / "briefkit" / "brief" / "pages.py"
-    monkeypatch.setattr(pages, "__file__", str(module))
+    module = tmp_path / "briefkit" / "brief" / "templates.py"
+    monkeypatch.setattr(templates, "__file__", str(module))
     with pytest.raises(BuildError, match="template is missing from this installation"):
-        pages.template_folder()
+        templates.template_folder()
     beside = tmp_path / "templates" / "handout"
     beside.mkdir(parents=True)
-    assert pages.template_folder() == beside
+    assert templates.template_folder() == beside
     inside = tmp_path / "briefkit" / "templates" / "handout"
     inside.mkdir(parents=True)
-    assert pages.template_folder() == inside
+    assert templates.template_folder() == inside

@@ -14,7 +14,7 @@ from xml.etree import ElementTree
 import numpy as np
 import pytest
 
-from briefkit.brief.pages import template_folder
+from briefkit.brief.templates import template_folder
 from briefkit.figures import theme
 from briefkit.figures.disc import DiscFigure, levels_for
 from briefkit.figures.parts import Drawing
