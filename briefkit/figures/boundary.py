@@ -34,6 +34,7 @@ class BoundaryFigure:
         area = self._area = canvas.plane((0.0, 1.0, 0.0, 1.0), theme.WIDTH, _HEIGHT, _ROOM)
         self._words = (x_words, speed_words)
         self._shown: tuple[Curves, tuple[float, ...]] | None = None
+        self._bounds: tuple[object, ...] = ()
         self._band = [canvas.patch(area, theme.BAND, _PALE), canvas.patch(area, theme.BAND)]
         self._middle = Curve(area, theme.GREY, theme.THIN, "dotted")
         self._manual = Curve(area, theme.INK, theme.HEAVY)
@@ -75,7 +76,10 @@ class BoundaryFigure:
             raise ValueError("the manual's VNE has no value anywhere on this figure")
         limits = limits_of(lines, here, self._area.height)
         if self._shown is None or self._shown[0] is not curves or self._shown[1] != limits:
-            self._set_limits(limits, curves)
+            bounds = limits, curves.foot, curves.ceiling, curves.limited
+            if self._bounds != bounds:
+                self._set_limits(limits, curves)
+                self._bounds = bounds
             grown = self._draw_band(lines)
             grown |= self._manual.update(lines.x, lines.manual)
             for curve, (name, speeds) in zip(self._turns, lines.turns, strict=True):

@@ -7,7 +7,7 @@ from dataclasses import dataclass
 
 import bqplot
 import numpy as np
-from numpy.typing import ArrayLike
+from numpy.typing import ArrayLike, NDArray
 
 from briefkit.figures import canvas, theme
 from briefkit.figures.canvas import Plane, put, write
@@ -22,9 +22,21 @@ class Curve:
     def __init__(self, area: Plane, colour: str, width: float = theme.LINE, dash: str = "solid") -> None:
         self._area, self._colour, self._width, self._dash = area, colour, width, dash
         self.marks = [canvas.lines(area, colour, width, dash)]
+        self._sent: tuple[NDArray[np.float64], NDArray[np.float64], str | None] | None = None
 
     def update(self, x: ArrayLike, y: ArrayLike, dash: str | None = None) -> bool:
-        """New data; True if a mark had to be added (the figure then needs its list of marks again)."""
+        """New data; True if a mark had to be added (the figure then needs its list of marks again).
+
+        The same data as before are not sent again.
+        """
+        new = np.array(x, dtype=float), np.array(y, dtype=float), dash
+        old, self._sent = self._sent, new
+        if (
+            old is not None
+            and old[2] == dash
+            and all(np.array_equal(one, other, equal_nan=True) for one, other in zip(old[:2], new[:2], strict=True))
+        ):
+            return False
         runs = canvas.finite_runs(x, y)
         missing = len(runs) - len(self.marks)
         self.marks += [canvas.lines(self._area, self._colour, self._width, self._dash) for _ in range(missing)]
