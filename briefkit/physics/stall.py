@@ -72,7 +72,7 @@ def stall_measures(
     # A ring's area goes with its mean radius; every sector is alike.
     share = np.broadcast_to((radii * np.diff(edges))[:, None], over.shape[1:])
     share = share / share.sum()
-    flat = np.where(np.isnan(over), -np.inf, over).reshape(over.shape[0], -1)
+    flat = np.where(np.isnan(over), -np.inf, over).reshape(over.shape[0], radii.size * azimuths.size)
     worst = flat.argmax(axis=1)
     ring, sector = np.unravel_index(worst, over.shape[1:])
     gone = np.where(flight.solved, 1.0, np.nan)
