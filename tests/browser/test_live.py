@@ -58,7 +58,7 @@ CURVES = "_ => [...document.querySelectorAll('.bqplot .curve .line')].map(line =
 def seen(lab: Any) -> Iterator[Any]:
     seen = lab.open(CELLS)
     seen.page.wait_for_function("document.querySelectorAll('.bqplot').length === 7", timeout=90_000)
-    seen.page.wait_for_selector(".briefkit .word", timeout=60_000)
+    cell(seen.page, ODD).locator(".noUi-handle").first.wait_for(timeout=60_000)
     yield seen
     seen.page.context.close()
     lab.end_kernels()
