@@ -137,7 +137,7 @@ def test_no_words_of_the_boundary_overlap_or_leave_the_figure(request, name):
         "three_f": ("2,200 kg", "10 degC"),
         "four_h": ("2,890 kg", "-5 degC"),
     }[name]
-    for bank in ("0 deg", "30 deg"):
+    for bank in ("0 deg", "30 deg") if name == "two_t" else ("30 deg",):
         condition = Condition(mass=mass, pressure_altitude="2,300 m", oat=oat, ias="85 kt", bank=bank)
         for against in ("pressure altitude", "mass", "rotor speed", "bank", "gust"):
             exhibit = StallBoundary(aircraft, condition, against=against)
