@@ -28,7 +28,8 @@ Reasons = NDArray[np.object_]
 CHART_POINTS: Final = 61
 BAND_POINTS: Final = 31
 _STEEPEST: Final = math.radians(60.0)
-_STRONGEST: Final = 10.0  # m/s of rising air
+_STRONGEST: Final = {"ft": 2000.0 * units.FOOT / 60.0, "m": 10.0}  # m/s of rising air: round in the type's own unit
+_STEP: Final = 1e-6  # rad past a bank is past it
 _SAME, _SEEN = 0.05, 0.5  # in the type's unit: speeds closer than the first are one, those within the second look it
 
 
@@ -116,7 +117,8 @@ def boundary(
     """The curves around one condition, over every permitted value of `against`.
 
     "pressure altitude", "mass", "rotor speed" within the power-on range, "bank" to the manual's limit or 60 degrees,
-    "gust" to 10 m/s of rising air.
+    "gust" to 10 m/s or 2,000 ft/min of rising air. Where the manual has a speed of its own for a turn no line lies
+    above it, and against the bank the manual's line steps down to it.
 
     Raises `ValueError` for another `against`; `OutsideLimits` where the condition leaves nothing to draw.
     """
@@ -179,12 +181,31 @@ def _curves(
             load[line * count : (line + 1) * count] = 1.0 / math.cos(math.radians(bank))
     answers = equivalent_vnes(aircraft, replace(wide, load_factor=load, rotor_speed=rotor, climb=climb), upper=False)
     vne = answers.vne[:count]
-    curves = []
+    curves, level = [], vne
+    if over is Against.BANK:
+        vne = own_in_a_turn(aircraft, vne, np.arccos(1.0 / many.load_factor))
     for line, bank in enumerate(banks, start=1):
         own = slice(line * count, (line + 1) * count)
-        ias = answers.ias[own]
+        turning = np.full(count, math.radians(bank)) if bank is not None else np.arccos(1.0 / many.load_factor)
+        ias = np.minimum(answers.ias[own], own_in_a_turn(aircraft, level, turning))
         curves.append(EquivalentCurve(bank, ias, answers.reason[own], _parts(x, vne, ias), _ends(x, ias)))
     return vne, tuple(curves)
+
+
+def own_in_a_turn(aircraft: Aircraft, vne: Floats, bank: Floats) -> Floats:
+    """VNE in the type's unit, or what the manual itself permits in a turn of `bank` [rad] where it says so; (n,)."""
+    unit, permitted = aircraft.units.speed, vne
+    for own in aircraft.speeds:
+        if own.applies != "bank":
+            continue
+        turning = bank > (_STEP if own.above_bank is None else own.above_bank + _STEP)
+        if own.less_than_vne is not None:
+            lower = vne - float(units.from_si(own.less_than_vne, "speed", unit))
+            permitted = np.where(turning, np.minimum(permitted, lower), permitted)
+        if own.speed is not None:
+            said = float(units.from_si(own.speed.value, "speed", unit))
+            permitted = np.where(turning, np.minimum(permitted, said), permitted)
+    return permitted
 
 
 def _parts(x: Floats, vne: Floats, ias: Floats) -> tuple[float, ...]:
@@ -262,9 +283,13 @@ def _permitted(aircraft: Aircraft, condition: Condition, over: Against, count: i
         return np.linspace(slow, fast, count)
     if over is Against.BANK:
         limit = aircraft.limits.max_bank
-        return np.linspace(0.0, _STEEPEST if limit is None else min(limit.value, _STEEPEST), count)
+        banks = np.linspace(0.0, _STEEPEST if limit is None else min(limit.value, _STEEPEST), count)
+        # The manual's own speed in a turn begins at a bank: a step, not a slope.
+        steps = [own.above_bank for own in aircraft.speeds if own.applies == "bank" and own.above_bank is not None]
+        beyond = [step + 2.0 * _STEP for step in steps if step + 2.0 * _STEP < banks[-1]]
+        return np.union1d(banks, [bank for step in beyond for bank in (step - 2.0 * _STEP, step)])
     if over is Against.GUST:
-        return np.linspace(0.0, _STRONGEST, count)
+        return np.linspace(0.0, _STRONGEST[aircraft.units.height], count)
     top = float(region.top_of(aircraft, condition.oat))
     if not math.isfinite(top):
         low, high = (units.show(t, "temperature", "°C") for t in region.temperature_range(aircraft))

@@ -140,6 +140,14 @@ def covered_load(aircraft: Aircraft, condition: Condition) -> str:
     return f"The manual's chart covers a load factor of {load:.2f} here; no speed is given for a gust."
 
 
+def own_turn(aircraft: Aircraft, speed: float) -> str:
+    """The manual's own speed in a turn, where it is the lower one."""
+    listed = "; ".join(f"{own.text} ({own.source})" for own in _own(aircraft, "bank"))
+    return (
+        f"the manual's own holds, {units.show_number(units.round_down(speed))} {aircraft.units.speed_label()}: {listed}"
+    )
+
+
 def notes(aircraft: Aircraft, curves: Boundary) -> tuple[str, ...]:
     """What stands under the figure; the manual's own words for a turn or rough air come first."""
     asked = {Against.BANK: "bank", Against.GUST: "turbulence"}.get(curves.against, "")

@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 
 from briefkit import units
 from briefkit.aircraft.model import Aircraft
-from briefkit.envelope.boundary import Against, Boundary, boundary, with_band
+from briefkit.envelope.boundary import Against, Boundary, boundary, own_in_a_turn, with_band
 from briefkit.envelope.condition import Condition
 from briefkit.errors import Reason, Refusal, SetBy
 from briefkit.figures.boundary import BoundaryFigure
@@ -154,7 +154,10 @@ class StallBoundary(Exhibit):
 
     def _answer(self, answers: Answers, here: Here) -> tuple[Here, str]:
         aircraft, condition = answers.aircraft, answers.condition
-        vne = f"The manual's VNE here is {answers.level.text} ({aircraft.vne.source})."
+        vne, label = (
+            f"The manual's VNE here is {answers.level.text} ({aircraft.vne.source}).",
+            aircraft.units.speed_label(),
+        )
         turn = words.turn(condition)
         if condition.level_at_full_rotor_speed:
             return here, f"{vne} Level at 100 % rotor speed that is the answer."
@@ -162,6 +165,11 @@ class StallBoundary(Exhibit):
             answer = answers.equivalent
         except Refusal as refusal:
             return here, f"{vne} With {turn} there is no figure: {words.why(refusal)}."
+        own = float(own_in_a_turn(aircraft, np.array([answers.level.ias]), np.array([condition.bank]))[0])
+        if own < answer.ias:
+            said = boundary_words.own_turn(aircraft, own)
+            here = replace(here, answer=own, answer_words=f"{turn}: {units.show_number(units.round_down(own))} {label}")
+            return here, f"{vne} With {turn} {said}, lower than the equivalent level flight gives, {answer.text}."
         here = replace(here, answer=answer.ias, answer_words=f"{turn}: {answer.text}")
         if answer.set_by is SetBy.MANUAL_VNE:
             return here, f"{vne} With {turn} nothing is taken off: VNE still limits."
@@ -181,7 +189,8 @@ class StallBoundary(Exhibit):
         unit = units.SHOWN.get(curves.x_unit, curves.x_unit)
         header = (f"{curves.x_label}, {unit}", f"VNE, {label}", *names, "Onset band", "First signs, 12°")
         rows = []
-        for index in np.linspace(0, curves.x.size - 1, _TABLE_ROWS).round().astype(int).tolist():
+        even = np.linspace(curves.x[0], curves.x[-1], _TABLE_ROWS)
+        for index in np.abs(curves.x[None, :] - even[:, None]).argmin(axis=1).tolist():
             cells = [_floored(curves.vne[index], "off the chart")]
             cells += [_floored(c.ias[index], _SHORT.get(c.reason[index], str(c.reason[index]))) for c in turns]
             x = float(curves.x[index])

@@ -117,7 +117,7 @@ def test_the_boundary_against_mass(fixed):
 @pytest.mark.slow
 @pytest.mark.parametrize(
     ("against", "first", "last", "unit"),
-    [("rotor speed", "97", "102", "%"), ("bank", "0", "60", "°"), ("gust", "0", "1,968.5", "ft/min")],
+    [("rotor speed", "97", "102", "%"), ("bank", "0", "60", "°"), ("gust", "0", "2,000", "ft/min")],
 )
 def test_the_boundary_against_the_other_quantities(fixed, start, against, first, last, unit):
     parts = fixed(StallBoundary, start.with_(bank="20 deg"), against=against).still_parts()
@@ -181,6 +181,26 @@ def test_the_boundary_says_where_its_lines_part_and_end_and_what_is_not_resolved
     drawing = fixed(StallBoundary, start, against="gust").still_parts()
     assert "covers a load factor of 1." in drawing.caption
     assert "no speed is given for a gust" in drawing.caption
+
+
+@pytest.mark.slow  # another aircraft, so another onset table
+def test_the_manuals_own_speed_in_a_turn_is_above_no_line(four_h):
+    """The invented 4H: VNE less 10 above 30 degrees. Neither a line nor the answer lies above it (G1, page.md 3)."""
+    turn = Condition(mass="2,890 kg", pressure_altitude="7,000 ft", oat="-5 degC", ias="90 kt", bank="33 deg")
+    exhibit = StallBoundary(four_h, turn, against="bank")
+    drawn = exhibit._kept[1]
+    past = drawn.x > 30.00005
+    assert drawn.vne[past].max() == pytest.approx(drawn.vne[0] - 10.0, abs=0.01)
+    assert drawn.vne[~past].min() == drawn.vne[0]
+    known = np.isfinite(drawn.equivalent[0].ias)
+    assert (drawn.equivalent[0].ias <= drawn.vne)[known].all()
+    caption = exhibit.still_parts().caption
+    assert "With 33° bank the manual's own holds, 106 KIAS: VNE less 10 above 30 degrees" in caption
+    exhibit.close()
+    exhibit = StallBoundary(four_h, turn, banks=(30.0, 33.0))
+    steep = exhibit._kept[1].equivalent
+    exhibit.close()
+    assert (steep[1].ias <= steep[0].ias + 1e-9)[np.isfinite(steep[1].ias)].all()
 
 
 @pytest.mark.slow  # another aircraft, so another onset table
