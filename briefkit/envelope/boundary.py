@@ -57,8 +57,8 @@ class EquivalentCurve:
     """The equivalent VNE at one bank (n,), in the type's unit; NaN with a reason where refused.
 
     `bank_deg` is None where the boundary is drawn against the bank itself. `parts` are the places along x where it
-    leaves the manual's VNE or comes back to it, `ends` those where it has no answer any more though x goes on: the
-    last or first place that has one.
+    leaves the manual's VNE as x gets harder on the rotor, `ends` those where it has no answer any more though x goes
+    on: the last or first place that has one.
     """
 
     bank_deg: float | None
@@ -188,7 +188,8 @@ def _curves(
         own = slice(line * count, (line + 1) * count)
         turning = np.full(count, math.radians(bank)) if bank is not None else np.arccos(1.0 / many.load_factor)
         ias = np.minimum(answers.ias[own], own_in_a_turn(aircraft, level, turning))
-        curves.append(EquivalentCurve(bank, ias, answers.reason[own], _parts(x, vne, ias), _ends(x, ias)))
+        parts = _parts(x, vne, ias, slower=over is Against.ROTOR_SPEED)
+        curves.append(EquivalentCurve(bank, ias, answers.reason[own], parts, _ends(x, ias)))
     return vne, tuple(curves)
 
 
@@ -208,9 +209,9 @@ def own_in_a_turn(aircraft: Aircraft, vne: Floats, bank: Floats) -> Floats:
     return permitted
 
 
-def _parts(x: Floats, vne: Floats, ias: Floats) -> tuple[float, ...]:
-    """Where a curve leaves VNE or meets it again: the straight line through its next two points, carried back to VNE,
-    within the step it lies in.
+def _parts(x: Floats, vne: Floats, ias: Floats, *, slower: bool) -> tuple[float, ...]:
+    """Where a curve leaves VNE for lower speeds, going up x (down x if `slower`): the straight line through its next
+    two points, carried back to VNE, within the step it lies in.
     """
     below = vne - ias
     with np.errstate(invalid="ignore"):
@@ -222,6 +223,8 @@ def _parts(x: Floats, vne: Floats, ias: Floats) -> tuple[float, ...]:
     known = np.isfinite(below)
     found = []
     for i in np.flatnonzero((lower[:-1] != lower[1:]) & known[:-1] & known[1:]):
+        if bool(lower[i + 1]) is slower:  # it comes back to VNE here
+            continue
         step = 1 if lower[i + 1] else -1
         first = i + 1 if lower[i + 1] else i  # the first point under VNE, and the one behind it
         behind = first + step
