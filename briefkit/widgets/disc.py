@@ -27,7 +27,7 @@ Floats = NDArray[np.float64]
 
 # Fixed steps for a type up to this multiple of its tip speed, so that a colour means the same at every condition.
 _COVERED: Final = 1.35
-_AZIMUTHS: Final[Floats] = np.asarray(2.0 * np.pi / 72 * np.arange(72), dtype=np.float64)
+_AZIMUTHS: Final[Floats] = np.asarray(2.0 * np.pi / 24 * np.arange(24), dtype=np.float64)
 # The four rows of the table: azimuths from where the wind leaves the disc.
 _QUARTERS: Final = np.array([0.5, 1.0, 1.5, 2.0]) * np.pi
 _IN_FORWARD_FLIGHT: Final = ("advancing side", "nose", "retreating side", "tail")
@@ -93,15 +93,15 @@ class DiscMap(Exhibit):
 
     def _draw(self, answers: Answers) -> StillParts:
         solution, wind = self._solution(answers), self._wind
-        turn = wind.turn(self._rotation)
-        if self._quantity == SPEED:
-            field = self._speed_field(solution, answers.aircraft.units.speed)
-            steps = self._levels
-        else:
-            field = field_of(self._quantity, solution, self._root, turn)
-            steps = LEVELS[self._quantity]
         speed = solution.trim.elements(self._radii, _AZIMUTHS).speed[0]
         azimuths, radii = reversed_region(self._radii, _AZIMUTHS, speed, self._root)
+        if self._quantity == SPEED:
+            field, along = self._speed_field(solution, answers.aircraft.units.speed, speed, radii)
+            steps = self._levels
+        else:
+            field = field_of(self._quantity, solution, self._root, wind.turn(self._rotation))
+            along = np.stack([field.along(psi) for psi in self._places(solution).tolist()], axis=1)
+            steps = LEVELS[self._quantity]
         self._disc.update(
             field.radii, field.azimuths, field.values, steps, reversed_azimuths=azimuths, reversed_radii=radii,
             wind_from_deg=None if solution.tas == 0.0 else wind.bearing_deg,
@@ -111,7 +111,7 @@ class DiscMap(Exhibit):
         return StillParts(
             title=field.title, caption=caption, alt=alt, inputs=self._inputs(answers, solution),
             drawings=(Drawing(self._disc.figure, field.title, alt),),
-            table=self._table(field, solution), notes=(*field.notes, *self._turned_notes()),
+            table=self._table(field, along, solution), notes=(*field.notes, *self._turned_notes()),
         )  # fmt: skip
 
     def _solution(self, answers: Answers) -> Solution:
@@ -164,13 +164,12 @@ class DiscMap(Exhibit):
         turn = self._wind.turn(self._rotation) if solution.tas else 0.0
         return np.asarray((_QUARTERS + turn) % (2.0 * np.pi))
 
-    def _speed_field(self, solution: Solution, unit: str) -> Field:
-        """The speed normal to the blade, and the reversed flow in words."""
-        elements = solution.trim.elements(self._radii, _AZIMUTHS)
-        speed = np.asarray(units.from_si(elements.speed[0], "speed", unit), dtype=np.float64)
-        ends = solution.trim.elements(np.array([self._root, 1.0]), self._places(solution)).speed[0]
-        tips = [units.show_number(float(units.from_si(end, "speed", unit))) for end in ends[1]]
-        _, reach = reversed_region(self._radii, _AZIMUTHS, speed, self._root)
+    def _speed_field(self, solution: Solution, unit: str, speed: Floats, reach: Floats) -> tuple[Field, Floats]:
+        """The speed normal to the blade, from what was found of it [m/s] and of the reversed flow's reach, in words;
+        and the same along the four blades of the table, (radii, 4)."""
+        exact = solution.trim.elements(self._radii, self._places(solution)).speed[0]
+        along = np.asarray(units.from_si(exact, "speed", unit), dtype=np.float64)
+        tips = [units.show_number(tip) for tip in along[-1].tolist()]
         behind = "Nowhere outside the root does the air come from behind the blade."
         if reach.size:
             behind = (
@@ -186,21 +185,23 @@ class DiscMap(Exhibit):
             f"advance ratio {units.show_number(solution.advance_ratio, 2)}, "
             f"advancing-tip Mach number {units.show_number(solution.advancing_mach, 2)}."
         )
-        return Field(
-            self._radii, _AZIMUTHS, speed, "Speed at the blades", caption, f"Speed normal to the blade, {unit} true",
+        shown = np.asarray(units.from_si(speed, "speed", unit), dtype=np.float64)
+        field = Field(
+            self._radii, _AZIMUTHS, shown, "Speed at the blades", caption, f"Speed normal to the blade, {unit} true",
             (note,), 0, f" {unit}",
         )  # fmt: skip
+        return field, along
 
-    def _table(self, field: Field, solution: Solution) -> Table:
+    def _table(self, field: Field, along: Floats, solution: Solution) -> Table:
         shares = np.minimum((0.5, 0.75, 1.0), field.radii[-1])
         header = ("Blade over the", *(f"{units.show_number(100.0 * share)} % radius" for share in shares.tolist()))
         rows = []
         names = _TURNED if self._wind.bearing_deg else _IN_FORWARD_FLIGHT
         if solution.tas == 0.0:
             names = _NO_SIDE
-        for name, psi in zip(names, self._places(solution).tolist(), strict=True):
+        for name, psi, values in zip(names, self._places(solution).tolist(), along.T, strict=True):
             if names is _TURNED:
                 name = f"{name}, {units.show_number(math.degrees(psi))}°"
-            along = np.interp(shares, field.radii, field.along(psi))
-            rows.append((name, *(field.shown(value) for value in along.tolist())))
+            at = np.interp(shares, field.radii, values)
+            rows.append((name, *(field.shown(value) for value in at.tolist())))
         return Table(header, tuple(rows), field.table_caption)
