@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 
 from briefkit import units
@@ -84,5 +86,7 @@ def rough_air_findings(place: str, brief: Brief, table: ReductionTable) -> list[
 
 
 def _one_sheet(place: str, brief: Brief, table: ReductionTable) -> list[Finding]:
-    said = fit.complaint(crew_page.first_sheet(brief, table))
+    area = brief.operation.work_areas[brief.identity.work_area]
+    second = recognition.recognition(brief.aircraft, brief.operation.entry_for(brief.aircraft), area)
+    said = fit.complaint(replace(crew_page.first_sheet(brief, table), recognition=second))
     return [Finding(Level.NOTE, place, said)] if said else []

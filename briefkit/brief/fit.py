@@ -1,4 +1,4 @@
-"""Whether the crew's sheet comes out as one A5 sheet, without a browser to ask.
+"""Whether the crew's two sheets come out as one A5 sheet each, without a browser to ask.
 
 An estimate from the widths of Helvetica, which the page's fonts share, and the measures of handout.css in points. A
 second sheet could be left behind in the crew room, so the author hears of it at the build; a browser test holds the
@@ -23,6 +23,12 @@ _HEAD_CELL: Final = 11.0 * 1.22 + 3.0 + 0.75
 _COLUMN_GAP: Final = 13.2
 _BESIDE: Final = 132.0  # notes narrower than this go below the table
 _BLOCK_GAP: Final = (4.0, 14.0)
+# Sheet 2: a sentence, a heading, a line of its table, what a row has beside its lines, and the columns' widths.
+_LINE_2: Final = 11.0 * 1.16
+_HEADING_2: Final = 11.5 * 1.3
+_CELL_LINE_2: Final = 11.0 * 1.12
+_CELL_2: Final = 2.2 + 0.75
+_COLUMNS_2: Final = (0.17 * WIDTH, 0.23 * WIDTH - 5.0, 0.27 * WIDTH - 5.0, 0.33 * WIDTH - 5.0)
 
 # Adobe Core 14 AFM files (1999), Helvetica and Helvetica-Bold: thousandths of the type size; the rest are 556.
 _REGULAR: Final = {
@@ -38,14 +44,18 @@ _BOLD: Final = {
 
 
 def complaint(page: CrewPage) -> str:
-    """A sentence for the author where sheet 1 would not be one A5 sheet; else empty."""
-    over = height(page) - HEIGHT
-    if over <= 0.0:
-        return ""
-    lines = math.ceil(over / _LINE)
-    return (
-        f"sheet 1 is about {lines} {'line' if lines == 1 else 'lines'} longer than one A5 sheet: fewer masses or words"
+    """A sentence for the author where sheet 1 or sheet 2 would not be one A5 sheet; else empty."""
+    sheets = (("sheet 1", height(page), "fewer masses or words"), ("sheet 2", recognition_height(page), "fewer words"))
+    return "; ".join(
+        f"{name} is about {_lines_over(tall)} longer than one A5 sheet: {remedy}"
+        for name, tall, remedy in sheets
+        if tall > HEIGHT
     )
+
+
+def _lines_over(tall: float) -> str:
+    lines = math.ceil((tall - HEIGHT) / _LINE)
+    return f"{lines} {'line' if lines == 1 else 'lines'}"
 
 
 def height(page: CrewPage) -> float:
@@ -54,6 +64,28 @@ def height(page: CrewPage) -> float:
     head = _lines(page.heading, 14.0, WIDTH - beside, bold=True) * 14.0 * 1.2 + 1.0
     head += sum(_lines(line, 11.0) for line in page.under) * _LINE
     return head + sum(5.0 + _section(part) for part in page.front)
+
+
+def recognition_height(page: CrewPage) -> float:
+    """The height sheet 2 takes on A5, in points; good to about a line; 0 where there is none."""
+    return sum(4.0 + _recognition(part) for part in page.recognition) - (4.0 if page.recognition else 0.0)
+
+
+def _recognition(part: Section) -> float:
+    if part.run_in:
+        first, *more = (*part.before, *part.after)
+        used = text_width(f"{part.heading}:", 11.5, bold=True)
+        lines = _lines(first, 11.0, used=used) + sum(_lines(text, 11.0) for text in more)
+        return lines * _LINE_2 + len(more) + _HEADING_2 - _LINE_2
+    rows = part.grid.rows if part.grid is not None else ()
+    table = sum(
+        max(_lines(cell, 11.0, wide) for cell, wide in zip(row, _COLUMNS_2, strict=False)) * _CELL_LINE_2 + _CELL_2
+        for row in rows
+    )
+    table += _CELL_LINE_2 + _CELL_2 + 2.0 * 5.4 if rows else 0.0
+    points = sum(_lines(point, 11.0, WIDTH - 9.0) for point in part.points) * _LINE_2 + (2.0 if part.points else 0.0)
+    sentences = sum(1.0 + _lines(text, 11.0) * _LINE_2 for text in (*part.before, *part.after))
+    return _HEADING_2 + table + points + sentences
 
 
 def text_width(text: str, size: float, *, bold: bool = False) -> float:

@@ -41,6 +41,22 @@ def test_every_sentence_costs_a_line_and_too_many_are_told():
     assert "longer than one A5 sheet: fewer masses or words" in fit.complaint(page(most + 3))
 
 
+def test_sheet_2_is_told_of_too():
+    """A row of the table is as tall as its longest cell; a point has a line or more; both at 11 pt."""
+    grid = Grid(("a", "b", "c", "d"), (("x", "x", "x", "x"),), "Which", numbers=False)
+    one = Section("Which", grid=grid)
+    row = ("x", "x", "x", "high speed, heavy, high and hot in a turn")  # 19 em: two lines of the last column
+    more = replace(one, grid=replace(grid, rows=(*grid.rows, row)))
+    cautions = Section("Cautions", points=("Short.",))
+    base, taller = (replace(page(1), recognition=(part, cautions)) for part in (one, more))
+    added = fit.recognition_height(taller) - fit.recognition_height(base)
+    assert added == pytest.approx(2 * 11.0 * 1.12 + 2.2 + 0.75)
+    assert fit.complaint(base) == ""
+    long = replace(base, recognition=(one, Section("Cautions", points=("Short.",) * 40)))
+    assert fit.complaint(long).startswith("sheet 2 is about ")
+    assert fit.recognition_height(page(1)) == 0.0
+
+
 def test_a_long_sentence_is_broken_where_a_word_would_not_fit():
     narrow = replace(page(1), under=("i" * 400,))  # one word cannot be broken: one line
     assert fit.height(narrow) == pytest.approx(fit.height(page(1)))

@@ -305,8 +305,10 @@ def test_the_author_hears_when_sheet_1_is_more_than_one_sheet(chromium, exported
     sheets = pypdf.PdfReader(io.BytesIO(page.pdf(format="A5"))).pages
     page.emulate_media(media="print")
     measured = 0.75 * page.evaluate("document.querySelector('.front').getBoundingClientRect().height")
+    second = 0.75 * page.evaluate("document.querySelector('.recognition').getBoundingClientRect().height")
     context.close()
     assert -4.0 <= fit.height(crew) - measured <= 20.0
+    assert -4.0 <= fit.recognition_height(crew) - second <= 20.0
     one_sheet = "Which one is it?" in sheets[1].extract_text()
     assert one_sheet == (measured <= fit.HEIGHT)
     if not one_sheet:
