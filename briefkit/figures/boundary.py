@@ -35,7 +35,8 @@ class BoundaryFigure:
         self._words = (x_words, speed_words)
         self._shown: tuple[Curves, tuple[float, ...]] | None = None
         self._bounds: tuple[object, ...] = ()
-        self._band = [canvas.patch(area, theme.BAND, _PALE), canvas.patch(area, theme.BAND)]
+        self._pale = [canvas.patch(area, theme.BAND, _PALE)]
+        self._full = [canvas.patch(area, theme.BAND)]
         self._middle = Curve(area, theme.GREY, theme.THIN, "dotted")
         self._manual = Curve(area, theme.INK, theme.HEAVY)
         self._turns = [Curve(area, theme.COMPUTED, theme.LINE, theme.DASHES[index]) for index in range(turns)]
@@ -93,7 +94,7 @@ class BoundaryFigure:
         self._name_places(lines, curves, here)
 
     def _in_order(self) -> list[bqplot.Mark]:
-        marks = [*self._band, self._limits, self._here_line, *self._middle.marks]
+        marks = [*self._pale, *self._full, self._limits, self._here_line, *self._middle.marks]
         for turn in self._turns:
             marks += turn.marks
         return [
@@ -122,19 +123,19 @@ class BoundaryFigure:
 
     def _draw_band(self, lines: Lines) -> bool:
         """The band in two greys: as it is under VNE, pale above, where it is no speed to fly."""
-        pale: list[tuple[Floats, Floats]] = []
-        full: list[tuple[Floats, Floats]] = []
-        for across, lower, upper, vne in lines.stretches(self._area.y.max):
-            pale.append(_polygon(across, np.maximum(lower, np.minimum(vne, upper)), upper))
-            full.append(_polygon(across, lower, np.maximum(lower, np.minimum(vne, upper))))
         grown = False
-        shown = [*pale, *full]
-        while len(self._band) < len(shown):
-            self._band.append(canvas.patch(self._area, theme.BAND))
-            grown = True
-        for index, mark in enumerate(self._band):
-            across, up = shown[index] if index < len(shown) else (np.empty(0), np.empty(0))
-            put(mark, across, up, fill_opacities=[_PALE if index < len(pale) else 1.0])
+        stretches = lines.stretches(self._area.y.max)
+        for above, patches, opacity in ((True, self._pale, _PALE), (False, self._full, 1.0)):
+            while len(patches) < len(stretches):
+                patches.append(canvas.patch(self._area, theme.BAND, opacity))
+                grown = True
+            for index, mark in enumerate(patches):
+                if index >= len(stretches):
+                    put(mark, [], [])
+                    continue
+                across, lower, upper, vne = stretches[index]
+                edge = np.maximum(lower, np.minimum(vne, upper))  # along VNE, within the band
+                put(mark, *(_polygon(across, edge, upper) if above else _polygon(across, lower, edge)))
         return self._middle.update(lines.band_x, lines.central) or grown
 
     def _write_ends(self, lines: Lines) -> None:

@@ -234,7 +234,7 @@ def test_a_band_without_an_upper_end_is_open_and_says_so():
     upper = np.where(X < 5000.0, np.nan, VNE + 25.0)
     made = boundary(curves(onset_upper=upper))
     assert "(open at the top)" in words(made.figure)
-    assert made._band[0].y.max() == made._area.y.max
+    assert made._pale[0].y.max() == made._area.y.max
     without = boundary(curves(onset_lower=NONE, onset_central=NONE, onset_upper=NONE))
     assert "onset band," not in words(without.figure)
 
@@ -274,7 +274,7 @@ def test_an_update_changes_arrays_and_makes_no_new_marks():
 
 def test_the_band_is_pale_above_vne_and_stops_where_the_calibration_does():
     made = boundary(curves(onset_lower=VNE - 5.0, onset_upper=NONE, ceiling=(118.0, "calibrated to 118 KIAS")))
-    pale, full = made._band[0], made._band[1]
+    pale, full = made._pale[0], made._full[0]
     assert pale.fill_opacities[0] < 0.6
     assert full.fill_opacities[0] == 1.0
     assert pale.y.max() == 118.0
