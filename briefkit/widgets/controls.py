@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from typing import Final
 
 import ipywidgets as w
 import numpy as np
@@ -14,6 +15,9 @@ from briefkit.envelope.condition import Condition
 from briefkit.errors import ReadingError
 from briefkit.physics import atmosphere
 from briefkit.widgets.words import Dial, text_of
+
+# The box stands beside it where there is room, else under it.
+SLIDER: Final = {"flex": "1 1 300px", "max_width": "440px", "width": "auto"}
 
 
 class Control(w.HBox):  # type: ignore[misc]  # ipywidgets carries no types
@@ -30,8 +34,8 @@ class Control(w.HBox):  # type: ignore[misc]  # ipywidgets carries no types
         self.low, self.high = low, high
         self.slider = w.FloatSlider(
             value=low, min=low, max=high, step=dial.step, readout=False, disabled=not low < high,
-            description=dial.name, style={"description_width": "170px"},
-            layout={"width": "440px", "min_width": "330px"},
+            description=dial.name, style={"description_width": "160px"},
+            layout=SLIDER,
         )  # fmt: skip
         self.box = named_box(dial.name, "120px")
         self.box.tooltip = f"{dial.name}, {text_of(dial, low, aircraft)} to {text_of(dial, high, aircraft)}"
@@ -65,7 +69,7 @@ class Control(w.HBox):  # type: ignore[misc]  # ipywidgets carries no types
 
 def named_box(name: str, width: str) -> w.Text:
     """A box whose name stands beside it already: a screen reader hears it, nobody sees it twice."""
-    made = w.Text(description=name, continuous_update=False, layout={"width": width})
+    made = w.Text(description=name, continuous_update=False, layout={"width": width, "flex": "0 0 auto"})
     made.add_class("named-box")
     return made
 

@@ -29,6 +29,8 @@ STYLE = (
     f".briefkit .word{{border-left:4px solid {theme.INK};padding-left:8px;font-weight:600}}"
     ".briefkit .named-box{position:relative}.briefkit .named-box .widget-label"
     "{position:absolute;width:1px!important;height:1px;min-width:0!important;overflow:hidden;clip-path:inset(50%)}"
+    f".briefkit .jupyter-button{{color:{theme.INK};background:{theme.PAPER};border:1px solid {theme.GREY};"
+    "box-shadow:none}.briefkit .jupyter-button.mod-active{border-width:3px;font-weight:600}"
     f".briefkit .noUi-handle{{border:1px solid {theme.GREY}}}"
     ".briefkit-old{opacity:.35;filter:grayscale(1)}"
     ".briefkit table{border-collapse:collapse;font-size:14px;line-height:1.45}"

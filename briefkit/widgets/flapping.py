@@ -44,7 +44,9 @@ class Flapping(Exhibit):
         self._from: Answers | None = None
         super().__init__(source, condition)
         if not isinstance(self._source, Fixed):
-            self._hold = w.ToggleButton(value=self._from is not None, layout={"width": "auto"})
+            self._hold = w.ToggleButton(
+                value=self._from is not None, layout={"width": "auto", "align_self": "flex-start"}
+            )
             self._hold.tooltip = "Held as they are trimmed now, while the condition changes"
             self._hold.description = TRIM if self._from else HOLD
             self._hold.observe(guarded(self.mark_old, self._pressed), "value")
@@ -94,9 +96,10 @@ class Flapping(Exhibit):
         )
         rows = [(name, words.angle(_flap(b0, b1c, b1s, turn))) for name, turn in _PLACES]
         stop = _stop_row(aircraft, b0, 0.0)
+        left = stop[0][1] if stop else ""
         table = Table(("Blade over", "Flap angle, up"), (*rows, *stop), "Flap angle of the blade")
         trimmed = "Trimmed, the mast is taken to stand on the disc." if stop else ""
-        return self._parts_of(answers, "Flapping", caption, table, trimmed)
+        return self._parts_of(answers, "Flapping", caption, table, left, trimmed)
 
     # --- held ---
 
@@ -117,15 +120,17 @@ class Flapping(Exhibit):
             (name, words.angle(before.b0_deg), words.angle(_flap(now.b0_deg, now.b1c_deg, now.b1s_deg, turn)))
             for name, turn in _PLACES
         ]
-        stops = zip(_stop_row(aircraft, before.b0_deg, 0.0), _stop_row(aircraft, now.b0_deg, now.tilt_deg), strict=True)
-        rows += [(*one, other[1]) for one, other in stops]
+        stop = _stop_row(aircraft, now.b0_deg, now.tilt_deg)
+        left = stop[0][1] if stop else ""
+        rows += [(*one, left) for one in _stop_row(aircraft, before.b0_deg, 0.0)]
         table = Table(
             ("Blade over", "As it was trimmed", "Controls held"), tuple(rows), "Flap angle of the blade, from the mast"
         )
         settled = "The disc as it settles before the pilot answers: what the aircraft then does is not computed."
-        return self._parts_of(answers, "Flapping, controls held", caption, table, settled)
+        return self._parts_of(answers, "Flapping, controls held", caption, table, left, settled)
 
-    def _parts_of(self, answers: Answers, title: str, caption: str, table: Table, note: str) -> StillParts:
+    def _parts_of(self, answers: Answers, title: str, caption: str, table: Table, left: str, note: str) -> StillParts:
+        """`left` is what is left to the flap stop as the table has it; empty where the file gives no stop."""
         stop, lag = answers.aircraft.rotor.flap_stop, phase_lag_deg(answers.aircraft, answers.condition)
         notes = [
             f"From force to flap the rotor lags {units.show_number(lag)}° (hover, here). "
@@ -133,8 +138,8 @@ class Flapping(Exhibit):
         ]
         if stop is not None:
             notes.append(
-                f"Flap stop: {stop.text.replace(' deg', '°')} ({stop.source}). Less is left than is said here by what "
-                "the centre of gravity takes."
+                f"Flap stop: {stop.text.replace(' deg', '°')} ({stop.source}). Left to it, at most: {left}; less by "
+                "what the centre of gravity takes."
             )
         return StillParts(
             title=title, caption=caption, alt=f"Flap angle round the azimuth and the disc from two sides. {caption}",

@@ -20,8 +20,8 @@ class ByQnh(w.HBox):  # type: ignore[misc]  # ipywidgets carries no types
 
     def __init__(self, aircraft: Aircraft, asked: Callable[[str, str], None], refuse: Callable[[str], None]) -> None:
         self._asked, self._units, self._busy = asked, aircraft.units, False
-        self.elevation = _box("or elevation", EXAMPLES[aircraft.units.height])
-        self.qnh = _box("and QNH", EXAMPLES[aircraft.units.pressure])
+        self.elevation = _box("or elevation", EXAMPLES[aircraft.units.height], 160)
+        self.qnh = _box("and QNH", EXAMPLES[aircraft.units.pressure], 64)
         super().__init__([self.elevation, self.qnh], layout={"flex_flow": "row wrap"})
         self.add_class("by-qnh")
         for box in (self.elevation, self.qnh):
@@ -49,10 +49,10 @@ class ByQnh(w.HBox):  # type: ignore[misc]  # ipywidgets carries no types
             self._busy = False
 
 
-def _box(name: str, example: str) -> w.Text:
+def _box(name: str, example: str, label: int) -> w.Text:
     made = w.Text(
-        description=name, placeholder=example, continuous_update=False, style={"description_width": "170px"},
-        layout={"width": "330px"},
+        description=name, placeholder=example, continuous_update=False, style={"description_width": f"{label}px"},
+        layout={"width": f"{label + 130}px"},
     )  # fmt: skip
     made.tooltip = f"{name}, like {example}"
     return made

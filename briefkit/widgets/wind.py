@@ -14,7 +14,7 @@ import numpy as np
 from briefkit import units
 from briefkit.aircraft.model import Aircraft
 from briefkit.errors import ReadingError
-from briefkit.widgets.controls import named_box
+from briefkit.widgets.controls import SLIDER, named_box
 from briefkit.widgets.exhibit import guarded
 
 STEP_DEG: Final = 15.0
@@ -88,17 +88,17 @@ class WindControl(w.VBox):  # type: ignore[misc]  # ipywidgets carries no types
     def __init__(self, aircraft: Aircraft, wind: Wind, asked: Callable[[Wind], None]) -> None:
         self._aircraft, self._asked, self._wind, self._busy = aircraft, asked, wind, False
         unit = aircraft.units.speed
-        wide = {"description_width": "170px"}
+        wide = {"description_width": "160px"}
         self.slider = w.FloatSlider(
             min=0.0, max=360.0 - STEP_DEG, step=STEP_DEG, readout=False, continuous_update=True,
-            description="Relative wind from", style=wide, layout={"width": "440px", "min_width": "330px"},
+            description="Relative wind from", style=wide, layout=SLIDER,
         )  # fmt: skip
         self.slider.tooltip = "Relative wind from, degrees clockwise from the nose"
         self.bearing = named_box("Relative wind from", "120px")
         self.bearing.tooltip = "Relative wind from, degrees clockwise from the nose: 0° ahead, 90° right, 180° behind"
         self.speed = w.Text(
             description=f"Relative wind, {unit} true", placeholder="as the airspeed", continuous_update=False,
-            style=wide, layout={"width": "330px"},
+            style=wide, layout={"width": "320px"},
         )  # fmt: skip
         self.speed.tooltip = f"Relative wind in {unit} true; empty: the condition's airspeed"
         self.word = w.HTML()
