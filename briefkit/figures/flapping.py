@@ -61,7 +61,9 @@ class FlapCurveFigure:
         low = min(math.floor((beta.min() - room) / step) * step, 0.0)
         high = math.ceil((beta.max() + room) / step) * step
         canvas.rescale(area, (0.0, 360.0, low, high))
-        canvas.set_ticks(self._y_axis, canvas.ticks(low, high, 6))
+        ticks = canvas.ticks(low, high, 6)
+        # One decimal always: the front end keeps the text of a tick that stays, so "3" would stand beside "3.5".
+        canvas.set_ticks(self._y_axis, ticks, [show_number(tick, 1) for tick in ticks.tolist()])
         put(self._zero, [0.0, 360.0], [0.0, 0.0])
         put(self._coning, [0.0, 360.0], [b0_deg, b0_deg])
         put(self._curve, _PSI, beta)
