@@ -149,7 +149,7 @@ class BoundaryFigure:
         if np.any(np.isfinite(lines.lower)):
             rows: tuple[str, ...] = ("onset band,", "softer than", "the chart")
             if lines.above:
-                rows = (*rows[:2], "the chart,", "pale above VNE")
+                rows = (*rows[:2], "the chart,", "faint above VNE")
             top = lines.ceiling if math.isfinite(lines.ceiling) else self._area.y.max
             if lines.open and not math.isfinite(lines.ceiling):
                 rows = (*rows, "(open at the top)")

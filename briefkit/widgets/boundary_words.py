@@ -156,7 +156,7 @@ def notes(aircraft: Aircraft, curves: Boundary) -> tuple[str, ...]:
         said.append("Black is the manual's. Blue is the manual's own chart read at the equivalent level flight.")
     said.append(
         "The grey band is the rotor model's absolute onset, from first signs (12° at the retreating tip) less their "
-        "spread to the limit of control (16°) with its own: softer than the chart, pale where it lies above VNE, and "
+        "spread to the limit of control (16°) with its own: softer than the chart, faint where it lies above VNE, and "
         "no speed to fly. A margin to VNE smaller than half the band, or than a band open at the top, is not resolved."
     )
     told: dict[str, list[str]] = {}

@@ -280,7 +280,7 @@ def test_the_band_is_pale_above_vne_and_stops_where_the_calibration_does():
     assert pale.y.max() == 118.0
     assert (full.y <= np.interp(full.x, X, VNE) + 1e-9).all()
     assert (pale.y >= np.interp(pale.x, X, VNE) - 1e-9).all()
-    assert {"calibrated to 118 KIAS", "pale above VNE"} <= set(words(made.figure))
+    assert {"calibrated to 118 KIAS", "faint above VNE"} <= set(words(made.figure))
 
 
 def test_a_place_where_a_line_leaves_vne_is_marked_and_named():
