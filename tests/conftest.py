@@ -12,6 +12,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 import pytest
+from hypothesis import settings
 
 from briefkit.aircraft.load import load_aircraft
 from briefkit.aircraft.model import Aircraft
@@ -21,6 +22,10 @@ if TYPE_CHECKING:
     from briefkit.brief.build import Result
     from briefkit.brief.pages import CrewPage
     from briefkit.brief.run import Ran
+
+# The same examples on every machine, and no example fails for being slow on a busy one.
+settings.register_profile("briefkit", deadline=None, derandomize=True)
+settings.load_profile("briefkit")
 
 # The demo briefs are in force on this day; no test's answer may hang on the clock's.
 TODAY = dt.date(2030, 6, 1)

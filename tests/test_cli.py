@@ -45,6 +45,7 @@ def write_notebook(file: Path, source: str) -> None:
     file.write_text(json.dumps({"nbformat": 4, "nbformat_minor": 4, "metadata": {}, "cells": [cell]}))
 
 
+@pytest.mark.slow
 @pytest.mark.parametrize("arguments", [["--help"], ["build", "--help"], ["new", "--help"], ["--version"]])
 def test_help_loads_nothing_it_does_not_need(arguments):
     look = f"import sys; print('loaded:', [name for name in {HEAVY!r} if name in sys.modules], file=sys.stderr)"
@@ -269,6 +270,7 @@ def test_signing_by_hand_and_what_is_refused(company):
     assert run("sign", folder, "--role", "prepared").exit_code == 2
 
 
+@pytest.mark.slow
 def test_check_has_exit_codes_and_json_for_scripts(company):
     folder = company / "vellmark-2t"
     done = run("check", folder, "--json", "--date", "2030-06-01")
@@ -286,6 +288,7 @@ def test_check_has_exit_codes_and_json_for_scripts(company):
     assert run("check", company / "empty").exit_code == 2
 
 
+@pytest.mark.slow
 def test_compare_lists_what_changed_and_exits_1_where_a_reason_is_missing(company, tmp_path):
     old, new = company / "vellmark-2t", Path(shutil.copytree(company, tmp_path / "new")) / "vellmark-2t"
     assert (run("compare", old, new).output, run("compare", old, new).exit_code) == ("nothing changed\n", 0)

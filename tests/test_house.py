@@ -92,6 +92,7 @@ def test_import_loads_no_numpy():
     assert "numpy" not in loaded("import briefkit")
 
 
+@pytest.mark.slow
 def test_public_names_load_what_they_need_only():
     heavy = {"scipy", "nbconvert", "ipywidgets", "bqplot"}
     assert not heavy & loaded("from briefkit import load_aircraft, load_operation, Condition, equivalent_vne")
@@ -100,6 +101,7 @@ def test_public_names_load_what_they_need_only():
     assert not heavy & loaded(help_text)
 
 
+@pytest.mark.slow
 def test_every_public_name_resolves():
     code = "import warnings; warnings.simplefilter('ignore')\nimport briefkit\n"
     code += "for name in briefkit.__all__:\n    getattr(briefkit, name)\n"

@@ -84,6 +84,7 @@ def test_every_permitted_unit_has_an_oracle() -> None:
     assert {(kind, unit) for kind in SI for unit in units.permitted_units(kind)} == set(ORACLE)
 
 
+@pytest.mark.slow
 @given(
     pair=st.sampled_from(sorted(ORACLE)),
     number=st.decimals(min_value=-99_999, max_value=99_999, places=4, allow_nan=False, allow_infinity=False),

@@ -312,6 +312,7 @@ def test_a_spoilt_file_is_refused_in_words_or_still_a_whole_aircraft(
         assert 150.0 <= aircraft.rotor.tip_speed <= 260.0
 
 
+@pytest.mark.slow
 def test_loading_imports_nothing_heavy(examples: Path) -> None:
     program = (
         "import sys; from briefkit import load_aircraft, load_operation; "

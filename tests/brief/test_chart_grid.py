@@ -128,6 +128,7 @@ def test_a_capped_cell_prints_the_cap(two_t: Aircraft) -> None:
     assert cell_text(capped, (5, 3, 0, 0), "kt") == ("61", False)
 
 
+@pytest.mark.slow
 @pytest.mark.parametrize(("name", "area"), [("ormbrae-3f", "corrant"), ("kvillarn-4h", "vellmark")])
 def test_the_picture_of_a_row_on_the_chart(examples: Path, operation: Operation, name: str, area: str) -> None:
     aircraft = load_aircraft(examples / "aircraft" / f"{name}.toml")

@@ -126,6 +126,7 @@ def test_cells_outside_the_calibration_are_noted(world: Path) -> None:
     assert "10 cells lie outside the airspeed calibration: no answer is computed from them" in texts
 
 
+@pytest.mark.slow
 def test_a_chart_that_rises_needs_a_reason(world: Path) -> None:
     edit(world / "aircraft" / "pelquill-2t.toml", ("6,000        105    96     88", "6,000        105    96     98"))
     finding = serious(world)[0]
@@ -198,6 +199,7 @@ def test_a_work_area_outside_the_manual_blocks(world: Path) -> None:
     assert all("work_areas.vellmark.temperatures" in finding.place for finding in found)
 
 
+@pytest.mark.slow
 def test_a_whole_operator_folder_lists_a_shared_finding_once(world: Path) -> None:
     shutil.copytree(world / "vellmark-2t", world / "second")
     edit(world / "aircraft" / "pelquill-2t.toml", ('radius = "4.45 m"', 'radius = "4.45"'))
@@ -227,6 +229,7 @@ def test_peoples_data_in_the_typed_files_block(world: Path, file: str, old: str,
     assert all(one.place.endswith(place) and "people are not on a brief" in one.remedy for one in found)
 
 
+@pytest.mark.slow
 def test_a_faulty_deck_blocks_and_leaves_the_page_a_draft(signed: Path, signing) -> None:
     """A deck that teaches a steeper bank than the tool permits today is held like any other file of the brief."""
     assert standing(load_brief(signed), TODAY).mark == ""

@@ -145,6 +145,7 @@ def row_at(rows: list[tuple[int, int, int]], mass: int) -> tuple[int, int]:
     return held
 
 
+@pytest.mark.slow
 @given(old=ROWS, new=ROWS)
 @settings(max_examples=40, deadline=None)
 def test_whatever_mass_is_relaxed_some_line_says_so(two_brief, old, new) -> None:

@@ -159,6 +159,7 @@ def test_the_worked_line_can_be_followed(page):
     )
 
 
+@pytest.mark.slow
 def test_a_climb_is_said_and_worked(two_t, fleet, area):
     climbing = replace(fleet, climb=Stated(units.read("500 ft/min", "vertical speed"), "500 ft/min", "OM-B 2.3"))
     table = reductions(two_t, climbing, area)

@@ -42,6 +42,7 @@ def front_of(page: CrewPage) -> str:
     return " ".join((*(said(part) for part in page.front), cells, beside))
 
 
+@pytest.mark.slow
 def test_with_a_load_the_supplement_s_speed_is_the_only_one_on_the_sheet(load):
     page = crew_page(load, "0")
     text = front_of(page)
@@ -60,6 +61,7 @@ def test_a_load_speed_above_the_chart_somewhere_does_not_rule(load):
     assert ruling_speed(replace(load.aircraft, basic_vne=None), fleet, area) is None
 
 
+@pytest.mark.slow
 def test_stall_is_not_called_far_where_the_basic_chart_leaves_little_room(load):
     """170 km/h is under the chart everywhere, but the chart gives 172 in the turn: 20 km/h of room are asked for."""
     fleet, area = load.operation.entry_for(load.aircraft), area_of(load)
@@ -95,6 +97,7 @@ def test_no_cold_sentence_where_the_chart_does_not_fall_towards_the_cold(cold, l
     assert tip_first(load.aircraft, area_of(load)) == ""  # a chart without temperatures says nothing of the cold
 
 
+@pytest.mark.slow
 def test_nothing_computed_is_drawn_or_listed_where_nothing_is_taken_off(cold, load):
     for brief in (cold, load):
         page = crew_page(brief, "0")

@@ -184,6 +184,7 @@ PIECES = st.sampled_from(
 )  # fmt: skip
 
 
+@pytest.mark.slow
 @given(st.lists(PIECES, max_size=40).map("".join))
 def test_whatever_is_written_nothing_runs_and_hardening_is_final(written):
     hardened = harden(page(written))

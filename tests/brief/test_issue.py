@@ -76,6 +76,7 @@ def test_a_signed_brief_is_issued_registered_and_archived(issued) -> None:
     assert verify(page, register, IN_FORCE).state is State.AS_REGISTERED
 
 
+@pytest.mark.slow
 def test_the_register_and_the_archive_revoke_no_signature(issued) -> None:
     folder, _, _ = issued
     assert stands_against(findings(folder, IN_FORCE)) == []
@@ -132,6 +133,7 @@ def test_a_revision_is_issued_once(issued, tmp_path: Path) -> None:
 # --- the mark of a page ------------------------------------------------------------------------------------------
 
 
+@pytest.mark.slow
 def test_only_a_released_page_carries_no_mark(signed: Path, signing) -> None:
     """G35 and G36 on the page itself."""
     assert standing(load_brief(signed), IN_FORCE).mark == ""
@@ -147,6 +149,7 @@ def test_cells_that_were_not_saved_make_a_draft(signed: Path, nb) -> None:
     assert (known.mark, known.signed) == (DRAFT, {})
 
 
+@pytest.mark.slow
 def test_a_brief_loaded_before_an_edit_makes_a_draft(signed: Path, signing) -> None:
     brief = load_brief(signed)
     signing.edit(signed.parent / "operation.toml", ('"1,800 lb"', '"1,810 lb"'))
@@ -170,6 +173,7 @@ def test_an_expired_page_says_so_large(signed: Path, day: dt.date, mark: str) ->
     assert "expires 29 Feb 2032" in page.running
 
 
+@pytest.mark.slow
 def test_release_refuses_expiry_beyond_policy(signed: Path, signing) -> None:
     """G15: 24 months from 1 April 2030 end on 1 April 2032."""
     signing.edit(signed / "brief.toml", ("expires = 2032-02-29", "expires = 2032-04-02"))
@@ -177,6 +181,7 @@ def test_release_refuses_expiry_beyond_policy(signed: Path, signing) -> None:
     assert standing(load_brief(signed), IN_FORCE).mark == DRAFT
 
 
+@pytest.mark.slow
 def test_a_revised_manual_makes_a_draft_of_a_signed_brief(signed: Path) -> None:
     """G14."""
     text = '[[documents]]\nname = "flight manual"\naircraft = "pelquill-2t"\nrevision = "{}"\n'
@@ -192,6 +197,7 @@ def test_a_revised_manual_makes_a_draft_of_a_signed_brief(signed: Path) -> None:
 RAISED = ("aircraft/pelquill-2t.toml", "8,000         95    87     79", "8,000         95    87     80")
 
 
+@pytest.mark.slow
 def test_a_relaxed_figure_needs_a_reason_before_release(issued, signing, tmp_path: Path) -> None:
     """G37: against what crews have in hand, from the archive of the last issue."""
     folder, _, _ = issued
@@ -218,6 +224,7 @@ def test_a_relaxed_figure_needs_a_reason_before_release(issued, signing, tmp_pat
     assert (cell, "79 KIAS", "80 KIAS", "flight manual rev 5 raised the chart") in grid.rows
 
 
+@pytest.mark.slow
 def test_an_issued_revision_is_never_made_again_with_another_content(issued, signing) -> None:
     """G36 and G37: raising a cell and signing again under the old revision would pass the comparison by."""
     folder, _, _ = issued
@@ -233,6 +240,7 @@ def test_an_issued_revision_is_never_made_again_with_another_content(issued, sig
     ]
 
 
+@pytest.mark.slow
 def test_a_more_conservative_revision_needs_none(issued, signing) -> None:
     folder, _, _ = issued
     lowered = (
@@ -246,6 +254,7 @@ def test_a_more_conservative_revision_needs_none(issued, signing) -> None:
     assert all(text.startswith("turn at") for text in texts)
 
 
+@pytest.mark.slow
 def test_an_archive_that_is_gone_or_altered_blocks(issued, signing) -> None:
     folder, _, _ = issued
     revised(folder, signing)
@@ -301,6 +310,7 @@ def test_a_page_on_a_day(held: tuple[Path, Register], day: dt.date, state: State
     assert verify(*held, day).state is state
 
 
+@pytest.mark.slow
 def test_a_page_replaced_by_a_later_revision(issued, signing, tmp_path: Path) -> None:
     folder, page, _ = issued
     held = Path(shutil.copy(page, tmp_path / "held.html"))
@@ -351,6 +361,7 @@ def test_an_altered_page_is_told_from_a_strange_one(held: tuple[Path, Register],
         assert verify(strange, register, IN_FORCE).state is State.NOT_REGISTERED
 
 
+@pytest.mark.slow
 def test_the_register_is_found_above_the_page_or_named(issued, tmp_path: Path, monkeypatch) -> None:
     folder, page, entry = issued
     monkeypatch.chdir(tmp_path)

@@ -36,6 +36,7 @@ def words_of(*parts: Section) -> str:
     return " ".join(said + cells)
 
 
+@pytest.mark.slow
 @pytest.mark.parametrize("name", ["vellmark-2t", "corrant-3f", "ysbrane-4h"])
 def test_guard_g24_recovery_is_the_manual_s_or_the_handbook_s_with_its_edition(briefs, pages, name):
     """FAA-H-8083-21B ch. 11: usually the collective first; neither aft nor forward cyclic."""

@@ -38,6 +38,7 @@ def ended(pid_file: Path) -> bool:
     return False
 
 
+@pytest.mark.slow
 def test_fresh_kernel_final_state_and_order(tmp_path, nb):
     notebook = nb.write(
         tmp_path / "brief.ipynb",

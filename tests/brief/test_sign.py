@@ -219,6 +219,7 @@ LINE = st.sampled_from(
 )
 
 
+@pytest.mark.slow
 @given(
     lines=st.lists(LINE, max_size=12),
     role=st.sampled_from(ROLES),

@@ -17,6 +17,7 @@ from briefkit.physics.trim import trim, vertical_gust
 HOT = Condition(mass="2,006 lb", pressure_altitude="5,210 ft", oat="20 degC")
 
 
+@pytest.mark.slow
 @pytest.mark.parametrize("against", ["pressure altitude", "mass"])
 def test_curves_are_the_single_answers(two_t, against):
     drawn = boundary(two_t, HOT, against, banks_deg=(0.0, 20.0))

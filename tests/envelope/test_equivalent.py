@@ -161,6 +161,7 @@ def test_heavier_steeper_slower_rotor_is_never_faster(two_t, height, oat, mass, 
             assert answers.ias[other] <= answers.ias[0] + 0.03
 
 
+@pytest.mark.slow
 @settings(max_examples=60, deadline=None)
 @given(
     height=st.floats(0, 9000),

@@ -66,6 +66,7 @@ def test_g1_nothing_told_lies_above_the_manuals_vne(name, request):
     assert all(isinstance(reason, Reason) for reason in answers.reason)
 
 
+@pytest.mark.slow
 @pytest.mark.parametrize("name", TYPES)
 @pytest.mark.parametrize("against", list(Against))
 def test_g2_nothing_drawn_as_usable_lies_above_vne(name, against, request):

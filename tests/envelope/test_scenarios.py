@@ -103,6 +103,7 @@ def test_3_the_indicator_is_in_kilometres_an_hour(three_f):
     assert answer.text == "189 km/h IAS"
 
 
+@pytest.mark.slow
 def test_5_the_load_rules(examples):
     loaded = load_aircraft(examples / "aircraft" / "ormbrae-3f.toml", configuration="external load")
     hook = Condition(mass="2,380 kg", pressure_altitude="5,210 ft", oat="30 degC")

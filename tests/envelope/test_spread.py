@@ -83,6 +83,7 @@ def test_what_the_band_is_made_of(two_t):
     assert {one.name: one.lowers_by for one in band.contributions}["blade flap inertia"] == pytest.approx(0.0, abs=0.05)
 
 
+@pytest.mark.slow
 def test_heavier_higher_hotter_slower_rotor_more_bank_lowers_it(two_t):
     easy = Condition(mass="1,900 lb", pressure_altitude="6,000 ft", oat="20 degC")
     worse = [

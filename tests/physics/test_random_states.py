@@ -154,6 +154,7 @@ def test_ten_thousand_states(
         assert share >= (0.99 if section == "attached" else 0.95)
 
 
+@pytest.mark.slow
 def test_the_attached_section_flies_over_the_whole_range(rotors: dict[str, Rotor]) -> None:
     # Level flight at any advance ratio, blade loading and Mach number the model is offered for.
     random = np.random.default_rng(7)

@@ -103,6 +103,7 @@ def test_similarity(rotor: Rotor, mass: tuple[float, float], state_of: StateOf) 
     assert np.abs(np.degrees(one.disc_tilt - two.disc_tilt))[both].max() < 0.1  # through coning and so the H-force
 
 
+@pytest.mark.slow
 def test_a_batch_is_its_members(rotor: Rotor, mass: tuple[float, float], state_of: StateOf) -> None:
     # Easy, hard, refused and hopeless members side by side do not disturb each other.
     speed = np.array([0.0, 12.0, 35.0, 60.0, 70.0, 150.0, np.nan, 30.0, 25.0])
@@ -282,6 +283,7 @@ def test_past_the_greatest_thrust_there_is_no_trim(rotor: Rotor, mass: tuple[flo
     assert np.isfinite(flight.residual[lost]).all()
 
 
+@pytest.mark.slow
 def test_the_way_round_past_stall(rotor: Rotor, mass: tuple[float, float], state_of: StateOf) -> None:
     # From a start far past stall the direct way is lost or ends on the wrong branch; by way of the section that never
     # stalls every member comes to the answer.

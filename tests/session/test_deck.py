@@ -31,6 +31,7 @@ def faults(brief, operator):
     return caught.value.faults
 
 
+@pytest.mark.slow
 @pytest.mark.parametrize(("folder", "stem", "configuration", "unit"), [
     ("corrant-3f", "ormbrae-3f", "external load", "km/h"), ("ysbrane-4h", "kvillarn-4h", "basic", "KIAS"),
 ])  # fmt: skip
@@ -146,6 +147,7 @@ def test_a_deck_is_part_of_what_is_signed_and_a_log_is_not(brief, operator):
 TYPES = [("pelquill-2t", ""), ("ormbrae-3f", ""), ("ormbrae-3f", "external load"), ("kvillarn-4h", "")]
 
 
+@pytest.mark.slow
 @pytest.mark.parametrize(("stem", "configuration"), TYPES)
 @pytest.mark.parametrize("areas", [("corrant",), ("vellmark", "ysbrane")])
 def test_a_generated_deck_reads_back_whatever_the_type(operator, brief, stem, configuration, areas):

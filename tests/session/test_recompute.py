@@ -107,6 +107,7 @@ def test_csv_is_one_row_a_step_and_no_formula(path, deck):
     assert not [cell for row in rows for cell in row.values() if cell[:1] in "=+@" and cell]
 
 
+@pytest.mark.slow
 def test_the_command(path, operator, tmp_path):
     runner = CliRunner()
     out = tmp_path / "log.csv"

@@ -52,6 +52,7 @@ def plain(text):
     return text.replace("\u00a0", " ")
 
 
+@pytest.mark.slow
 def test_answers_are_folded_manual_first(pages, deck):
     parsed = tree(pages["deck"])
     folded = parsed.findall(f".//{XHTML}details")

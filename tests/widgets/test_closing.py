@@ -22,6 +22,7 @@ def cell(monkeypatch):
     return run
 
 
+@pytest.mark.slow
 def test_twenty_runs_of_a_notebook_add_no_models(two_t, start, cell, models_open):
     counts = []
     for number in range(20):

@@ -85,6 +85,7 @@ def test_an_unknown_quantity_is_refused_with_the_list(two_t, start, models_open)
     assert models_open() == before
 
 
+@pytest.mark.slow
 def test_it_follows_and_adds_no_models(live, models_open):
     exhibits = [DiscMap(live, quantity=quantity) for quantity in QUANTITIES[1:]]
     before = models_open()

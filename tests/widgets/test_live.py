@@ -234,6 +234,7 @@ def test_every_follower_is_redrawn_before_the_change_returns(live):
         assert "1,900\u00a0lb, Hp\u00a08,000\u00a0ft" in exhibit._caption.value
 
 
+@pytest.mark.slow
 def test_moving_makes_no_new_models(live, control, from_browser, models_open):
     exhibits = [DiscMap(live), Flapping(live), StallBoundary(live)]
     from_browser(control("ias").slider, 61.0)

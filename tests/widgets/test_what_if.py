@@ -263,6 +263,7 @@ def test_closing_frees_every_model_and_ends_the_log(deck, models_open):
     assert json.loads(path.read_text(encoding="utf-8").splitlines()[-1])["step"] == "closed"
 
 
+@pytest.mark.slow
 def test_a_whole_session_and_twenty_runs_of_its_cell_add_no_models(deck, models_open, monkeypatch, from_browser, press):
     now = [("cell", "0")]
     monkeypatch.setattr(closing, "_running_cell", lambda: now[0])
