@@ -83,11 +83,11 @@ def _days(areas: tuple[WorkArea, ...]) -> list[tuple[WorkArea, str, float]]:
 
 
 def _across(fleet: FleetEntry, area: WorkArea, oat: float) -> list[Condition]:
-    """Every mass at the briefed bank, at the area's highest pressure altitude."""
+    """Every mass at the briefed bank and the stated climb, at the area's highest pressure altitude."""
     return [
         Condition.si(
             mass=mass.value, pressure_altitude=area.high_altitude.value, oat=oat,
-            load_factor=1.0 / math.cos(fleet.brief_bank.value),
+            load_factor=1.0 / math.cos(fleet.brief_bank.value), climb=0.0 if fleet.climb is None else fleet.climb.value,
             mass_spread=fleet.mass_spread, oat_spread=fleet.temperature_spread,
         )
         for mass in fleet.masses

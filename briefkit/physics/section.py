@@ -221,7 +221,7 @@ class TableSection:
         """Angle of attack [rad] of the first lift maximum above zero angle (the last angle where there is none)."""
         positive = np.flatnonzero(self.angles > 0.0)
         lift = self.lift[:, positive]
-        falls = np.diff(lift, axis=1) < 0.0
+        falls = np.diff(lift, axis=1) <= 0.0  # on a plateau its first point, the safe side
         first = np.where(falls.any(axis=1), falls.argmax(axis=1), positive.size - 1)
         return np.interp(mach, self.machs, self.angles[positive[first]])
 

@@ -3,10 +3,12 @@
 from __future__ import annotations
 
 import math
+from dataclasses import replace
 
 import pytest
 
 from briefkit import units
+from briefkit.aircraft.model import Stated
 from briefkit.envelope.condition import Condition
 from briefkit.envelope.equivalent import equivalent_vne
 from briefkit.envelope.overview import masses_by_hour, set_by_table
@@ -49,6 +51,15 @@ def test_each_rule_holds_within_a_knot_over_its_range(two_t, rules):
 def test_no_rules_where_there_is_no_answer(two_t):
     with pytest.raises(BeyondChart):
         rules_of_thumb(two_t, PLANNED.with_(bank="45 deg"))
+
+
+@pytest.mark.slow  # a climb asks the rotor model
+def test_a_stated_climb_is_in_the_set_by_table(two_t, operation):
+    fleet, area = operation.fleet["pelquill-2t"], operation.work_areas["harl"]
+    climbing = replace(fleet, climb=Stated(500.0 * units.FOOT / 60.0, "500 ft/min", "OM-B"))
+    level, climbed = (set_by_table(two_t, entry, (area,)) for entry in (fleet, climbing))
+    heavy = [rows[0].answer.below_vne for rows in (level, climbed)]
+    assert heavy[1] > heavy[0] + 1.0
 
 
 def test_set_by_table_is_the_single_answers(two_t, operation):

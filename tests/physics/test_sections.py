@@ -152,6 +152,13 @@ def test_table_gives_its_points_and_straight_lines_between() -> None:
     assert np.degrees(section.stall_angle(np.array(0.5))) == pytest.approx(12.7, abs=0.4)
 
 
+def test_a_plateau_of_lift_stalls_at_its_first_point() -> None:
+    degrees = np.array([-10.0, 0.0, 10.0, 12.0, 14.0, 16.0, 20.0])
+    lift = np.array([[-1.0, 0.0, 1.0, 1.2, 1.2, 1.2, 0.9]])
+    section = TableSection(np.array([0.3]), np.radians(degrees), lift, np.full_like(lift, 0.01))
+    assert np.degrees(section.stall_angle(np.array(0.3))) == pytest.approx(12.0)
+
+
 def test_past_its_ends_a_table_becomes_a_flat_plate() -> None:
     # Complete ten degrees past the end: 1.15 sin(2 alpha) and 1.03 - 1.02 cos(2 alpha), the other way round too.
     lift, drag = lift_and_drag(own_table(-10.0, 20.0), [30.0, 60.0, -20.0, -60.0], 0.3)
