@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import contextlib
 import json
 import os
 import re
@@ -97,7 +98,7 @@ def test_an_interrupt_is_one_line_and_ends_every_kernel(operator, tmp_path):
     write_notebook(operator / "vellmark-2t" / "brief.ipynb", source)
     out = tmp_path / "out"
     command = [*COMMAND, "build", str(operator), "--out", str(out)]
-    with subprocess.Popen(command, stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True) as process:
+    with started(command) as process:
         pid_file = operator / "vellmark-2t" / "pid"
         wait_for(lambda: pid_file.exists() and pid_file.read_text() != "")
         process.send_signal(signal.SIGINT)
@@ -106,6 +107,21 @@ def test_an_interrupt_is_one_line_and_ends_every_kernel(operator, tmp_path):
     kernel = int(pid_file.read_text())
     wait_for(lambda: not alive(kernel))
     assert list(out.iterdir()) == []
+
+
+@contextlib.contextmanager
+def started(command, env=None):
+    """A process that an interrupt reaches, whoever started the tests, and that never outlives its test."""
+    before = signal.signal(signal.SIGINT, signal.default_int_handler)  # a job in the background would inherit "ignored"
+    try:
+        process = subprocess.Popen(command, stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True, env=env)
+    finally:
+        signal.signal(signal.SIGINT, before)
+    with process:
+        try:
+            yield process
+        finally:
+            process.kill()
 
 
 def wait_for(done: object, seconds: float = 30.0) -> None:
@@ -201,8 +217,7 @@ def test_live_in_earnest(operator, tmp_path):
     """A real server: an address once it answers, nothing without the token, our interpreter, gone at one interrupt."""
     private = {name: str(tmp_path / name) for name in ("JUPYTER_CONFIG_DIR", "JUPYTER_DATA_DIR", "JUPYTER_RUNTIME_DIR")}
     command = [*COMMAND, "live", str(operator / "vellmark-2t"), "--no-browser"]
-    options = {"stdout": subprocess.PIPE, "stderr": subprocess.PIPE, "text": True, "env": os.environ | private}
-    with subprocess.Popen(command, **options) as process:  # type: ignore[call-overload]
+    with started(command, os.environ | private) as process:
         try:
             address = process.stdout.readline().strip()
             found = re.fullmatch(
