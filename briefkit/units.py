@@ -7,6 +7,7 @@ A general units library read "3 350 kg" as 1,050 kg in a trial; this one accepts
 from __future__ import annotations
 
 import math
+import numbers
 import re
 from dataclasses import dataclass
 from enum import StrEnum
@@ -102,11 +103,19 @@ class Speed:
     Sums, differences (a difference is of the same kind) and comparisons are between equal kinds; with another kind, or
     with a bare number, which has none, they raise `MixedSpeeds`. From one kind to the next leads only the aircraft's
     calibration (indicated, calibrated) and the air of the day (calibrated, true).
+
+    Raises `ReadingError` for a value that is not finite: a comparison with it would say whatever is asked.
     """
 
     value: float
     kind: SpeedKind
     unit: str = "kt"
+
+    def __post_init__(self) -> None:
+        if not math.isfinite(self.value):
+            raise ReadingError(
+                str(self.value), f"a finite {self.kind.words} speed", "where there is none, leave it out"
+            )
 
     @classmethod
     def of(cls, number: float, unit: str, kind: SpeedKind = SpeedKind.INDICATED) -> Speed:
@@ -149,7 +158,9 @@ class Speed:
         return not self < other
 
     def __eq__(self, other: object) -> bool:
-        return isinstance(other, Speed) and round(self.value, 9) == round(self._like(other), 9)
+        if not isinstance(other, Speed | numbers.Number):
+            return False
+        return round(self.value, 9) == round(self._like(other), 9)
 
     def __hash__(self) -> int:
         return hash((round(self.value, 9), self.kind))

@@ -2,9 +2,11 @@
 
 from __future__ import annotations
 
+import math
 import operator
 from dataclasses import replace
 
+import numpy as np
 import pytest
 
 from briefkit import units
@@ -33,10 +35,34 @@ def test_g6_unlike_kinds_are_neither_added_nor_compared(do, other):
     assert issubclass(MixedSpeeds, BriefkitError)
 
 
-def test_g6_not_even_for_equality():
-    with pytest.raises(MixedSpeeds):
-        _ = Speed.of(94, "kt") == Speed.of(94, "kt", TAS)
-    assert Speed.of(94, "kt") != 94.0
+@pytest.mark.parametrize("other", [Speed.of(94, "kt", TAS), 94, 94.0, np.float64(94.0), np.int64(94)])
+def test_g6_not_even_for_equality(other):
+    for same in (operator.eq, operator.ne):
+        with pytest.raises(MixedSpeeds):
+            same(Speed.of(94, "kt"), other)
+        with pytest.raises(MixedSpeeds):
+            same(other, Speed.of(94, "kt"))
+
+
+@pytest.mark.parametrize("other", [None, "94 KIAS", (94,), object()])
+def test_what_is_no_number_is_no_speed(other):
+    assert Speed.of(94, "kt") != other
+    assert not Speed.of(94, "kt") == other  # noqa: SIM201  (both ways are asked)
+
+
+@pytest.mark.parametrize("value", [math.nan, math.inf, -math.inf, np.float64("nan")])
+def test_a_speed_that_is_not_finite_is_refused(value):
+    """Not a number is neither under a floor nor above it, so that `not under` would have let it pass."""
+    for make in (lambda: Speed(value, IAS), lambda: Speed.of(value, "kt")):
+        with pytest.raises(ReadingError, match="a finite indicated speed"):
+            make()
+
+
+def test_a_band_without_an_upper_end_or_a_calibration_has_no_width(two_t):
+    """ "None in manual": no top of the table stands in for the missing end."""
+    plain = replace(two_t, calibration=replace(two_t.calibration, indicated=(), calibrated=()))
+    found = margin_to_vne(plain, OnsetBand(80.0, 90.0, None, "kt", ()), Speed.of(85, "kt"))
+    assert (found.half_width, found.resolved, found.reduced) == (None, False, True)
 
 
 def test_g6_one_kind_in_two_units_is_one_speed():

@@ -44,8 +44,9 @@ def margin_to_vne(aircraft: Aircraft, band: OnsetBand, vne: Speed) -> Margin:
     reduced = lower is None or lower < vne
     margin = None if central is None else central - vne
     highest = aircraft.calibration.highest_indicated
-    end = Speed(highest, SpeedKind.INDICATED, band.unit) if upper is None else upper
-    if lower is None or central is None or margin is None or not math.isfinite(end.value):
+    top = Speed(highest, SpeedKind.INDICATED, band.unit) if math.isfinite(highest) else None
+    end = top if upper is None else upper
+    if lower is None or central is None or margin is None or end is None:
         return Margin(vne, lower, margin, None, False, reduced, False)
     half = max(central - lower, Speed((end - lower).value / 2.0, end.kind, end.unit))
     resolved = upper is not None and abs(margin.value) >= half.value
