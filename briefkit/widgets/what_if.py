@@ -246,7 +246,8 @@ class WhatIf(w.VBox):  # type: ignore[misc]  # ipywidgets carries no types
         self._decision.layout.display = "flex" if stage is Stage.COMPUTED else "none"
         self._free.layout.display = "flex" if self._trying else "none"
         self._said.value = _predicted(session.predictions)
-        self._shown.value = _figures(self._manual, self._computed) + self._lesson()
+        # What is tried takes the lesson's place, so that it is seen without scrolling.
+        self._shown.value = _figures(self._manual, self._computed) + ("" if self._trying else self._lesson())
         self._step.description = STEPS[stage]
         last = session.index == len(session.deck.cases) - 1
         self._step.disabled = last and stage is Stage.DECIDED

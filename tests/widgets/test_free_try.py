@@ -59,6 +59,15 @@ def test_the_sliders_stay_away_until_both_figures_are_out(panel, from_browser, p
     assert html.escape(panel.session.case.prompt) in panel._head.value
 
 
+def test_after_the_decision_the_lesson_gives_way_to_what_is_tried_and_comes_back(trying, from_browser, press):
+    from_browser(trying._decision, "slow first")
+    press(trying._step)
+    assert "What to take from it" not in trying._shown.value
+    assert "74 KIAS" in trying._shown.value
+    press(trying._try)
+    assert "What to take from it" in trying._shown.value
+
+
 def test_each_try_is_answered_and_logged_as_one(trying, deck, turn):
     turn("mass", slider=1700.0)
     turn("load_factor", typed="20")
