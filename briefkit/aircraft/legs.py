@@ -19,6 +19,7 @@ from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 from typing import Annotated, ClassVar, Final
 
+from briefkit import units
 from briefkit.aircraft.make import needed, stated
 from briefkit.aircraft.model import Stated
 from briefkit.aircraft.tables import Mass, Text
@@ -101,9 +102,17 @@ def _check_burn(document: Document, key: str, leg: LegEntry, flown: Flown) -> No
         document.fault(f"{key}.fleet", quoted(leg.fleet), "a fleet entry with fuel_burn", remedy)
     elif not flown.burn.spread:
         remedy = 'add spread = "...": along a leg the lower end counts, the heavier aircraft'
-        document.fault(f"{place}.spread", "nothing", "the half-width you would bet on at 95 %", remedy)
+        read = "nothing" if flown.burn.spread is None else _spread_text(flown.burn)
+        document.fault(f"{place}.spread", read, "the half-width you would bet on at 95 %", remedy)
     elif flown.burn.spread > 0.5 * needed(flown.burn.value):
-        document.fault(f"{place}.spread", flown.burn.text, "at most half of the burn", "look again at the unit")
+        read = f"{_spread_text(flown.burn)} of {flown.burn.text}"
+        document.fault(f"{place}.spread", read, "at most half of the burn", "look again at the unit")
+
+
+def _spread_text(burn: Typed) -> str:
+    """The half-width in the unit of the burn, to 0.1 of it: of a share, what it comes to."""
+    spread = units.from_si(needed(burn.spread), "fuel flow", burn.unit)
+    return f"{spread:,.1f} {burn.unit}".replace(".0 ", " ")
 
 
 def _check_masses(document: Document, key: str, leg: LegEntry, flown: Flown) -> None:
