@@ -36,6 +36,7 @@ from briefkit.units import read
 KEY: Final = "section"
 _FILE = re.compile(r"[A-Za-z0-9][A-Za-z0-9 _.-]*\.csv")
 COLUMNS: Final = ("mach", "alpha_deg", "cl", "cd")
+_ATTACHED: Final = (-5.0, 5.0)  # degrees: across zero lift, before any stall that a rotor could be flown with
 _RANGES: Final = {"mach": (0.0, 1.0), "alpha_deg": (-180.0, 180.0), "cl": (-4.0, 4.0), "cd": (0.0001, 3.0)}
 
 
@@ -134,6 +135,8 @@ def read_section_table(path: Path) -> TableSection:
     rows = _rows(path, faults)
     if not faults:
         _check_grid(path, rows, faults)
+    if not faults:
+        _check_lift(path, rows, faults)
     if faults:
         raise FaultyFile(faults)
     machs = np.unique([row.mach for row in rows])
@@ -211,3 +214,22 @@ def _check_grid(path: Path, rows: list[_Row], faults: list[Fault]) -> None:
         if len(block) < len(first):
             wanted = f"a row for {first[len(block)]:g} at Mach {block[0].mach:g}"
             faults.append(Fault(path.name, f"after line {block[-1].line}", "the end of the file", wanted))
+
+
+def _check_lift(path: Path, rows: list[_Row], faults: list[Fault]) -> None:
+    """At every Mach number lift rises from -5 to +5 degrees, between points as the section reads them.
+
+    A sign turned round would put the stall at the first point above zero, or nowhere.
+    """
+    low, high = _ATTACHED
+    for mach in dict.fromkeys(row.mach for row in rows):
+        block = [row for row in rows if row.mach == mach]
+        angles, lift = [row.alpha for row in block], [row.lift for row in block]
+        if not angles[0] <= low < high <= angles[-1]:
+            return  # too short a table, which is said of its angles
+        at_low, at_high = np.interp(_ATTACHED, angles, lift)
+        if not at_high > at_low:
+            read_as = f"{at_low:.4g} at {low:g} degrees, {at_high:.4g} at {high:+g}, at Mach {mach:g}"
+            permitted = f"lift that rises from {low:g} to {high:+g} degrees"
+            place = f"lines {block[0].line} to {block[-1].line}, cl"
+            faults.append(Fault(path.name, place, read_as, permitted, "look again at the signs of alpha_deg and cl"))

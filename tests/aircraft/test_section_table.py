@@ -66,6 +66,7 @@ def with_line(line: int, text: str) -> list[str]:
         (with_line(4, "0.3, 0, nan, 0.01"), ["line 4, cl", "nan"]),
         (with_line(4, "0.3, 0, 1e-2, 0.01"), ["line 4, cl"]),
         (with_line(4, "0.3, 0, 0.0, -0.01"), ["line 4, cd", "0.0001 to 3"]),
+        (with_line(4, "0.3, 0, 0.0, 0"), ["line 4, cd", "0.0001 to 3"]),
         (with_line(4, "1.3, 0, 0.0, 0.01"), ["line 4, mach", "0 to 1"]),
         (with_line(2, "M, alpha, cl, cd"), ["line 2", HEADER]),
         ([HEADER], ["rows", "none"]),
@@ -75,6 +76,31 @@ def with_line(line: int, text: str) -> list[str]:
 )
 def test_refused_with_the_row_named(tmp_path: Path, lines: list[str], words: list[str]) -> None:
     with pytest.raises(FaultyFile, match=r"section\.csv") as caught:
+        read_section_table(written(tmp_path, lines))
+    for word in words:
+        assert word in str(caught.value)
+
+
+def turned(sign_from: str) -> list[str]:
+    """The table with the sign of every lift at one Mach number turned round."""
+    cells = [line.split(", ") for line in GOOD[2:]]
+    return GOOD[:2] + [", ".join([m, a, str(-float(cl)) if m == sign_from else cl, cd]) for m, a, cl, cd in cells]
+
+
+@pytest.mark.parametrize(
+    ("lines", "words"),
+    [
+        (turned("0.3"), ["lines 3 to 6, cl", "0.5 at -5 degrees, -0.5 at +5, at Mach 0.3", "look again at the signs"]),
+        (turned("0.5"), ["lines 7 to 10, cl", "0.55 at -5 degrees", "rises from -5 to +5"]),
+        (
+            [HEADER, *(f"0.3, {a}, 0.4, 0.01" for a in (-6, 0, 8, 16))],
+            ["0.4 at -5 degrees, 0.4 at +5"],
+        ),  # no lift slope
+    ],
+)
+def test_lift_that_does_not_rise_is_refused(tmp_path: Path, lines: list[str], words: list[str]) -> None:
+    """Taken as it stood, it stalled at its first angle above zero. One fault for each Mach number."""
+    with pytest.raises(FaultyFile, match="1 fault") as caught:
         read_section_table(written(tmp_path, lines))
     for word in words:
         assert word in str(caught.value)
