@@ -5,6 +5,8 @@ The reduction rests on none of it. An absolute onset is softer than the manual's
 
 from __future__ import annotations
 
+from typing import Final
+
 from briefkit import units
 from briefkit.aircraft.model import Aircraft, Stated
 from briefkit.brief import words
@@ -17,6 +19,9 @@ from briefkit.envelope.margin import margin_to_vne
 from briefkit.envelope.reductions import ReductionRow, ReductionTable
 from briefkit.envelope.spread import OnsetBand, onset_band
 from briefkit.errors import Refusal
+from briefkit.units import Speed
+
+_ENTRY: Final = 0.005  # of a unit of speed: nearer than any printed entry lies to the next
 
 
 def assumptions(aircraft: Aircraft, table: ReductionTable) -> Section:
@@ -85,14 +90,14 @@ def _band_line(aircraft: Aircraft, row: ReductionRow, level: Condition, band: On
 
 def margin_line(aircraft: Aircraft, level: Condition, band: OnsetBand) -> str:
     """How the band lies to the manual's VNE at the same place, told from its lower edge, and "not resolved" where the
-    margin is smaller than the band's half-width.
+    margin is smaller than the band's half-width. The differences are from the reading, not from what is left of it.
     """
     try:
         vne = equivalent_vne(aircraft, level.changed(rotor_speed=1.0, climb=0.0)).vne
     except Refusal as refusal:
         return f"VNE governs; no margin to it here: {refusal}."
     kind, unit, found = aircraft.units.speed_label(), aircraft.units.speed, margin_to_vne(aircraft, band, vne)
-    governs = f"VNE governs, {words.number(vne.number)} {kind} there"
+    governs = f"VNE governs, {_vne(aircraft, vne)}"
     if found.lower is None:
         said = f"{governs}. Reduced margin: the band begins under the calibrated range"
     elif found.reduced:
@@ -107,6 +112,18 @@ def margin_line(aircraft: Aircraft, level: Condition, band: OnsetBand) -> str:
     first = f"first signs {words.number(abs(found.margin.number))} {unit} {side} VNE"
     width = f"{'at least ' if found.at_least else ''}{words.number(found.half_width.number)} {unit}"
     return f"{said}; {first}, the band’s half-width {width}{'' if found.resolved else ': not resolved'}."
+
+
+def _vne(aircraft: Aircraft, vne: Speed) -> str:
+    """An entry as the chart prints it; what is read between entries rounded down to one unit, and marked."""
+    chart, kind, unit = aircraft.vne, aircraft.units.speed_label(), aircraft.units.speed
+    texts = [] if chart.printed is None else [str(text) for text in chart.printed.ravel()]
+    for text, speed in zip(texts, chart.speeds.ravel(), strict=False):
+        if text and abs(units.from_si(float(speed), "speed", unit) - vne.number) < _ENTRY:
+            return f"{text} {kind} there"
+    down = units.round_down(vne.number)
+    mark = " (read off the chart, rounded down)" if vne.number - down >= _ENTRY else ""
+    return f"{units.show_number(down)} {kind} there{mark}"
 
 
 def _taken(aircraft: Aircraft) -> list[str]:

@@ -15,7 +15,7 @@ from briefkit.envelope.condition import Condition
 from briefkit.envelope.margin import margin_to_vne
 from briefkit.envelope.reductions import reductions
 from briefkit.envelope.spread import OnsetBand, onset_band
-from briefkit.units import Speed
+from briefkit.units import Speed, to_si
 
 # VNE of the invented 2T there, by its chart: 85.2 KIAS (85 at 5,210 ft, +36 C).
 HOT = Condition(mass="2,006 lb", pressure_altitude="5,210 ft", oat="36 degC")
@@ -28,7 +28,32 @@ def band(lower: float | None, central: float | None, upper: float | None) -> Ons
 
 def test_g2_vne_governs_and_the_band_is_no_speed_to_fly(two_t):
     said = margin_line(two_t, HOT, band(88.0, 96.0, 105.0))
-    assert said.startswith("VNE governs, 85.2 KIAS there; the band begins 2.8 kt above it and is no speed to fly;")
+    marked = "VNE governs, 85 KIAS there (read off the chart, rounded down)"
+    assert said.startswith(f"{marked}; the band begins 2.8 kt above it and is no speed to fly;")
+
+
+@pytest.mark.parametrize(
+    ("feet", "oat", "text"),
+    [
+        # Straight lines between the invented chart's cells at +20 C, 6,000 ft 88 and 8,000 ft 79, by hand.
+        ("7,900 ft", "20 degC", "79 KIAS there (read off the chart, rounded down)"),  # 79.45, which 79.5 is above
+        ("6,002 ft", "20 degC", "87 KIAS there (read off the chart, rounded down)"),  # 87.99
+        ("8,000 ft", "20 degC", "79 KIAS there"),  # an entry, as the chart prints it
+    ],
+)
+def test_an_interpolated_vne_is_rounded_down_and_marked(two_t, feet, oat, text):
+    said = margin_line(two_t, HOT.with_(pressure_altitude=feet, oat=oat), band(60.0, 96.0, 105.0))
+    assert said.startswith(f"VNE governs, {text}. Reduced margin: the band begins at 60 KIAS")
+
+
+def test_an_entry_with_a_decimal_is_printed_as_the_chart_has_it(two_t):
+    chart, cell = two_t.vne, two_t.vne.printed == "79"  # 8,000 ft, +20 C
+    assert cell.sum() == 1
+    speeds, printed = chart.speeds.copy(), chart.printed.copy()
+    speeds[cell], printed[cell] = to_si(79.5, "speed", "kt"), "79.5"
+    made = replace(two_t, vne=replace(chart, speeds=speeds, printed=printed))
+    here = HOT.with_(pressure_altitude="8,000 ft", oat="20 degC")
+    assert margin_line(made, here, band(60.0, 96.0, 105.0)).startswith("VNE governs, 79.5 KIAS there. Reduced")
 
 
 def test_g3_a_band_that_begins_under_vne_is_a_reduced_margin_with_its_own_lower_bound(two_t):
