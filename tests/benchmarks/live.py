@@ -68,12 +68,14 @@ class Hand:
 
 
 def one_at_a_time(page: Any, moves: int) -> list[float]:
-    """Milliseconds from each move to its picture."""
+    """Milliseconds from each move to its picture; the page is at rest before each."""
     hand, took = Hand(page), []
     for place in range(moves):
         page.evaluate("() => { bkSeen.moves = []; bkSeen.pictures = []; }")
         hand.to(place)
-        page.wait_for_function("() => bkSeen.pictures.length > 0", timeout=10_000, polling=5)
+        page.wait_for_function("() => bkSeen.pictures.length > 0", timeout=10_000, polling=40)
+        page.wait_for_function("() => bkPanel.sessionContext.session.kernel.status === 'idle'", polling=40)
+        page.wait_for_timeout(100)  # the other exhibits of this move are drawn too before the next
         took.append(page.evaluate("() => bkSeen.pictures[0] - bkSeen.moves[0]"))
     page.mouse.up()
     return took
