@@ -3,14 +3,11 @@
 from __future__ import annotations
 
 import datetime as dt
-from typing import TYPE_CHECKING
 
 from briefkit.aircraft.operation import Operation
 from briefkit.brief.identity import ROLES, Brief, Identity
 from briefkit.brief.pages import Grid, Ink, Section, Source
-
-if TYPE_CHECKING:
-    from briefkit.brief.release import Standing
+from briefkit.brief.standing import Standing
 
 _HASH_SHOWN = 12
 

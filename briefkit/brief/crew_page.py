@@ -3,19 +3,14 @@
 from __future__ import annotations
 
 from dataclasses import replace
-from typing import TYPE_CHECKING, Final
 
 from briefkit.brief import assumptions, control, derivation, front, overview, pictures, recognition
 from briefkit.brief.identity import Brief
 from briefkit.brief.pages import CrewPage, Section
 from briefkit.brief.sources import sources
+from briefkit.brief.standing import DRAFT, Standing
 from briefkit.envelope.reductions import ReductionTable, RowKind, reductions
 from briefkit.errors import BuildError
-
-if TYPE_CHECKING:
-    from briefkit.brief.release import Standing
-
-DRAFT: Final = "DRAFT: not for crews"
 
 
 def table_of(brief: Brief) -> ReductionTable:

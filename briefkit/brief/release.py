@@ -4,32 +4,14 @@ from __future__ import annotations
 
 import datetime as dt
 from collections.abc import Iterable
-from dataclasses import dataclass
 from typing import Any
 
 from briefkit.brief.check import findings, page_standing, stands_against
-from briefkit.brief.compare import Difference, explained
-from briefkit.brief.crew_page import DRAFT
-from briefkit.brief.identity import Brief, Signature, load_brief
-from briefkit.brief.seal import Seal, seal_of
+from briefkit.brief.compare import explained
+from briefkit.brief.identity import Brief, load_brief
+from briefkit.brief.seal import seal_of
 from briefkit.brief.sign import valid
-from briefkit.envelope.reductions import ReductionTable
-
-
-@dataclass(frozen=True)
-class Standing:
-    """What a page says of itself: `mark` is "" for a released one, `expired` the day it ended where it has.
-
-    `signed` are the signatures that hold, by role; `relaxed` the figures less conservative than in the last issued
-    revision, each with the reason given; `table` the table of turns the page was looked at with.
-    """
-
-    mark: str
-    seal: Seal
-    signed: dict[str, Signature]
-    relaxed: tuple[tuple[Difference, str], ...]
-    table: ReductionTable | None
-    expired: dt.date | None = None
+from briefkit.brief.standing import DRAFT, Standing
 
 
 def standing(brief: Brief, today: dt.date, cells: Iterable[Any] | None = None) -> Standing:

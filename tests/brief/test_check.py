@@ -10,9 +10,9 @@ from pathlib import Path
 import pytest
 
 from briefkit.brief.check import Finding, Level, findings
-from briefkit.brief.crew_page import DRAFT
 from briefkit.brief.identity import load_brief
 from briefkit.brief.release import standing
+from briefkit.brief.standing import DRAFT
 from briefkit.errors import FaultyFile
 
 TODAY = dt.date(2030, 6, 1)

@@ -11,8 +11,9 @@ import pytest
 from briefkit import units
 from briefkit.aircraft.model import Hub, ManualSpeed, Rotation, Stated
 from briefkit.brief import derivation, front, recognition
-from briefkit.brief.crew_page import DRAFT, crew_page
+from briefkit.brief.crew_page import crew_page
 from briefkit.brief.identity import load_brief
+from briefkit.brief.standing import DRAFT
 from briefkit.envelope import cues
 from briefkit.envelope.reductions import reductions
 

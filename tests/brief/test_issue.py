@@ -16,12 +16,13 @@ from hypothesis import strategies as st
 
 from briefkit.brief.check import Level, findings, stands_against
 from briefkit.brief.compare import compare, revision_of
-from briefkit.brief.crew_page import DRAFT, table_of
+from briefkit.brief.crew_page import table_of
 from briefkit.brief.export import released
 from briefkit.brief.identity import Brief, load_brief
 from briefkit.brief.issue import State, digest, find_register, issue, opened, verify
 from briefkit.brief.register import Issued, Register, load_register
 from briefkit.brief.release import standing
+from briefkit.brief.standing import DRAFT
 from briefkit.errors import BriefkitError
 
 DAY = dt.date(2030, 3, 20)
