@@ -20,7 +20,9 @@ import numpy as np
 
 from briefkit import units
 from briefkit.aircraft.chart import Axis, ReadingRule
+from briefkit.aircraft.legs import KEY as LEGS
 from briefkit.aircraft.model import Aircraft, Stated
+from briefkit.brief import compare_legs as legs
 from briefkit.brief.identity import Brief, load_brief
 from briefkit.brief.register import Turn
 from briefkit.envelope.reductions import ReductionTable, RowKind, reductions
@@ -77,7 +79,7 @@ def revision_of(folder: Path | str, turns: tuple[Turn, ...] | None = None) -> Re
 
 def compare(old: Revision, new: Revision) -> list[Difference]:
     """Everything that changed, figures first, those that became less conservative before the others."""
-    found = [*_turns(old, new), *_vne(old.brief.aircraft, new.brief.aircraft), *_figures(old, new)]
+    found = [*_turns(old, new), *_vne(old.brief.aircraft, new.brief.aircraft), *_figures(old, new), *_legs(old, new)]
     found.sort(key=lambda one: not one.less_conservative)
     found += [*_words(old.brief, new.brief), *_cells(old.brief, new.brief)]
     return [replace(one, name=_typeable(one.name)) for one in found]
@@ -233,6 +235,8 @@ def _figures(old: Revision, new: Revision) -> Iterator[Difference]:
             if a.text != b.text:
                 yield Difference(name, a.text, b.text)
             continue
+        if a is not None and b is not None and a.text == b.text and _same(a.value, b.value):
+            b = replace(b, text=f"{b.text}, {'narrower' if b.spread < a.spread else 'wider'} spread")
         # A limit that is gone holds nobody back any more; a new one can only hold back.
         loose = b is None if a is None or b is None else (b.value - a.value) * safer < -_SLACK
         yield Difference(name, a.text if a else "", b.text if b else "", bool(safer) and loose and a is not None)
@@ -259,7 +263,7 @@ def _stated(brief: Brief) -> Iterator[tuple[str, tuple[Stated, int]]]:
     if fleet is not None:
         yield "brief_bank", (fleet.brief_bank, -1)
         if fleet.fuel_burn is not None:
-            yield "fuel_burn", (fleet.fuel_burn, -1)  # a larger one makes the aircraft lighter along a leg
+            yield "fuel_burn", (legs.burn_at_least(fleet.fuel_burn), -1)  # more: lighter lines sooner along a leg
         for key in ("imc_speed", "minimum_manoeuvring_speed", "climb"):
             if (stated := getattr(fleet, key)) is not None:
                 yield key, (stated, 1)
@@ -269,6 +273,28 @@ def _stated(brief: Brief) -> Iterator[tuple[str, tuple[Stated, int]]]:
             shift = 0.0 if table.above_standard else units.ZERO_CELSIUS
             place = f"hover {table.kind}, {mass}, {units.show_number(table.columns[index[1]] - shift)}"
             yield place, (Stated(float(value), units.show(float(value), "height", aircraft.units.height), ""), -1)
+
+
+def _legs(old: Revision, new: Revision) -> Iterator[Difference]:
+    """The legs on either revision's page: figure by figure, or whole where one of the two does not have it."""
+    then, now = legs.legs_of(old.brief), legs.legs_of(new.brief)
+    for name in dict.fromkeys([*then, *now]):
+        a, b = then.get(name), now.get(name)
+        was_on, is_on = legs.on_page(old.brief, a), legs.on_page(new.brief, b)
+        if not was_on and not is_on:
+            continue
+        if a is None or b is None or was_on is not is_on:
+            yield Difference(name, legs.whole(old.brief, a), legs.whole(new.brief, b), is_on and not was_on)
+            continue
+        for (figure, one, safer), (_, other, _) in zip(legs.figures_of(a), legs.figures_of(b), strict=True):
+            moved = not _same(one.value, other.value)
+            if moved or one.text != other.text:
+                loose = (other.value - one.value) * safer < 0.0
+                yield Difference(f"{name}, {figure}", one.text, other.text, moved and loose)
+        if a.work_area != b.work_area:
+            yield Difference(f"{name}, work area", a.work_area, b.work_area)
+        if a.source != b.source:
+            yield Difference(f"{name}, source", a.source, b.source)
 
 
 def _words(old: Brief, new: Brief) -> Iterator[Difference]:
@@ -301,7 +327,8 @@ def _texts(brief: Brief) -> dict[str, str]:
         "calibration": "; ".join(" ".join(row) for row in aircraft.calibration.text),
     }
     texts |= {f"manual speed, {speed.label}, words": speed.text for speed in aircraft.speeds}
-    texts |= {f"source of {key}": source for key, source in (*aircraft.sources, *operation.sources) if source}
+    sources = (one for one in (*aircraft.sources, *operation.sources) if not one[0].startswith(f"{LEGS} "))
+    texts |= {f"source of {key}": source for key, source in sources if source}  # a leg's stands by its name
     return texts
 
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import shutil
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
@@ -10,6 +11,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from briefkit import units
+from briefkit.aircraft.operation import load_operation
 from briefkit.brief.compare import Difference, Revision, compare, explained, relaxed, revision_of
 from briefkit.brief.identity import load_brief
 from briefkit.brief.register import Turn
@@ -169,13 +171,11 @@ def two_brief(examples: Path):
 def test_words_dates_sources_and_cells_are_listed(revisions, signing, nb) -> None:
     _, new, differences = revisions
     signing.edit(new / "brief.toml", ("2032-02-29", "2031-12-31"), ("OM-C rev 9", "OM-C rev 10"))
-    burn = ('value = "66 lb/h"', 'value = "76 lb/h"')
-    signing.edit(new.parent / "operation.toml", ('brief_bank = "30 deg"  ', 'brief_bank = "25 deg"  '), burn)
+    signing.edit(new.parent / "operation.toml", ('brief_bank = "30 deg"  ', 'brief_bank = "25 deg"  '))
     nb.write(new / "brief.ipynb", nb.text("# Why we slow down\n\nHeavy, high, cold."), nb.code(nb.slider))
     found = named(differences())
     assert found["expires"] == ("2032-02-29", "2031-12-31", False)
     assert found["brief_bank"] == ("30 deg", "25 deg", False)
-    assert found["fuel_burn"] == ("66 lb/h", "76 lb/h", True)  # along a leg the lighter lines come sooner
     assert found["notebook cell 1"] == ("Heavy, high, hot.", "Heavy, high, cold.", False)
     assert "OM-C rev 10" in found["basis"][1]
     # At 25 degrees crews were told to be 10 kt below VNE, and are now told 5.
@@ -201,3 +201,88 @@ def test_a_reason_answers_the_figures_it_names_and_no_others(complete: Path, sig
 def test_units_of_another_airspeed_indicator_are_converted() -> None:
     """One knot is 1.852 km/h (definition): 10 kt off VNE is more than 10 km/h off it."""
     assert units.from_si(units.to_si(10.0, "speed", "kt"), "speed", "km/h") == pytest.approx(18.52)
+
+
+# -- legs: along them the lines of section 2 become lighter ----------------------------------------------------------
+
+BURN = 'value = "66 lb/h", spread = "10 %"'
+SURVEY = "leg Vellmark survey, full tanks"
+WHOLE = "2,006 lb at take-off, fuel 183 lb, reserve 33 lb, in vellmark (OM-C 5.1 rev 9)"
+
+
+@pytest.fixture
+def edited(two_brief, examples: Path, tmp_path: Path, monkeypatch: pytest.MonkeyPatch):
+    """What compare finds after edits of the operation file; charts and turns stay as they are, and are not read."""
+    monkeypatch.setattr("briefkit.brief.compare._vne", lambda *_: ())
+
+    def found(*edits: tuple[str, str], back: bool = False) -> dict[str, tuple[str, str, bool]]:
+        text = (examples / "operation.toml").read_text(encoding="utf-8")
+        for was, now in edits:
+            assert was in text
+            text = text.replace(was, now, 1)
+        (tmp_path / "operation.toml").write_text(text, encoding="utf-8")
+        new = Revision(replace(two_brief, operation=load_operation(tmp_path)), ())
+        old = Revision(two_brief, ())
+        return named(compare(new, old) if back else compare(old, new))
+
+    return found
+
+
+@pytest.mark.parametrize(
+    ("typed", "shown", "less"),
+    [
+        # The lower end of the burn is what counts: 59.4 lb/h of 66 give or take 6.6, by hand.
+        ('"66 lb/h", spread = "2 %"', "66 lb/h, give or take 1.32 (at least 64.68 lb/h)", True),
+        ('"60 lb/h", spread = "0.1 lb/h"', "60 lb/h, give or take 0.1 (at least 59.9 lb/h)", True),
+        ('"76 lb/h", spread = "30 lb/h"', "76 lb/h, give or take 30 (at least 46 lb/h)", False),
+        ('"76 lb/h", spread = "10 %"', "76 lb/h, give or take 7.6 (at least 68.4 lb/h)", True),
+        ('"30 kg/h", spread = "3.1 kg/h"', "30 kg/h, give or take 3.1 (at least 26.9 kg/h)", False),  # 59.3 lb/h
+    ],
+)
+def test_a_burn_is_compared_at_its_lower_end_and_shown_with_its_spread(edited, typed, shown, less) -> None:
+    found = edited((BURN, f"value = {typed}"))
+    assert found["fuel_burn"] == ("66 lb/h, give or take 6.6 (at least 59.4 lb/h)", shown, less)
+    assert edited((BURN, f"value = {typed}"), back=True)["fuel_burn"][2] is not less
+
+
+@pytest.mark.parametrize(
+    ("was", "now", "name", "less"),
+    [
+        ('take_off_mass = "2,006 lb"', 'take_off_mass = "1,800 lb"', "take-off mass", True),
+        ('reserve = "33 lb"', 'reserve = "60 lb"', "reserve", False),
+        ('fuel = "183 lb"', 'fuel = "190 lb"', "fuel", False),
+        ("OM-C 5.1 rev 9", "OM-C 5.1 rev 10", "source", False),
+    ],
+)
+def test_each_figure_of_a_leg_is_listed(edited, was, now, name, less) -> None:
+    plain = [text.rpartition(" = ")[2].strip('"') for text in (was, now)]
+    assert edited((was, now)) == {f"{SURVEY}, {name}": (*plain, less)}
+    back = edited((was, now), back=True)[f"{SURVEY}, {name}"]
+    assert back == (*reversed(plain), name == "reserve")
+
+
+def test_a_leg_that_is_new_is_less_conservative_and_one_that_is_gone_is_not(edited) -> None:
+    """Without it the line of the take-off mass held all the way; a leg under a new name is a new one."""
+    renamed = ('name = "Vellmark survey, full tanks"', 'name = "Survey"')
+    assert edited(renamed) == {SURVEY: (WHOLE, "", False), "leg Survey": ("", WHOLE, True)}
+    # Of this aircraft in another work area it is not on the page; another aircraft's never is.
+    moved = ('work_area = "vellmark"\ntake_off_mass = "2,006 lb"', 'work_area = "harl"\ntake_off_mass = "2,006 lb"')
+    assert edited(moved) == {SURVEY: (WHOLE, "in harl, not on this page", False)}
+    assert edited(moved, back=True) == {SURVEY: ("in harl, not on this page", WHOLE, True)}
+    assert edited(moved, renamed)[SURVEY] == (WHOLE, "", False)
+    assert edited(('take_off_mass = "3,350 kg"', 'take_off_mass = "3,100 kg"')) == {}
+
+
+def test_two_legs_of_one_name_are_told_apart(edited, examples: Path) -> None:
+    text = (examples / "operation.toml").read_text(encoding="utf-8")
+    first = text[text.index("[[legs]]") : text.rindex("[[legs]]")]
+    lighter = first.replace("2,006 lb", "1,800 lb")
+    found = edited((first, first + lighter))
+    assert list(found) == [f"{SURVEY} (2)"]
+    assert found[f"{SURVEY} (2)"][2] is True
+
+
+def test_a_spread_that_alone_changed_is_said(edited) -> None:
+    wider = ('brief_bank = "30 deg"  ', 'brief_bank = { value = "30 deg", spread = "1 deg" }  ')
+    assert edited(wider) == {"brief_bank": ("30 deg", "30 deg, wider spread", False)}
+    assert edited(wider, back=True) == {"brief_bank": ("30 deg", "30 deg, narrower spread", False)}
