@@ -11,12 +11,14 @@ import numpy as np
 from numpy.typing import NDArray
 
 from briefkit import units
+from briefkit.aircraft.chart import Axis
 from briefkit.aircraft.model import Aircraft
-from briefkit.envelope import region
+from briefkit.envelope import chart_steps, region
 from briefkit.envelope.condition import Condition, Conditions
 from briefkit.envelope.equivalent import equivalent_vnes
 from briefkit.envelope.onset import TipAngles, onset_speed, tip_angles
 from briefkit.envelope.onset_build import TARGETS
+from briefkit.envelope.partings import ends, partings
 from briefkit.envelope.solution import rotor_of
 from briefkit.envelope.speeds import indicated_of
 from briefkit.envelope.spread import OnsetBands, quick_onset_bands
@@ -30,7 +32,7 @@ BAND_POINTS: Final = 31
 _STEEPEST: Final = math.radians(60.0)
 _STRONGEST: Final = {"ft": 2000.0 * units.FOOT / 60.0, "m": 10.0}  # m/s of rising air: round in the type's own unit
 _STEP: Final = 1e-6  # rad past a bank is past it
-_SAME, _SEEN = 0.05, 0.5  # in the type's unit: speeds closer than the first are one, those within the second look it
+_JUMP: Final = 0.5  # in the type's unit: more from one point to the next is a step of the chart
 
 
 class Against(StrEnum):
@@ -41,6 +43,13 @@ class Against(StrEnum):
     ROTOR_SPEED = "rotor speed"
     BANK = "bank"
     GUST = "gust"
+
+
+_CHART_AXES: Final = {
+    Against.ALTITUDE: Axis.HEIGHT,
+    Against.MASS: Axis.MASS,
+    Against.ROTOR_SPEED: Axis.ROTOR_SPEED,
+}
 
 
 class Margin(StrEnum):
@@ -57,14 +66,15 @@ class EquivalentCurve:
     """The equivalent VNE at one bank (n,), in the type's unit; NaN with a reason where refused.
 
     `bank_deg` is None where the boundary is drawn against the bank itself. `parts` are the places along x where it
-    leaves the manual's VNE as x gets harder on the rotor, `ends` those where it has no answer any more though x goes
-    on: the last or first place that has one.
+    leaves the manual's VNE as x gets harder on the rotor, `meets` those where it comes back to it, `ends` those where
+    it has no answer any more though x goes on: the last or first place that has one.
     """
 
     bank_deg: float | None
     ias: Floats
     reason: Reasons
     parts: tuple[float, ...] = ()
+    meets: tuple[float, ...] = ()
     ends: tuple[float, ...] = ()
 
 
@@ -72,7 +82,8 @@ class EquivalentCurve:
 class Boundary:
     """Speeds against one quantity, in the units of the type's manual, indicated.
 
-    `x` and `vne` are (n,); the onset arrays are (m,) over `onset_x`, at the condition's own load factor and rotor
+    `x` and `vne` are (n,), x rising and closer where the chart has its entries: the straight lines between lie nowhere
+    above the chart. The onset arrays are (m,) over `onset_x`, at the condition's own load factor and rotor
     speed where these are not what is varied; NaN where there is no such indicated speed. Against a gust there is no
     equivalent VNE: a gust's angle at the slow tip is larger than any load factor shows, so only the onset is drawn.
     `calibrated` is the range of the airspeed calibration, None where the manual has none. `limited` says whether the
@@ -123,7 +134,7 @@ def boundary(
     Raises `ValueError` for another `against`; `OutsideLimits` where the condition leaves nothing to draw.
     """
     over = Against(against)
-    values = _permitted(aircraft, condition, over, CHART_POINTS)
+    values = _places(aircraft, condition, over, banks_deg)
     quantity, unit, label = _axis(aircraft, over)
     x = np.asarray(units.from_si(values, quantity, unit))
     vne, curves = _curves(aircraft, _along(condition, over, values), over, banks_deg, x)
@@ -167,15 +178,35 @@ def with_band(aircraft: Aircraft, condition: Condition, chart: Boundary) -> Boun
     )
 
 
+def _places(aircraft: Aircraft, condition: Condition, over: Against, banks_deg: tuple[float, ...]) -> Floats:
+    """Permitted values along the axis [SI], as many as it takes to draw what the chart says and nothing above it."""
+    values = _permitted(aircraft, condition, over, CHART_POINTS)
+    if over in _CHART_AXES:
+        values = chart_steps.with_entries(aircraft.vne, _CHART_AXES[over], condition.oat, values)
+    if over is Against.GUST or not chart_steps.steps(aircraft.vne):
+        return values
+
+    def lines(at: Floats) -> Floats:
+        vne, curves = _curves(aircraft, _along(condition, over, at), over, banks_deg, at)
+        return np.stack([vne, *(curve.ias for curve in curves)])
+
+    return chart_steps.closer(values, lines, _JUMP)
+
+
 def _curves(
     aircraft: Aircraft, many: Conditions, over: Against, banks_deg: tuple[float, ...], x: Floats
 ) -> tuple[Floats, tuple[EquivalentCurve, ...]]:
-    """The manual's VNE and every curve, asked for in one batch: level at 100 % first, then bank by bank."""
+    """The manual's VNE and every curve, asked for in one batch: level first, then bank by bank.
+
+    The manual's VNE is that at 100 %, but where its chart has rotor speeds: there it is that of the rotor as it turns.
+    """
     banks: tuple[float | None, ...] = {Against.GUST: (), Against.BANK: (None,)}.get(over, banks_deg)
     count, lines = len(many), len(banks)
     wide = many.take(np.tile(np.arange(count), 1 + lines))
     load, rotor, climb = (array.copy() for array in (wide.load_factor, wide.rotor_speed, wide.climb))
-    load[:count], rotor[:count], climb[:count] = 1.0, 1.0, 0.0
+    load[:count], climb[:count] = 1.0, 0.0
+    if not aircraft.vne.rotor_speeds:
+        rotor[:count] = 1.0
     for line, bank in enumerate(banks, start=1):
         if bank is not None:
             load[line * count : (line + 1) * count] = 1.0 / math.cos(math.radians(bank))
@@ -188,8 +219,8 @@ def _curves(
         own = slice(line * count, (line + 1) * count)
         turning = np.full(count, math.radians(bank)) if bank is not None else np.arccos(1.0 / many.load_factor)
         ias = np.minimum(answers.ias[own], own_in_a_turn(aircraft, level, turning))
-        parts = _parts(x, vne, ias, slower=over is Against.ROTOR_SPEED)
-        curves.append(EquivalentCurve(bank, ias, answers.reason[own], parts, _ends(x, ias)))
+        parts, meets = partings(x, vne, ias, slower=over is Against.ROTOR_SPEED)
+        curves.append(EquivalentCurve(bank, ias, answers.reason[own], parts, meets, ends(x, ias)))
     return vne, tuple(curves)
 
 
@@ -207,40 +238,6 @@ def own_in_a_turn(aircraft: Aircraft, vne: Floats, bank: Floats) -> Floats:
             said = float(units.from_si(own.speed.value, "speed", unit))
             permitted = np.where(turning, np.minimum(permitted, said), permitted)
     return permitted
-
-
-def _parts(x: Floats, vne: Floats, ias: Floats, *, slower: bool) -> tuple[float, ...]:
-    """Where a curve leaves VNE for lower speeds, going up x (down x if `slower`): the straight line through its next
-    two points, carried back to VNE, within the step it lies in.
-    """
-    below = vne - ias
-    with np.errstate(invalid="ignore"):
-        lower = below > _SAME
-    # A stretch that never leaves VNE by as much as can be seen is none.
-    edges = np.flatnonzero(np.diff(np.concatenate(([False], lower, [False])).astype(int)))
-    for first, end in zip(edges[::2], edges[1::2], strict=True):
-        lower[first:end] = below[first:end].max() > _SEEN
-    known = np.isfinite(below)
-    found = []
-    for i in np.flatnonzero((lower[:-1] != lower[1:]) & known[:-1] & known[1:]):
-        if bool(lower[i + 1]) is slower:  # it comes back to VNE here
-            continue
-        step = 1 if lower[i + 1] else -1
-        first = i + 1 if lower[i + 1] else i  # the first point under VNE, and the one behind it
-        behind = first + step
-        share = 1.0
-        if 0 <= behind < len(x) and known[behind] and below[behind] > below[first]:
-            share = min(below[first] / (below[behind] - below[first]), 1.0)
-        found.append(float(x[first] - share * (x[first] - x[first - step])))
-    return tuple(found)
-
-
-def _ends(x: Floats, ias: Floats) -> tuple[float, ...]:
-    known = np.flatnonzero(np.isfinite(ias))
-    if not len(known):
-        return ()
-    outer = ((known[0], 0), (known[-1], len(x) - 1))
-    return tuple(float(x[end]) for end, last in outer if end != last)
 
 
 def _band(aircraft: Aircraft, condition: Condition, over: Against, values: Floats) -> OnsetBands:

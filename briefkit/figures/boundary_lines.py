@@ -104,7 +104,8 @@ class Lines:
         upper = np.where(np.isfinite(self.upper), self.upper, top)
         found = []
         for across, lower in canvas.finite_runs(self.band_x, self.lower):
-            fine = np.union1d(np.linspace(across[0], across[-1], 121), across)
+            inside = self.x[(self.x > across[0]) & (self.x < across[-1])]  # a step of VNE stays a step
+            fine = np.unique(np.concatenate([np.linspace(across[0], across[-1], 121), across, inside]))
             vne = np.interp(fine, self.x, np.where(np.isfinite(self.manual), self.manual, top))
             found.append((fine, np.interp(fine, across, lower), np.interp(fine, self.band_x, upper), vne))
         return found

@@ -3,9 +3,11 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from dataclasses import dataclass
 from functools import cached_property
 from typing import TypeVar
 
+from briefkit import units
 from briefkit.aircraft.model import Aircraft
 from briefkit.envelope import here
 from briefkit.envelope.condition import Condition, Conditions
@@ -14,6 +16,15 @@ from briefkit.envelope.solution import Solution, solve
 from briefkit.errors import Refusal
 
 T = TypeVar("T")
+
+
+@dataclass(frozen=True)
+class ManualVne:
+    """The manual's own VNE at a condition, indicated: `ias` to 0.01, `text` floored to one unit, with unit and kind."""
+
+    ias: float
+    unit: str
+    text: str
 
 
 class Answers:
@@ -34,10 +45,15 @@ class Answers:
         """The equivalent VNE here; raises what `equivalent_vne` raises."""
         return _given(self._equivalent)
 
-    @property
-    def level(self) -> EquivalentVne:
-        """The manual's VNE here: level flight, rotor at 100 %, which is the manual's own number by definition."""
-        return _given(self._level)
+    @cached_property
+    def level(self) -> ManualVne:
+        """The manual's VNE here, whatever the turn, for the chart knows no bank; at the rotor's own speed where
+        the manual prints VNE over that, else at 100 %.
+        """
+        shown = self.aircraft.units
+        indicated = float(here.indicated_vne(self.aircraft, Conditions.of(self.condition))[0])
+        ias = round(float(units.from_si(indicated, "speed", shown.speed)), 2)
+        return ManualVne(ias, shown.speed, f"{units.show_number(units.round_down(ias))} {shown.speed_label()}")
 
     @cached_property
     def _solution(self) -> Solution | Refusal:
@@ -46,11 +62,6 @@ class Answers:
     @cached_property
     def _equivalent(self) -> EquivalentVne | Refusal:
         return _kept(lambda: equivalent_vne(self.aircraft, self.condition))
-
-    @cached_property
-    def _level(self) -> EquivalentVne | Refusal:
-        level = self.condition.changed(load_factor=1.0, rotor_speed=1.0, climb=0.0)
-        return _kept(lambda: equivalent_vne(self.aircraft, level))
 
 
 def _kept(ask: Callable[[], T]) -> T | Refusal:

@@ -10,11 +10,15 @@ import numpy as np
 from briefkit import units
 from briefkit.aircraft.model import Aircraft, ManualSpeed
 from briefkit.envelope import region
-from briefkit.envelope.boundary import Against, Boundary, EquivalentCurve, Margin
+from briefkit.envelope.boundary import CHART_POINTS, Against, Boundary, EquivalentCurve, Margin
 from briefkit.envelope.condition import Condition
 from briefkit.envelope.equivalent import covered_bank
+from briefkit.envelope.margin import margin_to_vne
+from briefkit.envelope.partings import SAME
+from briefkit.envelope.spread import onset_band
 from briefkit.errors import Reason, Refusal
 from briefkit.figures.boundary_lines import Curves
+from briefkit.units import Speed
 from briefkit.widgets import words
 
 _TIE: Final = "\u00a0"
@@ -44,7 +48,7 @@ def drawn(aircraft: Aircraft, condition: Condition, curves: Boundary) -> Curves:
         onset_central=curves.onset_central,
         onset_upper=curves.onset_upper,
         parts=[
-            [(place, f"{name(curve)}\nparts at {_at(curves, place, curve)}") for place in curve.parts]
+            [(place, f"{name(curve)}\nparts at {_at(curves, place)}") for place in curve.parts]
             for curve in curves.equivalent
         ],
         ceiling=ceiling,
@@ -64,21 +68,20 @@ def _place(curves: Boundary, x: float) -> str:
     return f"{_number(curves, x)}{'' if unit == '°' else _TIE}{unit}"
 
 
-def _at(curves: Boundary, x: float, curve: EquivalentCurve) -> str:
+def _at(curves: Boundary, x: float) -> str:
     """Where a line leaves VNE, rounded towards the part of the axis where VNE still stands."""
-    beyond = np.interp(x + 0.5 * (curves.x[1] - curves.x[0]), curves.x, curves.vne - curve.ias)
-    return _rounded(curves, x, up=math.isfinite(beyond) and not beyond > 0.0)
+    return _rounded(curves, x, up=_slower(curves))
 
 
 def _last(curves: Boundary, x: float, curve: EquivalentCurve) -> str:
     """Where a line ends, rounded towards the part of the axis where it still has an answer."""
-    before = np.interp(x - 0.5 * (curves.x[1] - curves.x[0]), curves.x, curve.ias)
+    before = np.interp(x - 0.5 * (curves.x[-1] - curves.x[0]) / CHART_POINTS, curves.x, curve.ias)
     return _rounded(curves, x, up=not math.isfinite(before))
 
 
 def _rounded(curves: Boundary, x: float, *, up: bool) -> str:
     step = {"ft": 100.0, "m": 50.0, "lb": 10.0, "kg": 10.0, "%": 0.1}.get(curves.x_unit, 1.0)
-    share = round(x / step, 6)
+    share = round(x / step, 3)  # a hair beside an entry of the chart is the entry
     return _place(curves, (math.ceil(share) if up else math.floor(share)) * step)
 
 
@@ -112,22 +115,55 @@ def margin(curves: Boundary, x: float) -> str:
     if found in (Margin.NONE, Margin.UNRESOLVED):
         return str(found)
     central = float(np.interp(x, curves.onset_x, curves.onset_central))
-    apart = central - float(np.interp(x, curves.x, curves.vne))
-    shown = units.round_down(apart) if found is Margin.ABOVE else units.round_up(-apart)
-    return f"{units.show_number(shown)} {found}"
+    return _apart(central - float(np.interp(x, curves.x, curves.vne)))
 
 
-def onset_here(aircraft: Aircraft, curves: Boundary, x: float) -> str:
-    """The band at the present condition in one sentence, told from its lower end."""
+def _apart(above: float) -> str:
+    if above > 0.0:
+        return f"{units.show_number(units.round_down(above))} {Margin.ABOVE}"
+    return f"{units.show_number(units.round_up(-above))} {Margin.UNDER}"
+
+
+def onset_here(aircraft: Aircraft, curves: Boundary, x: float, solved_at: Condition | None = None) -> str:
+    """The band at the present condition in one sentence, told from its lower end.
+
+    Where the band as drawn has none, it is solved for `solved_at` if that is given: some 60 ms, too slow to follow.
+    """
     found, low = band(curves, x), float(np.interp(x, curves.onset_x, curves.onset_lower))
-    if not math.isfinite(low):
-        return "There is no onset band here: it lies outside the airspeed calibration or the rotor model."
-    label, said = aircraft.units.speed_label(), margin(curves, x)
-    vne = float(np.interp(x, curves.x, curves.vne))
+    if math.isfinite(low):
+        return _onset(aircraft, curves, x, f"here is {found}", low, margin(curves, x))
+    if solved_at is None:
+        return (
+            "There is no onset band here: it lies outside the airspeed calibration, the rotor model or the table it is "
+            "drawn from."
+        )
+    return _solved(aircraft, curves, x, solved_at)
+
+
+def _solved(aircraft: Aircraft, curves: Boundary, x: float, condition: Condition) -> str:
+    """The band of one condition that the table does not reach, by the rotor model itself."""
+    try:
+        alone = onset_band(aircraft, condition)
+    except Refusal as refusal:
+        return f"There is no onset band here: {refusal.reason}."
+    if alone.lower is None:
+        return "There is no onset band here: its lower end lies outside the airspeed calibration."
+    vne = Speed.of(float(np.interp(x, curves.x, curves.vne)), alone.unit)
+    found, said = margin_to_vne(aircraft, alone, vne), str(Margin.UNRESOLVED)
+    if found.resolved and found.margin is not None:
+        said = _apart(found.margin.number)
+    ends = [units.show_number(units.round_down(end)) for end in (alone.lower, alone.upper) if end is not None]
+    told = " to ".join(ends) if len(ends) == 2 else f"from {ends[0]}"
+    where = f"here, solved for this condition alone because the drawn one ends before it, is {told}"
+    return _onset(aircraft, curves, x, where, alone.lower, said)
+
+
+def _onset(aircraft: Aircraft, curves: Boundary, x: float, where: str, low: float, said: str) -> str:
+    label, vne = aircraft.units.speed_label(), float(np.interp(x, curves.x, curves.vne))
     reduced = " It begins under VNE." if low < vne else " It begins above VNE, which governs."
     told = "against VNE it is not resolved" if said == str(Margin.UNRESOLVED) else f"first signs are {said}"
     unit = "" if said == str(Margin.UNRESOLVED) else f" ({aircraft.units.speed})"
-    return f"The onset band here is {found} {label}, softer than the chart; {told}{unit}.{reduced}"
+    return f"The onset band {where} {label}, softer than the chart; {told}{unit}.{reduced}"
 
 
 def covered_load(aircraft: Aircraft, condition: Condition) -> str:
@@ -138,6 +174,11 @@ def covered_load(aircraft: Aircraft, condition: Condition) -> str:
         return f"No load factor above level flight is covered here: {words.why(refusal)}."
     load = math.floor(100.0 / math.cos(math.radians(bank)) + 1e-6) / 100.0
     return f"The manual's chart covers a load factor of {load:.2f} here; no speed is given for a gust."
+
+
+def rotor_there(aircraft: Aircraft, rotor_speed: float) -> str:
+    """The rotor speed of a point on a chart that has them; nothing on any other, whose points are at 100 %."""
+    return f", rotor at {100.0 * rotor_speed:.4g} %" if aircraft.vne.rotor_speeds else ""
 
 
 def own_turn(aircraft: Aircraft, speed: float) -> str:
@@ -163,7 +204,7 @@ def notes(aircraft: Aircraft, curves: Boundary) -> tuple[str, ...]:
     for curve in curves.equivalent:
         told.setdefault(_told(curves, curve), []).append(name(curve))
     for where, called in told.items():
-        listed = " and ".join([", ".join(called[:-1]), called[-1]] if len(called) > 1 else called)
+        listed = _listed(called)
         said.append(f"{listed[0].upper()}{listed[1:]}: {where}.")
     if curves.calibrated is not None:
         foot, top = (units.show_number(end) for end in curves.calibrated)
@@ -172,7 +213,10 @@ def notes(aircraft: Aircraft, curves: Boundary) -> tuple[str, ...]:
             "is drawn outside."
         )
     if not np.all(np.isfinite(curves.onset_lower) & np.isfinite(curves.onset_upper)):
-        said.append("Where the band or its upper end is missing, that speed is outside the calibration or the model.")
+        said.append(
+            "Where the band or its upper end is missing, that speed is outside the calibration, the model or the table "
+            "that the band is drawn from."
+        )
     said += [
         f"Where a blue line ends: {reason}."
         for reason in sorted({str(r) for curve in curves.equivalent for r in curve.reason if r} - {_ENDS})
@@ -189,11 +233,43 @@ def _told(curves: Boundary, curve: EquivalentCurve) -> str:
     known = np.isfinite(curve.ias)
     if not known.any():
         return "no figure anywhere on this line"
-    if not curve.parts:
-        apart = bool(np.nanmax(curves.vne[known] - curve.ias[known]) > 0.05)
-        where = "below the manual's VNE all along" if apart else "nothing is taken off, the manual's VNE holds"
+    below = curves.vne[known] - curve.ias[known]
+    if len(curve.parts) == 1 and len(curve.meets) <= 1:
+        where = f"parts from the manual's VNE at {_at(curves, curve.parts[0])}"
+        if curve.meets:
+            where += f" and meets it again at {_rounded(curves, curve.meets[0], up=not _slower(curves))}"
+    elif curve.parts or curve.meets:
+        where = f"below the manual's VNE {_listed(_stretches(curves, curve))}"
+    elif (below > SAME).all():
+        where = "below the manual's VNE all along"
+    elif (below > SAME).any():
+        most = units.show_number(math.ceil(round(10.0 * float(below.max()), 6)) / 10.0, 1)
+        where = f"at most {most}{_TIE}{curves.speed_unit} below the manual's VNE"
     else:
-        where = "parts from the manual's VNE at " + " and ".join(_at(curves, x, curve) for x in curve.parts)
+        where = "nothing is taken off, the manual's VNE holds"
     if curve.ends:
-        where += "; the chart ends at " + " and ".join(_last(curves, x, curve) for x in curve.ends)
+        where += "; the chart ends at " + _listed([_last(curves, x, curve) for x in curve.ends])
     return where
+
+
+def _slower(curves: Boundary) -> bool:
+    """Whether the rotor has it harder towards the low end of the axis."""
+    return curves.against is Against.ROTOR_SPEED
+
+
+def _stretches(curves: Boundary, curve: EquivalentCurve) -> list[str]:
+    """Where a line is under VNE, from low to high, each rounded outwards."""
+    into, out = (curve.meets, curve.parts) if _slower(curves) else (curve.parts, curve.meets)
+    told, start = [], ""
+    for x, enters in sorted([(x, True) for x in into] + [(x, False) for x in out]):
+        if enters:
+            start = f"from {_rounded(curves, x, up=False)}"
+        else:
+            end = _rounded(curves, x, up=True)
+            told.append(f"{start} to {end}" if start else f"up to {end}")
+            start = ""
+    return [*told, start] if start else told
+
+
+def _listed(items: list[str]) -> str:
+    return " and ".join([", ".join(items[:-1]), items[-1]] if len(items) > 1 else items)

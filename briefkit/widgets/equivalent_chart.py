@@ -14,7 +14,7 @@ from briefkit.envelope.equivalent import EquivalentVne
 from briefkit.errors import Refusal, SetBy
 from briefkit.figures.chart import ChartFigure, Mark
 from briefkit.figures.still import Drawing, StillParts, Table
-from briefkit.widgets import closing, words
+from briefkit.widgets import boundary_words, closing, words
 from briefkit.widgets.answers import Answers
 from briefkit.widgets.exhibit import Exhibit
 
@@ -61,7 +61,7 @@ class EquivalentChart(Exhibit):
         self._lines_for(aircraft, condition.mass)
         answer, why = _asked(answers)
         moved = answer is not None and answer.set_by is SetBy.EQUIVALENT
-        vne = answers.level.ias if answer is None else answer.ias + answer.below_vne
+        vne = answers.level.ias
         turn = words.turn(condition)
         mass = units.show(condition.mass, "mass", aircraft.units.mass)
         here = Mark(
@@ -118,6 +118,7 @@ def _caption(aircraft: Aircraft, condition: Condition, level: str, answer: Equiv
         return f"{vne} With {turn or 'the climb'} nothing is taken off: VNE still limits."
     point = answer.chart_point
     there = words.level_point(aircraft, point.mass, point.pressure_altitude, point.temperature)
+    there += boundary_words.rotor_there(aircraft, point.rotor_speed)
     below = units.show_number(units.round_up(answer.below_vne))
     return (
         f"{vne} With {turn or 'the climb'} the rotor is as loaded as level at {there}, where the chart gives "
@@ -151,6 +152,8 @@ def _notes(aircraft: Aircraft) -> tuple[str, ...]:
     notes = ["Dots are the manual's own entries. The answer is never above the manual's VNE here."]
     if aircraft.vne.masses and aircraft.vne.temperatures:
         notes.append("The lines are those for the first mass of the chart that is not lighter.")
+    if aircraft.vne.rotor_speeds and (aircraft.vne.masses or aircraft.vne.temperatures):
+        notes.append("The lines are those for the rotor speed of the chart that is nearest to 100 %.")
     return tuple(notes)
 
 

@@ -13,17 +13,18 @@ from briefkit import units
 from briefkit.aircraft.model import Aircraft
 from briefkit.envelope.boundary import Against, Boundary, boundary, own_in_a_turn, with_band
 from briefkit.envelope.condition import Condition
-from briefkit.errors import Reason, Refusal, SetBy
+from briefkit.errors import ReadingError, Reason, Refusal, SetBy
 from briefkit.figures.boundary import BoundaryFigure
 from briefkit.figures.boundary_lines import Here
 from briefkit.figures.still import Drawing, StillParts, Table
 from briefkit.widgets import boundary_words, words
 from briefkit.widgets.answers import Answers
-from briefkit.widgets.exhibit import Exhibit
+from briefkit.widgets.exhibit import Exhibit, Fixed
 
 Floats = NDArray[np.float64]
 
 BANKS: Final = (0.0, 20.0, 30.0)
+_STEEPEST: Final = 80.0  # what a condition may have
 _TABLE_ROWS: Final = 6
 _AXES: Final = {
     Against.ALTITUDE: "pressure altitude",
@@ -63,7 +64,7 @@ class StallBoundary(Exhibit):
         against: str = "pressure altitude",
         banks: tuple[float, ...] = BANKS,
     ) -> None:
-        self._against, self._banks = Against(against), tuple(float(bank) for bank in banks)
+        self._against, self._banks = Against(against), _banks(banks)
         self._kept: tuple[Condition, Boundary] | None = None
         super().__init__(source, condition)
 
@@ -145,7 +146,9 @@ class StallBoundary(Exhibit):
         label = aircraft.units.speed_label()
         words_here = "here" if speed is None else f"here, {units.show_number(speed)} {label}"
         here = Here(float(units.from_si(value, quantity, unit)), speed, words_here)
-        onset = boundary_words.onset_here(aircraft, curves, here.x)
+        # A picture that stands still has the time to solve what the table does not reach.
+        still = condition if isinstance(self._source, Fixed) else None
+        onset = boundary_words.onset_here(aircraft, curves, here.x, still)
         if self._against is Against.GUST:
             covered = boundary_words.covered_load(aircraft, condition)
             return here, f"The manual's VNE here is {answers.level.text} ({aircraft.vne.source}). {covered} {onset}"
@@ -175,6 +178,7 @@ class StallBoundary(Exhibit):
             return here, f"{vne} With {turn} nothing is taken off: VNE still limits."
         point = answer.chart_point
         there = words.level_point(aircraft, point.mass, point.pressure_altitude, point.temperature)
+        there += boundary_words.rotor_there(aircraft, point.rotor_speed)
         below = units.show_number(units.round_up(answer.below_vne))
         return here, (
             f"{vne} With {turn} the rotor is as loaded as level at {there}, where the chart gives "
@@ -197,6 +201,17 @@ class StallBoundary(Exhibit):
             shown = units.show_number(x, 0 if abs(x - round(x)) < 0.05 else 1)
             rows.append((shown, *cells, boundary_words.band(curves, x), boundary_words.margin(curves, x)))
         return Table(header, tuple(rows), f"{label}, power on, floored to 1 {curves.speed_unit}")
+
+
+def _banks(given: tuple[float, ...]) -> tuple[float, ...]:
+    """The banks of the lines, refused in words where one is no bank of a turn or stands twice."""
+    read = ", ".join(f"{bank:g}" if isinstance(bank, int | float) else repr(bank) for bank in given)
+    banks = tuple(float(bank) for bank in given)
+    if not all(0.0 <= bank <= _STEEPEST for bank in banks):  # NaN too
+        raise ReadingError(f"banks of {read} degrees", f"0 to {_STEEPEST:g} degrees each", "one of them is not")
+    if len(set(banks)) < len(banks):
+        raise ReadingError(f"banks of {read} degrees", "each bank once", "two lines would be one")
+    return banks
 
 
 def _level(condition: Condition) -> Condition:
