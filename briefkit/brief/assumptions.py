@@ -12,7 +12,7 @@ from briefkit.aircraft.model import Aircraft, Stated
 from briefkit.brief import words
 from briefkit.brief.derivation import worked_row
 from briefkit.brief.pages import Grid, Ink, Section
-from briefkit.brief.published import published_line
+from briefkit.brief.published import published_lines
 from briefkit.envelope.condition import Condition
 from briefkit.envelope.equivalent import equivalent_vne
 from briefkit.envelope.margin import margin_to_vne
@@ -54,7 +54,7 @@ def assumptions(aircraft: Aircraft, table: ReductionTable) -> Section:
         "What the rotor model assumes",
         before=tuple(before),
         grid=Grid(header, rows, "What each spread does to the onset band", Ink.CONTEXT, numbers=False),
-        after=(*section_line(aircraft), published_line()),
+        after=(*section_line(aircraft), *published_lines()),
     )
 
 
