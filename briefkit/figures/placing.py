@@ -9,7 +9,7 @@ from typing import Final
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from briefkit.figures.canvas import Plane
+from briefkit.figures.canvas import Plane, finite_runs
 
 Floats = NDArray[np.float64]
 
@@ -33,13 +33,15 @@ class Crowd:
 
     def add_line(self, x: ArrayLike, y: ArrayLike, cost: float = np.inf) -> None:
         """A drawn line over rising x, in data units; NaN is a gap. `cost` [px] is how far words go to avoid it."""
-        area, given = self.area, np.asarray(x, dtype=float)
-        across = np.arange(0.0, area.width + _SAMPLE, _SAMPLE)
-        places = area.x.min + (area.x.max - area.x.min) * across / area.width
-        up = np.interp(places, given, np.asarray(y, dtype=float), left=np.nan, right=np.nan)
-        down = (area.y.max - up) / (area.y.max - area.y.min) * area.height
-        known = np.isfinite(down)
-        self._points.append((np.stack([across[known], down[known]]), cost))
+        area = self.area
+        for places, up in finite_runs(x, y):
+            across = (places - area.x.min) / (area.x.max - area.x.min) * area.width
+            down = (area.y.max - up) / (area.y.max - area.y.min) * area.height
+            # Along the line, not along x: a step has a height.
+            along = np.concatenate([[0.0], np.cumsum(np.hypot(np.diff(across), np.diff(down)))])
+            samples = np.append(np.arange(0.0, along[-1], _SAMPLE), along[-1])
+            points = np.stack([np.interp(samples, along, across), np.interp(samples, along, down)])
+            self._points.append((points, cost))
 
     def add_mark(self, across: float, down: float, reach: float = 8.0) -> None:
         """A ring or a dot at a place."""

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import replace
+from numbers import Real
 from typing import Final
 
 import bqplot
@@ -205,12 +206,12 @@ class StallBoundary(Exhibit):
 
 def _banks(given: tuple[float, ...]) -> tuple[float, ...]:
     """The banks of the lines, refused in words where one is no bank of a turn or stands twice."""
-    read = ", ".join(f"{bank:g}" if isinstance(bank, int | float) else repr(bank) for bank in given)
+    read = f"banks of {', '.join(map(str, given))}"
+    if not all(isinstance(bank, Real) and 0.0 <= bank <= _STEEPEST for bank in given):  # NaN too
+        raise ReadingError(read, f"numbers from 0 to {_STEEPEST:g} degrees", "(0, 20, 30) draws three lines")
     banks = tuple(float(bank) for bank in given)
-    if not all(0.0 <= bank <= _STEEPEST for bank in banks):  # NaN too
-        raise ReadingError(f"banks of {read} degrees", f"0 to {_STEEPEST:g} degrees each", "one of them is not")
     if len(set(banks)) < len(banks):
-        raise ReadingError(f"banks of {read} degrees", "each bank once", "two lines would be one")
+        raise ReadingError(read, "each bank once", "two lines would be one")
     return banks
 
 
