@@ -51,8 +51,8 @@ PUBLISHED: Final = (
 )
 
 
-def published_lines() -> tuple[str, str]:
-    """The residuals, worst on either side with its sign, in a sentence for each quantity; what they mean."""
+def published_lines() -> tuple[str, str, str]:
+    """Paragraphs: the residuals in hover, worst on either side with its sign; what they mean; those in flight."""
     quantities = []
     for (what, unsafe), residuals in groupby(PUBLISHED, lambda one: (one.what, one.unsafe)):
         series = (
@@ -60,13 +60,14 @@ def published_lines() -> tuple[str, str]:
             for source, ones in groupby(residuals, lambda one: one.source)
         )
         quantities.append(f"{what.capitalize()} ({unsafe} zero is the unsafe side), {'; '.join(series)}.")
-    intro = "The rotor model less published measurements, to none of which anything in it is fitted."
+    hover, *flight = quantities
     return (
-        f"{intro} {' '.join(quantities)} Left out is what lies at or beyond the model’s end, advance ratio 0.5.",
+        f"The rotor model less published measurements, to none of which anything in it is fitted. {hover}",
         "In NASA TM 81232 tip vortices pass close under two broad blades. Strip theory with uniform inflow does not "
         "know them, and overstates the thrust at a given pitch: the model can put the onset of stall later than it "
         "is. So its absolute onset is soft, and no number on page 1 rests on it but what a stated climb takes off, "
         "which only lowers.",
+        f"{' '.join(flight)} Left out is what lies at or beyond the model’s end, advance ratio 0.5.",
     )
 
 

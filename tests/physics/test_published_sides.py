@@ -113,11 +113,11 @@ def test_g20_the_worst_residuals_are_printed_with_their_signs(residuals: list[tu
 
 
 def test_g20_the_sentences_say_which_points_and_what_follows() -> None:
-    said, meaning = published_lines()
+    said, meaning, flight = published_lines()
     assert "Hover thrust at a given pitch (above zero is the unsafe side), NACA TN 2474, four runs: −9.0 to" in said
     assert "+4.7\u00a0% (11 of 25 points, from 6.4° to 10.4° of pitch), +12.7\u00a0% (1 of 25 points, at 12.0°" in said
     assert "; NASA TM 81232: +26 to +49\u00a0% (9 of 9 points" in said
-    assert "Flapping to the rear (below zero is the unsafe side), NACA TR 487: −0.64 to +0.16°" in said
+    assert "Flapping to the rear (below zero is the unsafe side), NACA TR 487: −0.64 to +0.16°" in flight
     assert "tip vortices" in meaning
     assert "later than it is" in meaning
     assert "no number on page 1 rests on it" in meaning
