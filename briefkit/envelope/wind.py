@@ -17,7 +17,16 @@ from briefkit.aircraft.model import Aircraft
 from briefkit.envelope.condition import Condition, Conditions
 from briefkit.envelope.solution import Solution, phase_lag_deg, rotor_of, state_of
 from briefkit.errors import NoTrim, OutsideLimits, Reason
+from briefkit.physics import airspeed, atmosphere
 from briefkit.physics.trim import trim
+
+
+def fastest_wind(aircraft: Aircraft) -> float:
+    """The fastest relative wind that may be asked for [m/s true]: the chart's fastest entry in the thinnest air."""
+    height = aircraft.limits.max_altitude.value
+    hottest = float(aircraft.limits.max_temperature_at(height))
+    pressure = float(atmosphere.pressure_at(height))
+    return float(airspeed.true_from_calibrated(float(np.nanmax(aircraft.vne.speeds)), pressure, hottest))
 
 
 def solve_in_wind(aircraft: Aircraft, condition: Condition, bearing: float, speed: float) -> Solution:

@@ -85,6 +85,8 @@ def field_of(quantity: str, solution: Solution, root: float, turn: float = 0.0) 
             f"The advancing tip meets Mach {units.show_number(advancing, 2)}, the retreating tip "
             f"{units.show_number(retreating, 2)}."
         )
+        if solution.tas == 0.0:
+            caption = f"Every tip meets Mach {units.show_number(advancing, 2)}."
         return Field(radii, azimuths, mach, "Mach number at the blades", caption, "Mach number", (), 2, "")
     slow = ~(flow.speed[0] >= LEAST_SPEED * float(np.ravel(solution.trim.state.tip_speed)[0]))
     angle = _within(np.degrees(flow.angle[0]), slow, ANGLE)
@@ -93,6 +95,8 @@ def field_of(quantity: str, solution: Solution, root: float, turn: float = 0.0) 
         f"{words.angle(math.degrees(tips.angle[0, -1, 0]))}. First signs of stall are looked for at 12° on the "
         "retreating tip (NACA WR L-110, TR 840)."
     )
+    if solution.tas == 0.0:
+        caption = f"Every tip stands at {words.angle(solution.tip_angle_deg)}."
     note = f"{_ends(ANGLE)} {_SLOW}"
     return Field(radii, azimuths, angle, "Angle of attack", caption, "Angle of attack", (note,), 1, "°")
 

@@ -112,9 +112,10 @@ class FreeTry(w.VBox):  # type: ignore[misc]  # ipywidgets carries no types
 
 def _figures(aircraft: Aircraft, condition: Condition, said: Answers) -> str:
     """One try: what was asked, the manual's figure in black, the computed one under it in the one blue."""
+    of_the_manual = "".join(f"<p class='small'>{escape(line)}</p>" for line in (said.manual.where, *said.manual.also))
     how = f"<p class='small'>{escape(said.computed.how)}</p>" if said.computed.how else ""
     return (
         f"<h3>Tried</h3><p>{escape(words.sentence(aircraft, condition))}</p>"
-        f"<p>The manual: <b>{escape(said.manual.text)}</b></p>"
+        f"<p>The manual: <b>{escape(said.manual.text)}</b></p>{of_the_manual}"
         f"<p class='computed'>Computed: <b>{escape(said.computed.text)}</b></p>{how}"
     )

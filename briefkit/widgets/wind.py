@@ -9,10 +9,10 @@ from html import escape
 from typing import Any, Final
 
 import ipywidgets as w
-import numpy as np
 
 from briefkit import units
 from briefkit.aircraft.model import Aircraft
+from briefkit.envelope.wind import fastest_wind
 from briefkit.errors import ReadingError
 from briefkit.widgets.controls import SLIDER, named_box
 from briefkit.widgets.exhibit import guarded
@@ -63,7 +63,7 @@ class Wind:
 def read_wind(aircraft: Aircraft, wind_from: str, wind: str) -> Wind:
     """The wind as typed: "90 deg" clockwise from the nose, and "17 kt" true or nothing for the condition's airspeed.
 
-    Raises `ReadingError` outside -180 to 360 degrees, below zero, or above the fastest speed on the manual's chart.
+    Raises `ReadingError` outside -180 to 360 degrees, below zero, or above `fastest_wind`.
     """
     bearing = round(math.degrees(units.read(wind_from, "angle")), 6)
     if not -180.0 <= bearing <= 360.0:
@@ -72,10 +72,10 @@ def read_wind(aircraft: Aircraft, wind_from: str, wind: str) -> Wind:
     if not wind.strip():
         return Wind(bearing)
     speed, unit = units.read(wind, "speed"), aircraft.units.speed
-    fastest = float(np.nanmax(aircraft.vne.speeds))
+    fastest = fastest_wind(aircraft)
     if not 0.0 <= speed <= fastest:
-        end = units.show_number(float(units.from_si(fastest, "speed", unit)))
-        raise ReadingError(wind, f"0 to {end} {unit}, the fastest the manual's chart knows")
+        end = units.show_number(units.round_down(float(units.from_si(fastest, "speed", unit))))
+        raise ReadingError(wind, f"0 to {end} {unit} true: the chart's fastest entry in the thinnest air it permits")
     return Wind(bearing, speed)
 
 

@@ -76,6 +76,8 @@ def test_each_try_is_answered_and_logged_as_one(trying, deck, turn):
     assert (round(now.mass / 0.45359237), round(now.oat, 2)) == (1700, 293.15)
     said = answers(deck.aircraft, deck.fleet, now)
     assert f"The manual: {said.manual.text}" in re.sub(" +", " ", shown(trying))
+    beside = (said.manual.where, *said.manual.also)
+    assert [line for line in beside if " ".join(line.split()) not in " ".join(shown(trying).split())] == []
     assert said.computed.text in shown(trying)
     assert "1,700 lb, Hp 8,000 ft, +20 °C, bank 20°, rotor speed 100 %" in shown(trying)
     steps = tried(trying)
