@@ -184,10 +184,11 @@ class BoundaryFigure:
             crowd.add_line([lines.x[0], lines.x[-1]], [curves.ceiling[0]] * 2)
         asked: list[tuple[float, float, tuple[str, ...]]] = []
         bars_x, bars_y = [], []
-        for name, speeds in lines.turns:
-            for place in [] if name in lines.merged else stops(speeds):
+        for turn, (name, speeds) in enumerate(lines.turns):
+            for end, place in enumerate([] if name in lines.merged else stops(speeds)):
+                what = f"{curves.ended[turn][end] if curves.ended else 'chart'} ends"
                 across, down = area.across(float(lines.x[place])), area.down(float(speeds[place]))
-                asked.append((across, down, ("chart ends",) if len(lines.turns) == 1 else (f"{name},", "chart ends")))
+                asked.append((across, down, (what,) if len(lines.turns) == 1 else (f"{name},", what)))
                 bars_x.append([float(lines.x[place])] * 2)
                 bars_y.append([area.y_at(down - 6.0), area.y_at(down + 6.0)])
         put(self._stops, bars_x, bars_y)

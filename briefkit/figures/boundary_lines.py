@@ -38,9 +38,10 @@ class Curves:
     `x` (n,) rising; `manual` (n,) the manual's VNE; `turns` (name, (n,) speeds) of the equivalent VNE;
     `onset_lower`, `onset_central`, `onset_upper` (m,) the absolute onset band over `onset_x` (m,) rising; where only
     its upper end has no value the band is drawn open, up to the end of the calibration or the top of the figure.
-    `parts` are, for each turn, the places where it leaves the manual's VNE, with their words. `ceiling` is where the
-    airspeed calibration ends, with its words: nothing lies above it. `foot` says what bounds the figure left and right
-    and `limited` whether that is the manual.
+    `parts` are, for each turn, the places where it leaves the manual's VNE, with their words; `ended`, for each turn,
+    what ends there ("chart", "line"), from left to right. `ceiling` is where the airspeed calibration ends, with its
+    words: nothing lies above it. `foot` says what bounds the figure left and right and `limited` whether that is the
+    manual.
     """
 
     x: ArrayLike
@@ -51,6 +52,7 @@ class Curves:
     onset_central: ArrayLike
     onset_upper: ArrayLike
     parts: Sequence[Sequence[tuple[float, str]]] = ()
+    ended: Sequence[Sequence[str]] = ()
     ceiling: tuple[float, str] | None = None
     foot: str = ""
     limited: bool = False

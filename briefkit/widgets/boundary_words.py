@@ -51,6 +51,7 @@ def drawn(aircraft: Aircraft, condition: Condition, curves: Boundary) -> Curves:
             [(place, f"{name(curve)}\nparts at {_at(curves, place)}") for place in curve.parts]
             for curve in curves.equivalent
         ],
+        ended=[[_ender(curves, place, curve) for place in curve.ends] for curve in curves.equivalent],
         ceiling=ceiling,
         foot=_foot(aircraft, condition, curves),
         limited=curves.limited,
@@ -71,6 +72,13 @@ def _place(curves: Boundary, x: float) -> str:
 def _at(curves: Boundary, x: float) -> str:
     """Where a line leaves VNE, rounded towards the part of the axis where VNE still stands."""
     return _rounded(curves, x, up=_slower(curves))
+
+
+def _ender(curves: Boundary, x: float, curve: EquivalentCurve) -> str:
+    """What ends where a line does: the chart, or the line alone, for a reason that the notes give."""
+    here = int(np.abs(curves.x - x).argmin())
+    beside = curve.reason[max(here - 1, 0) : here + 2]
+    return "chart" if Reason.BEYOND_CHART in beside.tolist() else "line"
 
 
 def _last(curves: Boundary, x: float, curve: EquivalentCurve) -> str:
@@ -248,7 +256,9 @@ def _told(curves: Boundary, curve: EquivalentCurve) -> str:
     else:
         where = "nothing is taken off, the manual's VNE holds"
     if curve.ends:
-        where += "; the chart ends at " + _listed([_last(curves, x, curve) for x in curve.ends])
+        where += "; " + _listed(
+            [f"the {_ender(curves, x, curve)} ends at {_last(curves, x, curve)}" for x in curve.ends]
+        )
     return where
 
 

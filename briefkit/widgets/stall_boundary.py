@@ -46,6 +46,8 @@ _SHORT: Final = {
     Reason.TOO_COLD: "too cold",
     Reason.OUTSIDE_CALIBRATION: "no calibration",
     Reason.OUTSIDE_LIMITS: "outside limits",
+    Reason.OUTSIDE_CHART: "off the chart",
+    Reason.NO_TEMPERATURES: "colder than standard",
 }
 
 

@@ -207,6 +207,20 @@ def test_a_line_that_ends_is_not_drawn_on():
     turn = made._turns[1].marks
     assert [mark.x.tolist()[-1] for mark in turn if mark.x.size] == [6000.0]
     assert np.allclose(np.ravel(made._stops.x), 6000.0)
+    alone = words(boundary(curves(ended=[[], ["line"]])).figure)  # the chart goes on
+    assert "line ends" in alone
+    assert "chart ends" not in alone
+
+
+def test_the_band_s_two_greys_part_along_a_step_of_vne():
+    """VNE drops within a thousandth of a foot: no full grey above the lower step, none faint under the upper."""
+    x = np.array([0.0, 5010.0, 5010.001, 10_000.0])
+    step = curves(x=x, manual=np.array([110.0, 110.0, 90.0, 90.0]), turns=[("level flight", x), ("30° bank", x)])
+    made = boundary(step)
+    across, up = np.ravel(made._full[0].x), np.ravel(made._full[0].y)
+    edge = np.ravel(VNE)[0] + 5.0 - across / 250.0  # the band's lower end
+    assert (up[across > 5010.001] <= np.maximum(90.0, edge[across > 5010.001]) + 1e-9).all()
+    assert up[np.isclose(across, 5010.0, atol=1e-4)].max() == 110.0
 
 
 def test_a_line_that_begins_inside_the_figure_has_a_bar_there_too():

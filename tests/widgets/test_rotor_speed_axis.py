@@ -8,7 +8,9 @@ import numpy as np
 import pytest
 
 from briefkit.aircraft.load import load_aircraft
+from briefkit.envelope import boundary as module
 from briefkit.envelope.condition import Condition
+from briefkit.widgets import boundary_words
 from briefkit.widgets.answers import Answers
 from briefkit.widgets.equivalent_chart import EquivalentChart
 from briefkit.widgets.live import LiveCondition
@@ -60,6 +62,16 @@ def test_the_chart_says_the_same_and_at_which_rotor_speed_it_was_read(turning, p
     exhibit.close()
     assert re.search(r"level at 2,006 lb, Hp [\d,]+ ft, \+1 °C, rotor at 99\.5 %, where", plain(parts.caption))
     assert parts.table.rows[0][-1] == "VNE 90 KIAS"
+
+
+def test_a_line_that_ends_while_the_chart_goes_on_does_not_say_that_the_chart_ends(turning, monkeypatch, plain):
+    """+10 degC is colder than standard below 2,520 ft, and this chart does not say which temperatures it is for."""
+    monkeypatch.setattr(module, "with_band", lambda aircraft, condition, chart: chart)
+    drawn = module.boundary(turning, SLOW, banks_deg=(0.0, 30.0))
+    level, steep = (plain(boundary_words._told(drawn, curve)) for curve in drawn.equivalent)
+    assert level == "nothing is taken off, the manual's VNE holds; the line ends at 2,600 ft"
+    assert "; the line ends at 2,600 ft and the chart ends at 6,100 ft" in steep
+    assert boundary_words.drawn(turning, SLOW, drawn).ended == [["line"], ["line", "chart"]]
 
 
 @pytest.mark.slow  # another aircraft, so another onset table
