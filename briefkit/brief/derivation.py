@@ -198,12 +198,12 @@ def shape_line(aircraft: Aircraft) -> str:
     if flat.any():
         highest = units.show(float(np.nanmax(aircraft.vne.speeds)), "speed", unit)
         parts.append(
-            f"{flat.sum()} flat at its highest value, {highest}, set by something other than the rotor’s loading"
+            f"{flat.sum()} flat at the highest value, {highest}, set by something other than the rotor’s loading"
         )
     if cold.any():
         parts.append(f"{cold.sum()} on a cold edge, where the advancing tip sets it")
     parts.append(f"{falling.sum()} falling with loading, as blade stall or something lower does")
-    said = f"Of its {len(found.shape)} cells {'; '.join(parts)}."
+    said = f"Its {len(found.shape)} cells: {'; '.join(parts)}."
     far = np.abs(found.residual[np.isfinite(found.residual)])
     if not far.size:
         return f"{said} Too few fall to tell whether they lie on one curve."

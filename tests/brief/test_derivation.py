@@ -60,7 +60,7 @@ def test_what_the_chart_says_of_itself(two_t, four_h):
     """Counted in the invented manuals: the 2T's chart prints 112 in six cells of 24; the 4H's coldest column is capped
     by tip Mach number at 129 in three cells of 25 and is answered for in its file.
     """
-    assert plain(shape_line(two_t)).startswith("Of its 24 cells 6 flat at its highest value, 112 kt, set by something")
+    assert plain(shape_line(two_t)).startswith("Its 24 cells: 6 flat at the highest value, 112 kt, set by something")
     assert "18 falling with loading" in shape_line(two_t)
     assert re.search(r"on one curve within 1\.\d kt\.$", plain(shape_line(two_t)))
     assert "3 on a cold edge, where the advancing tip sets it" in shape_line(four_h)
