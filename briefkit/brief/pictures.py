@@ -12,6 +12,7 @@ from briefkit.aircraft.model import Aircraft
 from briefkit.brief import words
 from briefkit.brief.derivation import work_by_hand
 from briefkit.brief.front import row_text
+from briefkit.envelope.chart_steps import stepped
 from briefkit.envelope.reductions import ReductionRow, ReductionTable, RowKind
 from briefkit.figures.chart import ChartFigure, Mark
 from briefkit.figures.parts import Drawing, StillParts, Table
@@ -78,6 +79,7 @@ def row_on_chart(aircraft: Aircraft, row: ReductionRow) -> str:
         names,
         x_words=x_words,
         speed_words=f"VNE, {kind}",
+        steps=stepped(chart, Axis.HEIGHT),
     )
     loaded = words.height(aircraft, point.pressure_altitude, 10.0)
     here_words = (f"{row.mass.text}, {row.bank_deg}°", f"VNE {words.number(hand.vne_here.number)} here")
@@ -110,7 +112,7 @@ def row_on_chart(aircraft: Aircraft, row: ReductionRow) -> str:
 
 
 def chart_lines(aircraft: Aircraft, mass: float) -> tuple[Floats, Floats, list[str]]:
-    """Heights [m] (n,) as the chart has them, speeds [m/s] (n, m) and the names of the columns.
+    """Heights [m] (n,) as the chart has them, speeds [m/s] (n, m), none above its cap, and the names of the columns.
 
     A third variable is held: at the first mass not lighter than `mass`, at the rotor speed nearest 100 %.
     """
@@ -119,15 +121,17 @@ def chart_lines(aircraft: Aircraft, mass: float) -> tuple[Floats, Floats, list[s
     rotor = int(np.argmin(np.abs(np.array(chart.rotor_speeds or (1.0,)) - 1.0)))
     typed = dict(chart.typed).get(Axis.HEIGHT, ())
     first = len(chart.heights) - len(typed) if typed else 0  # not the entry that stands for "or less"
-    heights = np.array(chart.heights[first:])
+    heights, speeds = np.array(chart.heights[first:]), chart.speeds[first:]
+    if chart.cap is not None:
+        speeds = np.minimum(speeds, chart.cap)
     if chart.temperatures:
         names = [words.temperature(oat) for oat in chart.temperatures]
-        return heights, chart.speeds[first:, :, heavier, rotor], names
+        return heights, speeds[:, :, heavier, rotor], names
     if chart.masses:
         names = [units.show(node, "mass", shown.mass) for node in chart.masses]
-        return heights, chart.speeds[first:, 0, :, rotor], names
+        return heights, speeds[:, 0, :, rotor], names
     names = [f"{speed * 100.0:g} %" for speed in chart.rotor_speeds] or ["VNE"]
-    return heights, chart.speeds[first:, 0, 0, :], names
+    return heights, speeds[:, 0, 0, :], names
 
 
 def along(aircraft: Aircraft, altitude: float, oat: float) -> float:

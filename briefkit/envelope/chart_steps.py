@@ -23,7 +23,7 @@ _CUTS, _ROUNDS = 5, 2  # a step between two places a sixtieth of the axis apart 
 def with_entries(chart: VneChart, axis: Axis, oat: float, values: Floats) -> Floats:
     """`values` [SI], rising, with the chart's entries between their ends; where it steps at them also a hair beside."""
     nodes = chart.node_heights(oat) if axis is Axis.HEIGHT else np.array(chart.axes[axis])
-    if _stepped(chart, axis):
+    if stepped(chart, axis):
         hair = _HAIR * (values[-1] - values[0])
         nodes = np.concatenate([nodes - hair, nodes, nodes + hair])
     return np.union1d(values, nodes[(nodes > values[0]) & (nodes < values[-1])])
@@ -31,7 +31,7 @@ def with_entries(chart: VneChart, axis: Axis, oat: float, values: Floats) -> Flo
 
 def steps(chart: VneChart) -> bool:
     """Whether VNE steps anywhere on the chart, and with it every answer read there."""
-    return any(_stepped(chart, axis) for axis in Axis)
+    return any(stepped(chart, axis) for axis in Axis)
 
 
 def closer(values: Floats, lines: Callable[[Floats], Floats], jump: float) -> Floats:
@@ -50,7 +50,8 @@ def closer(values: Floats, lines: Callable[[Floats], Floats], jump: float) -> Fl
     return values
 
 
-def _stepped(chart: VneChart, axis: Axis) -> bool:
+def stepped(chart: VneChart, axis: Axis) -> bool:
+    """Whether VNE steps at the chart's entries along one axis: between two of them the lower holds."""
     if not chart.axes[axis]:
         return False
     return (chart.bands and axis is Axis.MASS) or (

@@ -33,9 +33,19 @@ class ChartFigure:
     """A live bqplot figure of the manual's chart: the lines are built once, the two marks move."""
 
     def __init__(
-        self, x: ArrayLike, speeds: ArrayLike, names: Sequence[str], *, x_words: str, speed_words: str
+        self,
+        x: ArrayLike,
+        speeds: ArrayLike,
+        names: Sequence[str],
+        *,
+        x_words: str,
+        speed_words: str,
+        steps: bool = False,
     ) -> None:
-        """`x` (n,) rising (height, say); `speeds` (n, m) as printed, NaN for a blank cell; `names` (m,) of columns."""
+        """`x` (n,) rising (height, say); `speeds` (n, m) as printed, NaN for a blank cell; `names` (m,) of columns.
+
+        With `steps` the lower of two entries holds between them, and is drawn so; else a line joins them.
+        """
         across, columns = np.asarray(x, dtype=float), np.asarray(speeds, dtype=float)
         if columns.shape != (across.size, len(names)) or across.size < 2:
             raise ValueError(
@@ -51,7 +61,7 @@ class ChartFigure:
         curves = [Curve(area, theme.INK, theme.THIN) for _ in names]
         ends, dots = EndWords(area), self._nodes(across, columns)
         for curve, column in zip(curves, columns.T, strict=True):
-            curve.update(across, column)
+            curve.update(*(_stairs(across, column) if steps else (across, column)))
         ends.update([self._end(across, column, name) for column, name in zip(columns.T, names, strict=True)])
         titles, foot = canvas.texts(area, theme.GREY), canvas.texts(area, theme.GREY, align="middle")
         write(titles, [(area.x_at(-_ROOM.left + 2.0), area.y_at(-18.0), speed_words)])
@@ -143,3 +153,10 @@ class ChartFigure:
             hairs_x.append([point.x, point.x])
             hairs_y.append([point.speed, area.y_at(edge)])
         put(self._hairs, hairs_x, hairs_y, colors=[theme.GREY])
+
+
+def _stairs(x: canvas.Floats, column: canvas.Floats) -> tuple[canvas.Floats, canvas.Floats]:
+    """Each entry at its place, between two of them the lower; a blank cell leaves its neighbours' treads out."""
+    treads = np.minimum(column[:-1], column[1:])
+    left, right = np.append(column[0], treads), np.append(treads, column[-1])
+    return np.repeat(x, 3), np.stack([left, column, right], axis=1).ravel()

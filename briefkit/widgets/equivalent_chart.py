@@ -6,9 +6,11 @@ import bqplot
 import numpy as np
 
 from briefkit import units
+from briefkit.aircraft.chart import Axis
 from briefkit.aircraft.model import Aircraft
 from briefkit.brief import words as said
 from briefkit.brief.pictures import along, chart_lines
+from briefkit.envelope.chart_steps import stepped
 from briefkit.envelope.condition import Condition
 from briefkit.envelope.equivalent import EquivalentVne
 from briefkit.errors import Refusal, SetBy
@@ -43,6 +45,7 @@ class EquivalentChart(Exhibit):
             names,
             x_words=f"{'Density' if aircraft.vne.density_altitude else 'Pressure'} altitude, {shown.height}",
             speed_words=f"VNE, {shown.speed_label()}",
+            steps=stepped(aircraft.vne, Axis.HEIGHT),
         )
 
     def _lines_for(self, aircraft: Aircraft, mass: float) -> None:

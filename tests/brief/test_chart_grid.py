@@ -7,15 +7,19 @@ import re
 from dataclasses import replace
 from pathlib import Path
 
+import numpy as np
 import pytest
 
+from briefkit.aircraft.chart import ReadingRule
 from briefkit.aircraft.load import load_aircraft
 from briefkit.aircraft.model import Aircraft
 from briefkit.aircraft.operation import Operation
+from briefkit.brief import pictures
 from briefkit.brief.chart_grid import ChartGrid, cell_text, chart_grid
 from briefkit.brief.front import power_off
 from briefkit.brief.pictures import row_on_chart
 from briefkit.envelope.reductions import reductions
+from briefkit.figures.chart import ChartFigure
 
 
 def with_chart(examples: Path, folder: Path, body: str, name: str = "pelquill-2t") -> Aircraft:
@@ -138,6 +142,22 @@ def test_the_picture_of_a_row_on_the_chart(examples: Path, operation: Operation,
     html = row_on_chart(aircraft, table.rows[0])
     assert f"Pressure altitude, {aircraft.units.height}" in html
     assert "nan" not in re.sub(r"<[^>]*>", " ", html)
+
+
+def test_no_line_of_a_picture_lies_above_the_chart_s_cap_or_its_rule(
+    two_t: Aircraft, operation: Operation, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """At 7,000 ft and +20 degC the lower of 88 and 79 holds; a supplement's 80 KIAS is never passed."""
+    drawn = []
+    monkeypatch.setattr(pictures, "ChartFigure", lambda *a, **k: drawn.append(ChartFigure(*a, **k)) or drawn[-1])
+    entry = operation.entry_for(two_t)
+    assert entry is not None
+    row = reductions(two_t, replace(entry, masses=entry.masses[-1:]), operation.work_areas["vellmark"]).rows[0]
+    for changes, vne in (({"reading": ReadingRule.NEXT_LOWER}, 79.0), ({"cap": 80.0 * 1852.0 / 3600.0}, 80.0)):
+        row_on_chart(replace(two_t, vne=replace(two_t.vne, **changes)), row)
+        line = drawn[-1].figure.marks[2]
+        assert np.interp(7000.0, line.x, line.y) == pytest.approx(vne, abs=0.51)
+        assert np.interp(7000.0, line.x, line.y) <= vne + 1e-9
 
 
 def test_a_picture_against_density_altitude_marks_the_point_there(

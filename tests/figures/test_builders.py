@@ -354,6 +354,21 @@ def chart(cells: np.ndarray = CELLS) -> ChartFigure:
     return ChartFigure(np.arange(6) * 2000.0, cells, COLUMNS, x_words="pressure altitude, ft", speed_words="KIAS")
 
 
+def test_between_two_entries_the_lower_holds_where_the_manual_says_so():
+    made = ChartFigure(
+        np.arange(3) * 2000.0, np.array([[112.0], [107.0], [109.0]]), ["VNE"], x_words="ft", speed_words="KIAS",
+        steps=True,
+    )  # fmt: skip
+    line = made.figure.marks[0]
+    assert np.all(np.diff(line.x) >= 0.0)
+    between = ((line.x[:-1] + line.x[1:]) / 2.0)[np.diff(line.x) > 0.0]
+    assert between.tolist() == [1000.0, 3000.0]
+    for first, last in ((0.0, 2000.0), (2000.0, 4000.0)):
+        tread = line.y[:-1][(line.x[:-1] == first) & (line.x[1:] == last)]
+        assert tread.tolist() == [107.0]
+    assert [line.y[line.x == x].max() for x in (0.0, 2000.0, 4000.0)] == [112.0, 107.0, 109.0]
+
+
 def test_the_chart_shows_every_cell_and_names_every_column():
     made = chart()
     nodes = next(mark for mark in made.figure.marks if isinstance(mark, bqplot.Scatter) and mark.x.size == 24)

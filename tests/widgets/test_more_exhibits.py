@@ -2,13 +2,16 @@
 
 from __future__ import annotations
 
+import dataclasses
 import functools
 import re
 
 import html5lib
+import numpy as np
 import pytest
 
 from briefkit import units
+from briefkit.aircraft.chart import ReadingRule
 from briefkit.envelope import cues
 from briefkit.envelope.condition import Condition
 from briefkit.envelope.equivalent import equivalent_vne
@@ -281,6 +284,16 @@ def test_five_hundred_moves_add_no_models(shown, live, fleet, vellmark, models_o
         live.condition = conditions[step % 25]
     assert models_open() == before
     assert [exhibit.fault for exhibit in exhibits] == [""] * 6
+
+
+def test_under_next_lower_vne_the_chart_is_drawn_in_steps(shown, two_t, start):
+    """The ring of a condition between two rows of a column lies on that column's line, as the manual is read."""
+    lower = dataclasses.replace(two_t, vne=dataclasses.replace(two_t.vne, reading=ReadingRule.NEXT_LOWER))
+    for aircraft, vne in ((two_t, 83.5), (lower, 79.0)):
+        exhibit = shown(EquivalentChart, aircraft, start.with_(pressure_altitude="7,000 ft"))
+        line = exhibit._chart.figure.marks[2]  # +20 degC
+        assert exhibit._chart._here.y.tolist() == [vne]
+        assert np.interp(7000.0, line.x, line.y) == pytest.approx(vne)
 
 
 def test_a_chart_of_three_variables_draws_the_lines_of_its_mass(shown, live, models_open):
