@@ -93,7 +93,8 @@ def margin_line(aircraft: Aircraft, level: Condition, band: OnsetBand) -> str:
     margin is smaller than the band's half-width. The differences are from the reading, not from what is left of it.
     """
     try:
-        vne = equivalent_vne(aircraft, level.changed(rotor_speed=1.0, climb=0.0)).vne
+        k = level.rotor_speed if aircraft.vne.rotor_speeds else 1.0
+        vne = equivalent_vne(aircraft, level.changed(rotor_speed=k, climb=0.0)).vne
     except Refusal as refusal:
         return f"VNE governs; no margin to it here: {refusal}."
     kind, unit, found = aircraft.units.speed_label(), aircraft.units.speed, margin_to_vne(aircraft, band, vne)
@@ -130,7 +131,8 @@ def _taken(aircraft: Aircraft) -> list[str]:
     taken = []
     if not aircraft.calibration.in_manual:
         taken.append("indicated airspeed as calibrated, the manual gives no calibration")
-    taken.append("the manual’s VNE to hold at 100 % rotor speed")
+    if not aircraft.vne.rotor_speeds:
+        taken.append("the manual’s VNE to hold at 100 % rotor speed")
     if aircraft.vne.covers_temperatures:
         taken.append(f"the chart to hold at every permitted temperature ({aircraft.vne.covers_temperatures})")
     return taken

@@ -7,7 +7,9 @@ from __future__ import annotations
 
 import re
 from dataclasses import replace
+from types import SimpleNamespace
 
+import numpy as np
 import pytest
 
 from briefkit.brief.assumptions import assumptions, margin_line
@@ -88,6 +90,18 @@ def test_g19_a_margin_smaller_than_the_bands_half_width_is_not_resolved(two_t, e
     said = margin_line(two_t, HOT, band(*ends))
     assert said.endswith("not resolved.") is not resolved, said
     assert ("at least" in said) is (ends[2] is None)
+
+
+def test_a_chart_over_rotor_speed_governs_at_the_rotors_own(two_t):
+    """By hand: 10 kt less at 97 % than at 100 %. Nor is such a chart taken to hold at 100 %."""
+    cells = two_t.vne.speeds[..., [0, 0]] + np.array([-10.0, 0.0]) * to_si(1.0, "speed", "kt")
+    over = replace(two_t, vne=replace(two_t.vne, speeds=cells, rotor_speeds=(0.97, 1.0)))
+    for aircraft, rotor, vne in ((over, "97 %", "75"), (over, "100 %", "85"), (two_t, "97 %", "85")):
+        said = margin_line(aircraft, HOT.with_(rotor_speed=rotor), band(88.0, 96.0, 105.0))
+        assert said.startswith(f"VNE governs, {vne} KIAS there"), said
+    none = SimpleNamespace(rows=[SimpleNamespace(at=None, answer=None)])  # a table without a figure anywhere
+    said = [assumptions(aircraft, none).before[0] for aircraft in (two_t, over)]
+    assert ["to hold at 100 % rotor speed" in line for line in said] == [True, False]
 
 
 def test_g19_the_decks_first_case_is_not_resolved(two_t):
