@@ -62,7 +62,7 @@ def build_command(
 
     Runs each brief below PATH and writes its page, its read-back sheet, the sheets of its deck if it has one, and an
     index. Exit 1 if one failed; the others are built, and a page already there is left whole. The same files give the
-    same bytes; so does a PDF with one Chromium, while another may set it otherwise.
+    same bytes; a PDF is a print of the page, and its bytes are not promised.
     """
     with _plain_errors():
         from rich.console import Console

@@ -53,8 +53,9 @@ def print_pdf(page: Path, paper: str, day: dt.date) -> Path:
     """Print a built page to a PDF beside it.
 
     `paper` is one of `PAPERS`; `day` (the day of issue) stands in the file where Chromium would put the clock. The same
-    page gives the same bytes on one machine with one Chromium and its fonts; another may set it otherwise, so the page
-    is the controlled document, not its PDF.
+    page gives the same sheets with the same Chromium and fonts, and nearly always the same bytes (once in a great
+    while, on a busy machine, Chromium numbers a file's objects otherwise): the page is the controlled document, not
+    its PDF.
 
     Raises:
         BuildError: no Chromium, or it fails or takes longer than `SECONDS`.
