@@ -27,6 +27,9 @@ _FLAGS: Final = (
     "--disable-component-update", "--disable-extensions", "--host-resolver-rules=MAP * ~NOTFOUND",
     "--no-pdf-header-footer",
 )  # fmt: skip
+# Chromium asks a page's width queries of its own default paper, not of the paper the page asks for, and then shrinks
+# a wide setting onto a small sheet: on A5 they are answered for it.
+_ON_A5: Final = {"(min-width: 150mm)": "not all", "(max-width: 149.9mm)": "all"}
 _DATED: Final = re.compile(rb"/(CreationDate|ModDate) \(D:\d{14}\+00'00'\)")
 
 
@@ -63,7 +66,7 @@ def print_pdf(page: Path, paper: str, day: dt.date) -> Path:
     if paper not in PAPERS:
         raise BuildError(f"paper {paper!r}: {', '.join(PAPERS)}")
     browser = find_chromium()
-    sized = harden(page.read_text(encoding="utf-8").replace("</style>", f"@page{{size:{paper}}}</style>", 1))
+    sized = harden(_on_paper(page.read_text(encoding="utf-8"), paper))
     with tempfile.TemporaryDirectory(prefix="briefkit-", ignore_cleanup_errors=True) as private:
         source, made = Path(private) / "page.html", Path(private) / "page.pdf"
         source.write_text(sized, encoding="utf-8")
@@ -81,3 +84,10 @@ def print_pdf(page: Path, paper: str, day: dt.date) -> Path:
     target = page.with_suffix(".pdf")
     write_page(target, _DATED.sub(lambda found: b"/" + found[1] + b" (" + stamp + b")", content))
     return target
+
+
+def _on_paper(html: str, paper: str) -> str:
+    """The page with its paper named and its width queries answered for it."""
+    for asked, answer in _ON_A5.items() if paper == "A5" else ():
+        html = html.replace(f"@media {asked}", f"@media {answer}")
+    return html.replace("</style>", f"@page{{size:{paper}}}</style>", 1)

@@ -475,20 +475,20 @@ def test_guard_g33_500_hostile_strings_ask_for_nothing(chromium, examples, tmp_p
     assert len([url for url in asked if url.startswith("file:")]) == opened
 
 
-def test_the_pdf_is_the_page_and_says_nothing_of_clock_or_machine(chromium, files, tmp_path):
-    """Printed again it says the same on the same sheets: no clock, no folder, no identifier of the run is in it."""
+def test_the_pdf_is_the_page_and_says_nothing_of_clock_or_machine(printed, files, tmp_path):
+    """It says what the page says printed from the browser, sheet by sheet in the same type: no clock, no folder, no
+    identifier of the run is in it."""
     page = tmp_path / "NB-4H-001.html"
     page.write_bytes(files["cold"].read_bytes())
     made = pdf.print_pdf(page, "A5", dt.date(2030, 9, 2))
     assert made == page.with_suffix(".pdf")
     content = made.read_bytes()
-    first = [sheet.extract_text() for sheet in pypdf.PdfReader(made).pages]
-    made.unlink()
-    again = pypdf.PdfReader(pdf.print_pdf(page, "A5", dt.date(2030, 9, 2)))
-    assert [sheet.extract_text() for sheet in again.pages] == first
+    sheets = pypdf.PdfReader(made).pages
+    theirs = printed("A5", "cold")
+    assert [letters(sheet.extract_text()) for sheet in sheets] == [letters(sheet.text) for sheet in theirs]
+    assert sizes(sheets[0]) == sizes(theirs[0].page)
     assert set(re.findall(rb"\(D:(\d+)", content)) == {b"20300902000000"}
     assert b"file:" not in content
-    sheets = pypdf.PdfReader(made).pages
     expected = [side * MILLIMETRE for side in PAPERS["A5"]]
     assert [float(side) for side in sheets[0].mediabox[2:]] == pytest.approx(expected, abs=1.0)
     assert f"page 1 of {len(sheets)}" in sheets[0].extract_text()
