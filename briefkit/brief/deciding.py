@@ -95,7 +95,7 @@ def tip_first(aircraft: Aircraft, area: WorkArea) -> str:
     when = "Cold" if hot <= turn else f"Colder than {words.temperature(turn)}"
     return (
         f"{when}: the advancing tip comes first. A faster rotor brings it nearer. The signs below are for blade stall; "
-        "expect roughness."
+        "expect roughness, and then slow down."
     )
 
 

@@ -132,7 +132,7 @@ def rows_section(aircraft: Aircraft, table: ReductionTable) -> Section:
     if all(row.kind is RowKind.VNE_LIMITS for row in table.rows):
         masses = ", ".join(row.mass.text for row in table.rows)
         nothing = f"Nothing is taken off at {masses}, at any of {searched}."
-        return Section(heading, before=(nothing, *covered_line(table)))
+        return Section(heading, before=(nothing, *covered_line(aircraft, table)))
     kind = aircraft.units.speed_label()
     rows = []
     for row in table.rows:
@@ -162,7 +162,7 @@ def rows_section(aircraft: Aircraft, table: ReductionTable) -> Section:
         "Below VNE",
         "Printed",
     )
-    after = (f"Each row is the largest of {searched}.", *covered_line(table))
+    after = (f"Each row is the largest of {searched}.", *covered_line(aircraft, table))
     return Section(
         heading,
         grid=Grid(header, tuple(rows), "What sets each row of section 2", Ink.COMPUTED, numbers=False),
@@ -171,15 +171,26 @@ def rows_section(aircraft: Aircraft, table: ReductionTable) -> Section:
     )
 
 
-def covered_line(table: ReductionTable) -> tuple[str, ...]:
+def covered_line(aircraft: Aircraft, table: ReductionTable) -> tuple[str, ...]:
     """For a pull-up or a gust: how much load the chart covers all over the work area, and never a speed."""
     covered = [f"{row.covered_load:.2f} at {row.mass.text}" for row in table.rows if row.covered_load >= 1.0]
     if not covered:
         return ()
     return (
         "For a pull-up or a gust there is no speed here. The load factor that the manual’s chart covers all over the "
-        f"area, rotor at 100 %: {', '.join(covered)}. A gust can do more than its load factor shows.",
+        f"area, rotor at 100 %: {', '.join(covered)}. {_capped(aircraft, table)}A gust can do more than its load "
+        "factor shows.",
     )
+
+
+def _capped(aircraft: Aircraft, table: ReductionTable) -> str:
+    """Said where the manual's bank limit, not the chart, ends what is covered."""
+    limit = aircraft.limits.max_bank
+    if limit is None:
+        return ""
+    most = units.round_down(1.0 / math.cos(limit.value), 0.01)
+    ended = any(abs(row.covered_load - most) < 1e-9 for row in table.rows)
+    return f"Never above {most:.2f}: the manual’s bank limit, {limit.text} ({limit.source}). " if ended else ""
 
 
 def chart_section(aircraft: Aircraft) -> Section:

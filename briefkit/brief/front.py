@@ -31,9 +31,10 @@ def vne_section(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea) -> Sectio
     """The manual's own chart around the work area, cells as typed, with what else the manual says of VNE."""
     chart, shown = aircraft.vne, aircraft.units
     entries = chart_grid(aircraft, fleet, area)
-    between = "interpolate" if chart.reading is ReadingRule.INTERPOLATE else "take the lower VNE"
+    interpolate = chart.reading is ReadingRule.INTERPOLATE
+    between, down = ("interpolate", ", and round down") if interpolate else ("take the lower VNE", "")
     beside = [
-        f"Between entries: {between} (manual {_page(chart.source)}).",
+        f"Between entries: {between} (manual {_page(chart.source)}){down}.",
         f"Power off: {power_off(aircraft)}.",
         *entries.notes,
     ]
@@ -102,7 +103,7 @@ def turn_section(
     if all(row.kind is RowKind.VNE_LIMITS for row in table.rows):
         limits = _nothing(aircraft, bank) if ruling is None else ruled_turn(ruling, aircraft, bank)
         heading = f"2. {lead}: turns of up to {bank} of bank"
-        before, after = (*own, limits, *cold), (f"{where} Over {bank}: not briefed.",)
+        before, after = (*own, limits, *cold), (f"{where} {_masses(fleet)} Over {bank}: not briefed.",)
         return Section(heading, before=before, after=after, sources=sources)
     rows = tuple(
         (row.mass.text + (" or less" if row is table.rows[-1] else ""), row_text(aircraft, table, row))
@@ -128,6 +129,11 @@ def _where(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea) -> str:
     """What the answer holds for, in a sentence."""
     cold, hot = (words.temperature(one.value) for one in (area.low_temperature, area.high_temperature))
     return f"{_turn(fleet)}, rotor at 100 %, Hp {_range(aircraft, area)}, {cold} to {hot}."
+
+
+def _masses(fleet: FleetEntry) -> str:
+    """Which masses a sentence without rows holds for; a load on the hook is in the mass."""
+    return f"Every mass up to {fleet.masses[0].text}, with all it carries."
 
 
 def _nothing(aircraft: Aircraft, bank: str) -> str:
@@ -173,7 +179,7 @@ def if_it_starts(aircraft: Aircraft) -> Section:
     others = (
         "Light in the seat, or the rotor horn?" if cues.needs_low_g_caution(aircraft) else "The rotor horn, or sinking?"
     )
-    tail = f"{source}{'; ' + mirrored if mirrored else ''}. {others} Not this: page 2."
+    tail = f"{source}{'; ' + mirrored if mirrored else ''}. {others} Not this: “Which one is it?”, page 2."
     felt = cues.onset_words(aircraft)
     return Section("4. If it starts", before=(felt[:1].upper() + felt[1:], *sentences, tail))
 

@@ -82,7 +82,7 @@ def hover(aircraft: Aircraft, fleet: FleetEntry, area: WorkArea) -> tuple[Sectio
         pages = " and ".join(dict.fromkeys(line.source for line in lines))
         said = f"at {mass} the manual gives none, {' or '.join(line.kind for line in lines)} ({pages})."
     first = "" if all(line.possible for line in lines) else " That decides first."
-    place = f"{words.height(aircraft, height)}, {words.temperature(oat)}"
+    place = f"{words.top(aircraft, height)}, {words.temperature(oat)}"
     return (Section(f"Hover at {place}", before=(said + first,), sources=(fleet.source, area.source)),)
 
 

@@ -15,6 +15,12 @@ def height(aircraft: Aircraft, metres: float, to: float = 1.0) -> str:
     return f"{units.show_number(round(units.from_si(metres, 'height', unit) / to) * to)} {unit}"
 
 
+def top(aircraft: Aircraft, metres: float) -> str:
+    """ "2,203 ft": the top of an area, rounded up, so that one place has one height on a page."""
+    unit = aircraft.units.height
+    return f"{units.show_number(math.ceil(units.from_si(metres, 'height', unit) - 1e-6))} {unit}"
+
+
 def temperature(kelvin: float, decimals: int = 0) -> str:
     """ "+20 °C": a temperature on a page carries its sign."""
     number = units.show_number(kelvin - units.ZERO_CELSIUS, decimals)

@@ -98,7 +98,12 @@ class Flapping(Exhibit):
         stop = _stop_row(aircraft, b0, 0.0)
         left = stop[0][1] if stop else ""
         table = Table(("Blade over", "Flap angle, up"), (*rows, *stop), "Flap angle of the blade")
-        trimmed = "Trimmed, the mast is taken to stand on the disc." if stop else ""
+        trimmed = (
+            "Trimmed, the mast is taken to stand square to the disc: seen from it nothing flaps, and the whole way to "
+            "the stop is left. The angles above are seen from the plane without feathering."
+            if stop
+            else ""
+        )
         return self._parts_of(answers, "Flapping", caption, table, left, trimmed)
 
     # --- held ---

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 import re
 from dataclasses import replace
 
@@ -9,6 +10,7 @@ import numpy as np
 import pytest
 
 from briefkit import units
+from briefkit.aircraft.model import Stated
 from briefkit.brief.derivation import chart_section, covered_line, plain_line, rows_section, shape_line, worked_row
 from briefkit.envelope.condition import Conditions
 from briefkit.envelope.equivalent import equivalent_vne, equivalent_vnes
@@ -45,15 +47,23 @@ def test_the_covered_load_factor_holds_all_over_the_area_and_no_more_does(two_t,
             many = Conditions.si(mass=row.mass.value, pressure_altitude=height, oat=oat, load_factor=load)
             reasons = equivalent_vnes(two_t, many, upper=False).reason
             assert (not np.any(reasons == Reason.BEYOND_CHART)) is covered, (row.mass.text, load)
-    (said,) = covered_line(table)
+    (said,) = covered_line(two_t, table)
     assert "1.06 at 2,006 lb, 1.12 at 1,900 lb" in said
     assert not re.search(r"\d ?(?:kt|KIAS|km/h)", said)  # a load, never a speed
     assert rows_section(two_t, table).after[-1] == said
 
 
-def test_where_not_even_level_flight_is_covered_no_load_is_said(table):
+def test_where_not_even_level_flight_is_covered_no_load_is_said(two_t, table):
     none = replace(table, rows=tuple(replace(row, covered_load=0.0) for row in table.rows))
-    assert covered_line(none) == ()
+    assert covered_line(two_t, none) == ()
+
+
+def test_a_bank_limit_that_ends_what_is_covered_is_named(two_t, table):
+    limited = replace(two_t, limits=replace(two_t.limits, max_bank=Stated(math.radians(30.0), "30 deg", "p. 3")))
+    ended = replace(table, rows=(replace(table.rows[0], covered_load=1.15),))
+    assert "Never above 1.15: the manual’s bank limit, 30 deg (p. 3)." in covered_line(limited, ended)[0]
+    assert "bank limit" not in covered_line(limited, table)[0]
+    assert "bank limit" not in covered_line(two_t, ended)[0]
 
 
 def test_what_the_chart_says_of_itself(two_t, four_h):
