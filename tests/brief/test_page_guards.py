@@ -58,6 +58,16 @@ def test_guard_g25_two_blades_always_carry_the_low_g_caution(pages):
         assert "Two blades: low g" not in words_of(*pages[name].recognition)
 
 
+def test_a_place_has_one_height_on_a_page_and_a_sentence_its_masses(pages):
+    """Heights of the area's top are rounded up wherever they stand; a sheet without rows says for which masses."""
+    for name, top, mass in (("corrant-3f", "3,183 m", "2,380 kg"), ("ysbrane-4h", "2,203 ft", "3,350 kg")):
+        turn = words_of(pages[name].front[1])
+        assert f"to {top}, " in turn
+        assert f"Every mass up to {mass}, with all it carries." in turn
+        assert f"Hover at {top}, " in words_of(*pages[name].recognition)
+    assert "interpolate (manual 2-4 rev 4), and round down." in pages["vellmark-2t"].front[0].grid.beside[0]
+
+
 def test_a_section_that_changed_in_this_revision_carries_a_bar(briefs, pages):
     identity = briefs["vellmark-2t"].identity
     changed = replace(
