@@ -9,9 +9,10 @@ So that an answer for one column does not hide a slip of typing in another, it n
 
 from __future__ import annotations
 
+import json
 import re
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from enum import StrEnum
 from typing import Any, Final
 
@@ -54,6 +55,7 @@ ON_CELLS: Final = (
     Kind.HOVER_CEILING_RISES,
     Kind.SIMILARITY,
 )
+TABLE: Final = "[vne.reasons]"  # where answers stand in an aircraft file
 _PART: Final = r"(?:row|column|at|line|point) \S.*?"
 _CELLS = re.compile(rf"all|{_PART}(?:, {_PART}){{0,2}}")
 
@@ -69,10 +71,33 @@ class EntryFinding:
 
 def finding(kind: Kind, cells: str, key: str, read: str, permitted: str) -> EntryFinding:
     """An entry finding whose sentence says how to answer it."""
-    answer = f'{kind} = {{ cells = "{cells}", reason = "..." }}' if kind in ON_CELLS else f'{kind} = "the reason"'
-    remedy = f"look again in the manual; if it is so printed, say why: {answer} among the reasons"
     place = f"{key}, {cells}" if cells else key
-    return EntryFinding(kind, cells, Fault("", place, read, permitted, remedy))
+    return EntryFinding(kind, cells, Fault("", place, read, permitted, _remedy(kind, cells, "the aircraft file", ())))
+
+
+def addressed(found: EntryFinding, aircraft: Aircraft, file: str) -> Fault:
+    """The finding's fault with a remedy to paste: the table, the file, and a line that fits what stands there already.
+
+    A second line of the same name would be a slip of TOML, so that reasons given for other cells are in the new line.
+    """
+    known = tuple(answer for answer in aircraft.answers if answer.kind == found.kind)
+    return replace(found.fault, file=file, remedy=_remedy(found.kind, found.cells, file, known))
+
+
+def _remedy(kind: Kind, cells: str, file: str, known: tuple[Answer, ...]) -> str:
+    instead = ""
+    if kind not in ON_CELLS:
+        line = f'{kind} = "the reason"'
+    else:
+        entries = [*((answer.cells, answer.reason) for answer in known), (cells, "...")]
+        typed = [f"{{ cells = {_toml(at)}, reason = {_toml(why)} }}" for at, why in entries]
+        line = f"{kind} = {typed[0]}" if not known else f"{kind} = [{', '.join(typed)}]"
+        instead = f" (in place of the line {kind} there)" if known else ""
+    return f"look again in the manual; if it is so printed, say why under {TABLE} in {file}{instead}: {line}"
+
+
+def _toml(text: str) -> str:
+    return json.dumps(text, ensure_ascii=False)
 
 
 def read_answers(document: Document, key: str, table: Mapping[str, Any]) -> tuple[Answer, ...]:

@@ -9,7 +9,7 @@ from typing import Final
 import numpy as np
 
 from briefkit import units
-from briefkit.aircraft.answers import EntryFinding, Kind, answered, finding
+from briefkit.aircraft.answers import EntryFinding, Kind, addressed, answered, finding
 from briefkit.aircraft.chart import Axis, Floats, VneChart
 from briefkit.aircraft.hover import falls
 from briefkit.aircraft.model import Aircraft
@@ -30,7 +30,8 @@ CALIBRATION_OUT_OF_LINE: Final = 1.5 * units.KNOT  # likewise
 
 def entry_findings(aircraft: Aircraft) -> list[Fault]:
     """What needs a written reason and has none in the file, as sentences that name the cell."""
-    return [found.fault for found in all_findings(aircraft) if not answered(aircraft, found)]
+    found = [one for one in all_findings(aircraft) if not answered(aircraft, one)]
+    return [addressed(one, aircraft, aircraft.file) for one in found]
 
 
 def all_findings(aircraft: Aircraft) -> list[EntryFinding]:

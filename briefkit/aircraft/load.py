@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import hashlib
+from dataclasses import replace
 from pathlib import Path
 from typing import Final
 
@@ -29,6 +30,12 @@ from briefkit.reading.quantity import quoted
 
 NONE_IN_MANUAL: Final = "none in manual"
 _REQUIRED: Final = ("type", "units", "rotor", "limits", "calibration", "vne")
+_BELONGS: Final = {
+    "reasons": answers.TABLE,
+    "power_on": "[vne.power_on]",
+    "power_off": "[vne.power_off]",
+    "speeds": "[[manual.speeds]]",
+}
 _OPTIONAL: Final = ("invented", "manual", "hover", "recovery", configuration.KEY, section_table.KEY)
 
 
@@ -54,11 +61,20 @@ def load_configurations(path: Path | str) -> dict[str, Aircraft]:
     document.tables("", _REQUIRED, _OPTIONAL)
     document.tables("vne", ("power_on", "power_off"), ("reasons",))
     document.tables("manual", (), ("speeds",))
+    _misplaced(document)
     parts = _Parts(document)
     document.raise_faults()
     found = parts.aircraft()
     document.raise_faults()
     return {aircraft.configuration: aircraft for aircraft in found}
+
+
+def _misplaced(document: Document) -> None:
+    """A table of the right name at the top of the file: the remedy says where it belongs, not to take it out."""
+    for name, belongs in _BELONGS.items():
+        for i, fault in enumerate(document.faults):
+            if fault.key == name:
+                document.faults[i] = replace(fault, remedy=f"did you mean {belongs}?")
 
 
 class _Parts:

@@ -7,18 +7,22 @@ from __future__ import annotations
 
 from typing import Final
 
+import numpy as np
+
 from briefkit import units
 from briefkit.aircraft.model import Aircraft, Stated
 from briefkit.brief import words
 from briefkit.brief.derivation import worked_row
 from briefkit.brief.pages import Grid, Ink, Section
 from briefkit.brief.published import published_lines
-from briefkit.envelope.condition import Condition
+from briefkit.envelope.condition import Condition, Conditions
 from briefkit.envelope.equivalent import equivalent_vne
 from briefkit.envelope.margin import margin_to_vne
+from briefkit.envelope.onset import FIRST_SIGNS, tip_angles
 from briefkit.envelope.reductions import ReductionRow, ReductionTable
+from briefkit.envelope.solution import rotor_of
 from briefkit.envelope.spread import OnsetBand, onset_band
-from briefkit.errors import Refusal
+from briefkit.errors import Reason, Refusal
 from briefkit.units import Speed
 
 _ENTRY: Final = 0.005  # of a unit of speed: nearer than any printed entry lies to the next
@@ -40,9 +44,7 @@ def assumptions(aircraft: Aircraft, table: ReductionTable) -> Section:
     try:
         band = onset_band(aircraft, level)
     except Refusal as refusal:
-        return Section(
-            "What the rotor model assumes", before=(*before, f"No onset band at {words.place(aircraft, at)}: {refusal}")
-        )
+        return Section("What the rotor model assumes", before=(*before, no_band(aircraft, at, refusal)))
     rows = tuple(
         (one.name, _input(aircraft, one.name), one.spread, _effect(one.lowers_by), _effect(one.raises_by))
         for one in band.contributions
@@ -56,6 +58,19 @@ def assumptions(aircraft: Aircraft, table: ReductionTable) -> Section:
         grid=Grid(header, rows, "What each spread does to the onset band", Ink.CONTEXT, numbers=False),
         after=(*section_line(aircraft), *published_lines()),
     )
+
+
+def no_band(aircraft: Aircraft, at: Condition, refusal: Refusal) -> str:
+    """Why there is none, for a reader of the page; a limit of the manual keeps the words of its refusal."""
+    why = str(refusal)
+    if refusal.reason is Reason.OUTSIDE_MODEL:
+        angle = tip_angles(rotor_of(aircraft), Conditions.of(at.changed(load_factor=1.0))).angle[0]
+        known = angle[np.isfinite(angle)]
+        if known.size and known.max() < FIRST_SIGNS:
+            why = "the tip does not reach 12 degrees at any speed the model covers"
+        elif known.size and known.min() >= FIRST_SIGNS:
+            why = "the tip is above 12 degrees at every speed the model covers"
+    return f"No onset band at {words.place(aircraft, at)}: {why.rstrip('.')}."
 
 
 def section_line(aircraft: Aircraft) -> tuple[str, ...]:

@@ -14,6 +14,7 @@ from briefkit.envelope import region
 from briefkit.envelope.condition import Condition
 from briefkit.errors import ReadingError
 from briefkit.physics import atmosphere
+from briefkit.reading.quantity import spelling
 from briefkit.widgets.words import Dial, text_of
 
 # The box stands beside it where there is room, else under it.
@@ -93,12 +94,20 @@ def read_number(dial: Dial, text: str) -> float:
         typed = typed.replace("KIAS", "kt").removesuffix(" IAS")
     try:
         value = units.read(typed, dial.quantity)
-    except ReadingError:
-        if typed[-1:].isdigit():
-            value = units.read(f"{typed} {dial.unit}", dial.quantity)
-        else:
-            raise
+    except ReadingError as error:
+        if not typed[-1:].isdigit():
+            raise _hinted(error, typed, dial) from None
+        bare = f"{typed} {dial.unit}"
+        try:
+            value = units.read(bare, dial.quantity)
+        except ReadingError as again:
+            raise _hinted(again, bare, dial) from None
     return float(units.from_si(value, dial.quantity, dial.unit))
+
+
+def _hinted(error: ReadingError, typed: str, dial: Dial) -> ReadingError:
+    """The error with what a typed file is told of the same slip, so that the box says no less."""
+    return ReadingError(error.read, error.permitted, spelling(typed, dial.quantity) or error.remedy)
 
 
 def ranges(aircraft: Aircraft) -> dict[str, tuple[float, float]]:

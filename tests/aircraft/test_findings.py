@@ -70,6 +70,20 @@ def test_213_typed_as_231_is_out_of_line(file_3f, cell):
     assert all("km/h" in one.fault.permitted for one in found)
 
 
+@pytest.mark.parametrize("there", ["", 'rises_with_altitude = { cells = "row 0", reason = "asked \\"twice\\", 2-4" }'])
+def test_the_remedy_says_where_the_reason_goes_and_its_line_can_be_pasted(file_2t, there):
+    """A second line of one name is no TOML: the line to paste then carries the reason that stands there already."""
+    slip = file_2t.replaced(("4,000        112", "4,000        113"))
+    slip = slip.added(f"[vne.reasons]\n{there}") if there else slip
+    fault = next(fault for fault in entry_findings(slip.load()) if "does not rise with height" in fault.permitted)
+    assert "say why under [vne.reasons] in type.toml" in fault.remedy
+    assert fault.file == "type.toml"
+    line = fault.remedy[fault.remedy.index(": rises_with_altitude = ") + 2 :]
+    mended = slip.replaced((there, line)) if there else slip.added(f"[vne.reasons]\n{line}")
+    assert not any("does not rise with height" in fault.permitted for fault in entry_findings(mended.load()))
+    assert (there != "") == ("in place of the line rises_with_altitude there" in fault.remedy)
+
+
 THREE = """at 1,700 lb or less
 ft \\ degC   -20   +40   kt indicated
 0   112   108

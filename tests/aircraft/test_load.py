@@ -321,3 +321,14 @@ def test_loading_imports_nothing_heavy(examples: Path) -> None:
     )
     done = subprocess.run([sys.executable, "-c", program], capture_output=True, text=True, check=True)
     assert done.stdout.strip() == "[]"
+
+
+@pytest.mark.parametrize(
+    ("table", "belongs"),
+    [
+        ('[reasons]\nmore_than_two_variables = "2-4"', "[vne.reasons]"),
+        ('[[speeds]]\nlabel = "Rough air"\ntext = "90 KIAS"', "[[manual.speeds]]"),
+    ],
+)
+def test_a_table_at_the_wrong_place_is_told_where_it_belongs(file_2t, table, belongs):
+    assert file_2t.added(table).fault().remedy == f"did you mean {belongs}?"

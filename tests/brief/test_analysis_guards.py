@@ -12,11 +12,13 @@ from types import SimpleNamespace
 import numpy as np
 import pytest
 
-from briefkit.brief.assumptions import assumptions, margin_line
+from briefkit.brief.assumptions import assumptions, margin_line, no_band
 from briefkit.envelope.condition import Condition
 from briefkit.envelope.margin import margin_to_vne
+from briefkit.envelope.onset import TipAngles
 from briefkit.envelope.reductions import reductions
 from briefkit.envelope.spread import OnsetBand, onset_band
+from briefkit.errors import OutsideLimits, Reason
 from briefkit.units import Speed, to_si
 
 # VNE of the invented 2T there, by its chart: 85.2 KIAS (85 at 5,210 ft, +36 C).
@@ -123,3 +125,37 @@ def test_g18_the_analysis_page_tells_the_band_from_its_lower_edge_and_what_widen
     costs = [row[3] for row in section.grid.rows]
     assert [float(cost) for cost in costs] == sorted((float(cost) for cost in costs), reverse=True)
     assert "to none of which anything in it is fitted" in section.after[0]  # G20: with the residuals' signs
+
+
+@pytest.mark.parametrize(
+    ("degrees", "why"),
+    [
+        (11.0, "the tip does not reach 12 degrees at any speed the model covers."),
+        (13.0, "the tip is above 12 degrees at every speed the model covers."),
+    ],
+)
+def test_where_there_is_no_band_the_page_says_why_in_plain_words(two_t, monkeypatch, degrees, why):
+    """Too cold and light for the first signs, or too loaded for any speed without them: never one for the other."""
+    at = Condition(mass="2,006 lb", pressure_altitude="1,216 ft", oat="-18 degC")
+    angles = np.array([[degrees - 1.0, degrees, np.nan]])
+
+    def tip(*_):
+        return TipAngles(np.array([[10.0, 20.0, 30.0]]), np.radians(angles))
+
+    def refuse(*_):
+        raise OutsideLimits("retreating-tip angle", "12 degrees", "", "", "rotor model", Reason.OUTSIDE_MODEL)
+
+    monkeypatch.setattr("briefkit.brief.assumptions.onset_band", refuse)
+    monkeypatch.setattr("briefkit.brief.assumptions.tip_angles", tip)
+    monkeypatch.setattr("briefkit.brief.assumptions.worked_row", lambda table: SimpleNamespace(at=at))
+    said = assumptions(two_t, SimpleNamespace(rows=())).before[-1].replace("\u00a0", " ")
+    assert said == f"No onset band at 1,216 ft, \u221218 °C: {why}"
+
+
+def test_the_4h_in_the_cold_does_not_reach_the_first_signs(four_h):
+    at = Condition(mass="3,350 kg", pressure_altitude="1,216 ft", oat="-38 degC")
+    with pytest.raises(OutsideLimits) as refused:
+        onset_band(four_h, at)
+    assert no_band(four_h, at, refused.value).endswith(
+        "the tip does not reach 12 degrees at any speed the model covers."
+    )
