@@ -10,46 +10,25 @@ import datetime as dt
 import os
 import time
 from collections.abc import Callable, Iterable, Iterator
-from dataclasses import dataclass
 from pathlib import Path
-from typing import Final
 
 from briefkit.brief.export import compose, contents, stays_inside, unchanged
 from briefkit.brief.fit import complaint
 from briefkit.brief.harden import harden
 from briefkit.brief.identity import BRIEF_FILE, Brief, load_brief
+from briefkit.brief.index import INDEX, Result, heading_of, index_of
+from briefkit.brief.issue import digest
 from briefkit.brief.pages import CrewPage, render_plain
 from briefkit.brief.readback import readback
+from briefkit.brief.register import load_register
 from briefkit.brief.run import complete, read_notebook, run_async
 from briefkit.brief.write import sweep, write_page
 from briefkit.errors import BriefkitError, BuildError
 
-INDEX: Final = "index.html"
+__all__ = ["Beside", "Result", "build", "find_briefs"]
+
 # What a later room sets beside a brief's page: (name, finished page) for each; the file is NUMBER.name.html.
 Beside = Callable[[Brief, CrewPage], tuple[tuple[str, str], ...]]
-
-
-@dataclass(frozen=True)
-class Result:
-    """What became of one brief: `brief` its folder, `page` the file written (or left), seconds, bytes, the error.
-
-    `title` is the page's own heading ("" where the typed files could not be read); `notes` what its author should hear;
-    `beside` the further pages written with it.
-    """
-
-    brief: Path
-    page: Path | None
-    seconds: float = 0.0
-    size: int = 0
-    error: str = ""
-    title: str = ""
-    mark: str = ""
-    notes: tuple[str, ...] = ()
-    beside: tuple[Path, ...] = ()
-
-    @property
-    def readback(self) -> Path | None:
-        return self.page.with_suffix(".readback.html") if self.page else None
 
 
 def find_briefs(paths: Iterable[Path]) -> tuple[Path, ...]:
@@ -92,7 +71,7 @@ def build(
     """
     briefs = find_briefs(paths)
     results = complete(_build_all(briefs, out, today, tell or (lambda _: None), beside or (lambda _, __: ())))
-    write_page(out / INDEX, _index(results))
+    write_page(out / INDEX, index_of(results))
     return results
 
 
@@ -133,6 +112,13 @@ async def _build_one(folder: Path, out: Path, taken: dict[str, Path], today: dt.
         ran = await run_async(node, brief.identity.notebook)
         unchanged(brief, page, node)
         html, sheet, more = compose(page, ran, folder), _readback(brief, page), beside(brief, page)
+        if kept := _issued_page(brief, target, html):
+            error = (
+                f"{target}: {kept} was issued as this page, and what is built now differs from it: not written; "
+                "build to another folder with --out, or raise document.revision, sign and issue that"
+            )
+            seconds, title = time.monotonic() - start, heading_of(target.read_text(encoding="utf-8"))
+            return Result(folder, target, seconds, error=error, title=title, issued=kept)
         size = write_page(target, html)
         write_page(target.with_suffix(".readback.html"), sheet)
         written = tuple(target.with_suffix(f".{name}.html") for name, _ in more)
@@ -155,12 +141,22 @@ def _target(brief: Brief, folder: Path, out: Path, taken: dict[str, Path]) -> Pa
     return out / name
 
 
+def _issued_page(brief: Brief, target: Path, html: str) -> str:
+    """The issued page that stands at `target` and would be lost ("NB-2T-001 rev 0"), or "".
+
+    An issued page may give way only to one that is in the register too. Raises `FaultyFile` where the register cannot
+    be read: nobody knows then what the page that stands there is.
+    """
+    if not target.is_file():
+        return ""
+    known = {
+        entry.page: f"{entry.number} rev {entry.revision}" for entry in load_register(brief.identity.operator).issued
+    }
+    return "" if digest(html.encode("utf-8")) in known else known.get(digest(target.read_bytes()), "")
+
+
 def _readback(brief: Brief, page: CrewPage) -> str:
     return harden(render_plain("readback.html.j2", page=page, sheet=readback(brief.aircraft, brief.identity)))
-
-
-def _index(results: tuple[Result, ...]) -> str:
-    return harden(render_plain("index.html.j2", results=results), neighbours=True)
 
 
 def _cores() -> int:

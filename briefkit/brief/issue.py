@@ -23,6 +23,7 @@ from briefkit.aircraft.operation import OPERATION_FILE
 from briefkit.aircraft.section_table import section_file
 from briefkit.brief.compare import Revision, revision_of, turns_of
 from briefkit.brief.identity import BRIEF_FILE, NOTEBOOK, Brief, load_brief, operator_folder
+from briefkit.brief.index import relist
 from briefkit.brief.register import REGISTER_FILE, Issued, Register, add_issued, citations, load_register
 from briefkit.brief.seal import covered, seal_of
 from briefkit.brief.sources import sources
@@ -47,7 +48,8 @@ def issue(
 
     `make` gives the page, its mark ("" where it is released) and its table of turns for a brief on a day. Raises
     `BriefkitError` where the brief is not released, this revision or a later one was issued already, or a file cannot
-    be written. The register is written last: a page that is not in it counts as not issued.
+    be written. The register comes after the page: a page that is not in it counts as not issued. Last, an index that
+    stands in `out` is told.
     """
     brief = load_brief(folder)
     identity = brief.identity
@@ -68,6 +70,10 @@ def issue(
     target = out / f"{identity.number}.html"
     write_page(target, page)
     add_issued(register.path, entry)
+    try:
+        relist(out, identity.folder, target, page)
+    except BriefkitError as error:
+        raise BriefkitError(f"{entry.number} rev {entry.revision} is issued and registered, but {error}") from None
     return entry, target
 
 

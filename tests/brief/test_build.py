@@ -2,13 +2,20 @@
 
 from __future__ import annotations
 
+import datetime as dt
 import re
 import shutil
 from pathlib import Path
+from types import SimpleNamespace
 
 import pytest
 
+from briefkit.brief import build as building
 from briefkit.brief.build import Result, build, find_briefs
+from briefkit.brief.index import heading_of
+from briefkit.brief.issue import State, digest, verify
+from briefkit.brief.register import Issued, add_issued, load_register
+from briefkit.brief.run import Ran
 from briefkit.errors import BuildError
 
 
@@ -92,3 +99,50 @@ def test_a_folder_that_cannot_be_used(brief, tmp_path, today):
     (tmp_path / "file").write_text("")
     with pytest.raises(BuildError, match=r"file: cannot be used as a folder \(File exists\)"):
         build([brief], tmp_path / "file", today)
+
+
+def test_a_draft_is_never_written_over_the_issued_page(operator, brief, tmp_path, monkeypatch):
+    """Both go to `out` by default: the page that is in the register stays, the other brief is built."""
+
+    async def no_kernel(*_: object) -> Ran:
+        return Ran((), ())
+
+    drawn = SimpleNamespace(heading="Heavy & hot", mark="DRAFT: not for crews")
+    monkeypatch.setattr(building, "run_async", no_kernel)
+    monkeypatch.setattr(building, "contents", lambda *_: drawn)
+    monkeypatch.setattr(building, "complaint", lambda _: "")
+    monkeypatch.setattr(building, "compose", lambda page, *_: f"<title>NB-2T-001 rev 0: x</title>{page.heading}")
+    monkeypatch.setattr(building, "_readback", lambda *_: "")
+    second, out, day = another(brief, "NB-2T-002"), tmp_path / "out", dt.date(2030, 6, 1)
+    page = out / "NB-2T-001.html"
+    out.mkdir()
+    page.write_text("<title>NB-2T-001 rev 0: x</title><h1>Issued &amp; held</h1>", encoding="utf-8")
+    entry = Issued(
+        "NB-2T-001", 0, "x", "vellmark-2t", digest(page.read_bytes()), "b" * 64, day, day, dt.date(2032, 2, 29)
+    )
+    (operator / "register.toml").unlink()
+    add_issued(operator / "register.toml", entry)
+    results = {result.brief: result for result in build([operator], out, day)}
+    assert results[brief].error.startswith(f"{page}: NB-2T-001 rev 0 was issued as this page")
+    assert "build to another folder with --out, or raise document.revision" in results[brief].error
+    assert not results[second].error
+    assert verify(page, load_register(operator), day).state is State.AS_REGISTERED
+    index = (out / "index.html").read_text(encoding="utf-8")
+    assert "Issued &amp; held" in index
+    assert "The issued page, NB-2T-001 rev 0." in index
+    assert "do not hand it out" not in index
+
+    # elsewhere it is written; so it is over a page that was edited, and where the bytes are those of the register
+    (other,) = build([brief], tmp_path / "drafts", day)
+    assert not other.error
+    same = page.read_bytes()
+    monkeypatch.setattr(building, "compose", lambda *_: same.decode("utf-8"))
+    assert not build([brief], out, day)[0].error
+    page.write_bytes(same + b" ")
+    assert not build([brief], out, day)[0].error
+    assert page.read_bytes() == same
+
+
+def test_the_heading_of_a_page():
+    assert heading_of('<h1 class="x">A <b>B</b> &amp; C\n</h1><h1>D</h1>') == "A B & C"
+    assert heading_of("<p>A</p>") == ""

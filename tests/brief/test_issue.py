@@ -5,6 +5,7 @@ from __future__ import annotations
 import datetime as dt
 import io
 import json
+import re
 import shutil
 import zipfile
 from dataclasses import replace
@@ -18,7 +19,9 @@ from briefkit.brief.check import Level, findings, stands_against
 from briefkit.brief.compare import compare, revision_of
 from briefkit.brief.crew_page import table_of
 from briefkit.brief.export import released
+from briefkit.brief.harden import harden
 from briefkit.brief.identity import Brief, load_brief
+from briefkit.brief.index import Result, index_of, relist
 from briefkit.brief.issue import State, digest, find_register, issue, opened, verify
 from briefkit.brief.register import Issued, Register, load_register
 from briefkit.brief.release import standing
@@ -129,6 +132,39 @@ def test_a_revision_is_issued_once(issued, tmp_path: Path) -> None:
     with pytest.raises(BriefkitError, match="a changed page is a new revision"):
         issue(folder, tmp_path / "out", DAY, make)
     assert (page.read_bytes(), (folder.parent / "register.toml").read_bytes()) == before
+
+
+def test_the_index_beside_an_issued_page_says_what_stands_there_now(signed: Path, tmp_path: Path) -> None:
+    """The line of a draft, or of a brief that was not built, gives way; the others stay; it is told once."""
+    out = tmp_path / "out"
+    page, other = out / "NB-2T-001.html", Result(signed, out / "NB-9X-001.html", title="Other", mark=DRAFT)
+    out.mkdir()
+    (out / "NB-2T-001.deck.html").touch()
+    draft = Result(signed, page, title="Old title", mark=DRAFT)
+    failed = Result(signed, None, error="x")
+    (out / "index.html").write_text(index_of((draft, other, failed)), encoding="utf-8")
+    issue(signed, out, DAY, make)
+    index = (out / "index.html").read_text(encoding="utf-8")
+    lines = re.findall(r"<li>.*?</li>", index, re.DOTALL)
+    assert [re.findall(r'href="(.*?)"', line)[0] for line in lines] == [page.name, "NB-9X-001.html"]
+    assert (DRAFT in lines[0], DRAFT in lines[1]) == (False, True)
+    assert "NB-2T-001.deck.html" in lines[0]
+    assert "readback" not in lines[0]  # none stands there
+    assert "Old title" not in index
+    assert harden(index, neighbours=True) == index
+    relist(out, signed, out / "NB-3Y-001.html", "<h1>Third</h1>")
+    third = re.findall(r"<li>.*?</li>", (out / "index.html").read_text(encoding="utf-8"), re.DOTALL)
+    assert third[:2] == lines
+    assert "Third" in third[2]
+
+
+def test_an_index_that_is_not_ours_is_left_alone(tmp_path: Path) -> None:
+    relist(tmp_path, tmp_path, tmp_path / "NB-2T-001.html", "<h1>A</h1>")
+    assert list(tmp_path.iterdir()) == []
+    for content in (b"<ul><li>mine</li></ul>", b"\xff"):
+        (tmp_path / "index.html").write_bytes(content)
+        relist(tmp_path, tmp_path, tmp_path / "NB-2T-001.html", "<h1>A</h1>")
+        assert (tmp_path / "index.html").read_bytes() == content
 
 
 # --- the mark of a page ------------------------------------------------------------------------------------------
