@@ -9,13 +9,14 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Final
 
 from briefkit import units
 from briefkit.aircraft.model import Aircraft
 from briefkit.aircraft.operation import FleetEntry, Operation, WorkArea
+from briefkit.brief.deciding import tip_first
 from briefkit.brief.identity import load_brief
 from briefkit.envelope import cues
 from briefkit.envelope.condition import Condition
@@ -169,7 +170,7 @@ def _not_stall(aircraft: Aircraft, fleet: FleetEntry, areas: list[WorkArea], day
         said = _ask(aircraft, fleet, cold | bank)
         if said is not None and said.computed.says is Says.MANUAL_VNE:
             name = f"{area.name}: {'cold, and ' if freezing else ''}stall is not what decides"
-            mild = _no_reduction(aircraft, name, cold, bank)
+            mild = _no_reduction(aircraft, area, name, cold, bank)
             if freezing:
                 return mild
     if mild is not None:
@@ -177,7 +178,7 @@ def _not_stall(aircraft: Aircraft, fleet: FleetEntry, areas: list[WorkArea], day
     cooler = day | {"oat": _temperature(_condition(day).oat - 10.0)}
     start, change = (cooler, {"oat": day["oat"]}) if _manual_permits(aircraft, fleet, cooler) else (
         day | bank, {"bank": "0 deg"})  # fmt: skip
-    return _no_reduction(aircraft, "Level, rotor at 100 %: the manual decides alone", start, change)
+    return _no_reduction(aircraft, areas[0], "Level, rotor at 100 %: the manual decides alone", start, change)
 
 
 def _cold_days(
@@ -198,12 +199,19 @@ def _cold_days(
                 )
 
 
-def _no_reduction(aircraft: Aircraft, name: str, start: dict[str, str], change: dict[str, str]) -> _Draft:
+def _no_reduction(
+    aircraft: Aircraft, area: WorkArea, name: str, start: dict[str, str], change: dict[str, str]
+) -> _Draft:
     source = cues.NO_SOURCE
     teaching = (
-        "Nothing to take off is not room to go faster. In the cold the advancing tip may come first, and a faster "
-        "rotor brings it nearer; VNE has reasons that no computation here can see."
+        "Nothing to take off for stall is not room to go faster: VNE still limits, for the maker's own reasons, which "
+        "no computation here can see."
     )
+    if _tip_comes_first(aircraft, area, _condition(start | change)):
+        teaching = (
+            "Nothing to take off is not room to go faster. In this cold the advancing tip comes first: the manual's "
+            "VNE falls towards the cold, and a faster rotor brings the tip nearer."
+        )
     if aircraft.vne.cap_text:
         teaching = (
             f"In this configuration the manual's own speed, {aircraft.vne.cap_text}, rules long before the blade "
@@ -218,6 +226,17 @@ def _no_reduction(aircraft: Aircraft, name: str, start: dict[str, str], change: 
         teaching,
         source,
     )
+
+
+def _tip_comes_first(aircraft: Aircraft, area: WorkArea, at: Condition) -> bool:
+    """Whether the manual's chart says so on the case's own day and at its mass, by the rule the crew's page goes by."""
+    day = replace(
+        area,
+        low_temperature=replace(area.low_temperature, value=at.oat),
+        low_altitude=replace(area.low_altitude, value=at.pressure_altitude),
+    )
+    heaviest = replace(aircraft.limits.max_mass, value=at.mass)
+    return bool(tip_first(replace(aircraft, limits=replace(aircraft.limits, max_mass=heaviest)), day))
 
 
 def _refused(aircraft: Aircraft, fleet: FleetEntry, day: dict[str, str]) -> _Draft:

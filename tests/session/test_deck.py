@@ -12,6 +12,7 @@ from briefkit.aircraft.load import load_aircraft
 from briefkit.aircraft.operation import load_operation
 from briefkit.brief.seal import seal_of
 from briefkit.errors import BuildError, FaultyFile
+from briefkit.session import generate as generate_module
 from briefkit.session.answers import Says
 from briefkit.session.deck import load_deck
 from briefkit.session.generate import generate, write_deck
@@ -195,6 +196,29 @@ def test_a_warm_area_s_cold_case_goes_to_the_chart_s_cold_end(operator):
     cases = tomllib.loads(generate(aircraft, operation, "vellmark"))["case"]
     (cold,) = (case for case in cases if "not what decides" in case["name"])
     assert cold["start"]["oat"] == "-20 degC"
+
+
+@pytest.mark.parametrize(
+    ("stem", "area", "coldest", "tip"),
+    [
+        ("kvillarn-4h", "ysbrane", None, True),  # -38: the invented 4H's chart falls from 145 to 129 towards it
+        ("kvillarn-4h", "vellmark", "+5 degC", False),  # the same chart, where it does not fall
+        ("pelquill-2t", "vellmark", None, False),  # -20, below freezing, and the chart rises to its cold end
+    ],
+)
+def test_the_tip_is_taught_only_where_the_manual_s_chart_says_so(operator, monkeypatch, stem, area, coldest, tip):
+    aircraft, operation = load_aircraft(operator / "aircraft" / f"{stem}.toml"), load_operation(operator)
+    if coldest:
+        days = list(generate_module._cold_days(aircraft, operation.entry_for(aircraft), [operation.work_areas[area]]))
+        mild = [(where, day | {"oat": coldest, "mass": "2,600 kg"}) for where, day in days[:1]]
+        monkeypatch.setattr(generate_module, "_cold_days", lambda *_: iter(mild))
+    cases = tomllib.loads(generate(aircraft, operation, area))["case"]
+    (calm,) = (case for case in cases if "not what decides" in case["name"])
+    assert ("advancing tip comes first" in calm["teaching"]) is tip
+    assert ("VNE still limits" in calm["teaching"]) is not tip
+    assert "not room to go faster" in calm["teaching"]
+    if coldest:
+        assert calm["start"]["oat"] == coldest
 
 
 def test_nothing_is_drawn_from_the_name_of_a_type(operator):
