@@ -353,3 +353,9 @@ def test_issue_and_verify(company, tmp_path):
     page.write_text(page.read_text(encoding="utf-8").replace("87", "97"), encoding="utf-8")
     done = run("verify", page, "--register", company, "--date", "2030-06-01")
     assert (done.exit_code, "altered" in done.output) == (1, True)
+
+
+@pytest.mark.parametrize("command", [["sign", "--role", "prepared", "--code", "NRC-17"], ["issue"], ["deck"]])
+def test_a_command_for_one_brief_says_which_briefs_are_below(operator, command):
+    done = run(*command, operator)
+    assert (done.exit_code, done.stderr) == (1, f"{operator}: no brief.toml here; briefs below: vellmark-2t\n")

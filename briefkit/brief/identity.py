@@ -21,7 +21,7 @@ from briefkit.aircraft.model import Aircraft
 from briefkit.aircraft.operation import OPERATION_FILE, Operation, load_operation
 from briefkit.aircraft.operation_check import cross_check
 from briefkit.aircraft.tables import Text
-from briefkit.errors import Fault, FaultyFile
+from briefkit.errors import BriefkitError, Fault, FaultyFile
 from briefkit.reading.document import Document, Table
 from briefkit.reading.quantity import did_you_mean, quoted
 
@@ -221,7 +221,11 @@ class Brief:
 
 
 def load_brief(path: Path | str) -> Brief:
-    """The brief in a folder: identity, aircraft and operation. Raises `FaultyFile` with the faults of all three."""
+    """The brief in a folder: identity, aircraft and operation.
+
+    Raises `FaultyFile` with the faults of all three, `BriefkitError` for a folder that is no brief's.
+    """
+    _is_a_briefs(Path(path))
     faults: list[Fault] = []
     identity, aircraft, operation = None, None, None
     try:
@@ -248,6 +252,16 @@ def load_brief(path: Path | str) -> Brief:
     if faults:
         raise FaultyFile(faults)
     return Brief(needed(identity), needed(aircraft), needed(operation))
+
+
+def _is_a_briefs(folder: Path) -> None:
+    """Raise `BriefkitError` for a folder without a `brief.toml`, with the briefs below it: one of them was meant."""
+    if not folder.is_dir() or (folder / BRIEF_FILE).exists():
+        return
+    inside = sorted(file.parent.relative_to(folder) for file in folder.glob(f"*/**/{BRIEF_FILE}"))
+    below = [one.as_posix() for one in inside if not any(part.startswith(".") for part in one.parts)]
+    said = f"here; briefs below: {', '.join(below)}" if below else "here, nor in a folder below"
+    raise BriefkitError(f"{folder}: no {BRIEF_FILE} {said}")
 
 
 def named_configuration(path: Path | str) -> str | None:

@@ -9,7 +9,7 @@ from pathlib import Path
 import pytest
 
 from briefkit.brief.identity import Identity, disagreements, load_brief, load_identity, named_aircraft, operator_folder
-from briefkit.errors import FaultyFile
+from briefkit.errors import BriefkitError, FaultyFile
 
 
 @pytest.fixture
@@ -137,3 +137,16 @@ def test_a_work_area_outside_the_manual_refuses_the_brief(world: Path) -> None:
     edit(world / "operation.toml", '"8,000 ft"', '"10,500 ft"')
     with pytest.raises(FaultyFile, match=r"work_areas\.vellmark\.pressure_altitudes: read 10,500 ft"):
         load_brief(world / "vellmark-2t")
+
+
+def test_a_folder_that_is_no_briefs_names_the_briefs_below_it(world: Path) -> None:
+    """Typed one folder too high: no other file is offered in the place of brief.toml."""
+    hidden = world / ".old" / "x"
+    hidden.mkdir(parents=True)
+    shutil.copy(world / "vellmark-2t" / "brief.toml", hidden)
+    with pytest.raises(BriefkitError) as caught:
+        load_brief(world)
+    said = f"{world}: no brief.toml here; briefs below: corrant-3f, vellmark-2t, ysbrane-4h"
+    assert str(caught.value) == said
+    with pytest.raises(BriefkitError, match=r"aircraft: no brief\.toml here, nor in a folder below"):
+        load_brief(world / "aircraft")
