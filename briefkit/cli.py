@@ -61,8 +61,9 @@ def build_command(
     """Make the page of every brief.
 
     Runs each brief below PATH and writes its page, its read-back sheet, the sheets of its deck if it has one, and an
-    index. Exit 1 if one failed; the others are built, and a page already there is left whole. The same files give the
-    same bytes; a PDF is a print of the page, and its bytes are not promised.
+    index. Exit 1 if one failed; the others are built, and a page already there is left whole. An issued page is never
+    written over by another one. The same files give the same bytes; a PDF is a print of the page, and its bytes are not
+    promised.
     """
     with _plain_errors():
         from rich.console import Console
@@ -203,14 +204,19 @@ def issue_command(
 ) -> None:
     """Issue a signed brief: its page, a line in register.toml, an archive of everything it was made from.
 
-    Refused while anything stands against release, or where this revision was issued already.
+    Refused, with what stands against it, while it is not released, or where this revision was issued already. An index
+    that stands in the folder is told.
     """
     with _plain_errors():
+        from briefkit.brief.check_register import unmarked_changes
         from briefkit.brief.export import released
+        from briefkit.brief.identity import BRIEF_FILE, load_identity
         from briefkit.brief.issue import issue
 
         entry, page = issue(folder, out, _day(date), released)
         typer.echo(f"{page}  {entry.number} rev {entry.revision}, SHA-256 {entry.page}")
+        for note in unmarked_changes(str(folder / BRIEF_FILE), load_identity(folder)):
+            typer.echo(f"  {note}")
 
 
 @app.command("verify")

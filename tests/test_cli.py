@@ -14,6 +14,7 @@ import time
 import urllib.error
 import urllib.request
 from pathlib import Path
+from types import SimpleNamespace
 
 import pytest
 from typer.testing import CliRunner
@@ -359,3 +360,33 @@ def test_issue_and_verify(company, tmp_path):
 def test_a_command_for_one_brief_says_which_briefs_are_below(operator, command):
     done = run(*command, operator)
     assert (done.exit_code, done.stderr) == (1, f"{operator}: no brief.toml here; briefs below: vellmark-2t\n")
+
+
+def test_issue_says_what_stands_against_it(company, tmp_path):
+    """The findings themselves, the first few; no kernel is started for a draft."""
+    file = company / "vellmark-2t" / "brief.toml"
+    text = file.read_text(encoding="utf-8")
+    start, end = text.index("basis = ["), text.index("[subject]")
+    file.write_text(text[:start] + f"basis = {['Manual'] * 6}\n\n" + text[end:], encoding="utf-8")
+    out = tmp_path / "out"
+    done = run("issue", file.parent, "--out", out, "--date", "2030-03-20")
+    lines = done.stderr.splitlines()
+    assert (done.exit_code, out.exists()) == (1, False)
+    assert lines[0] == "NB-2T-001 rev 0: DRAFT: not for crews; against its release:"
+    assert lines[1].startswith("  blocks release: vellmark-2t/brief.toml: document.basis, value 1: 'Manual' names no")
+    assert (len(lines), lines[-1]) == (7, f"  and 2 more: briefkit check {file.parent}")
+
+
+def test_issue_notes_that_no_section_is_named(company, monkeypatch):
+    """`issue` itself is held in tests/brief; here what the command says after it."""
+    from briefkit.brief import issue as issuing
+
+    folder = company / "vellmark-2t"
+    file = folder / "brief.toml"
+    entry = SimpleNamespace(number="NB-2T-001", revision=1, page="0" * 64)
+    monkeypatch.setattr(issuing, "issue", lambda *_: (entry, Path("page.html")))
+    assert "margin" not in run("issue", folder).output
+    file.write_text(file.read_text(encoding="utf-8").replace("revision = 0", "revision = 1"), encoding="utf-8")
+    done = run("issue", folder)
+    assert done.exit_code == 0
+    assert f"  note: {file}: changes: no section named for revision 1: no bar stands in the margin" in done.output

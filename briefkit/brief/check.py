@@ -163,6 +163,7 @@ def page_standing(brief: Brief) -> tuple[ReductionTable | None, tuple[Difference
 def _identity(identity: Identity, operation: Operation | None, folder: Path, today: dt.date) -> list[Finding]:
     place = str(folder / BRIEF_FILE)
     found = _dates(identity, operation, place, today) + check_register.basis_findings(place, identity)
+    found += check_register.unmarked_changes(place, identity)
     said = "\n".join((identity.title, *identity.basis, *(f"{one.text}\n{one.reason}" for one in identity.changes)))
     return found + personal_data(place, said)
 

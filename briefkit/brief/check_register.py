@@ -39,6 +39,15 @@ def basis_findings(place: str, identity: Identity) -> list[Finding]:
     ]
 
 
+def unmarked_changes(place: str, identity: Identity) -> list[Finding]:
+    """A revision whose list of changes names no section shows a crew no bar beside what is new."""
+    lines = [change for change in identity.changes if change.revision == identity.revision]
+    if identity.revision == 0 or not lines or any(change.sections for change in lines):
+        return []
+    text = f"no section named for revision {identity.revision}: no bar stands in the margin"
+    return [Finding(Level.NOTE, f"{place}: changes", text, 'add sections = ["2", ...]')]
+
+
 def source_revisions(brief: Brief, register: Register, today: dt.date) -> list[Finding]:
     """Sources that are not from the current revision of a registered document, and documents due for review."""
     if not register.documents:

@@ -19,7 +19,7 @@ from briefkit.brief.harden import harden
 from briefkit.brief.identity import BRIEF_FILE, NOTEBOOK, Brief, Identity, load_brief
 from briefkit.brief.pages import CrewPage, Section, render
 from briefkit.brief.prose import in_order, set_words
-from briefkit.brief.release import standing
+from briefkit.brief.release import in_the_way, standing
 from briefkit.brief.run import Ran, Words, read_notebook, run_node
 from briefkit.brief.seal import seal_of
 from briefkit.brief.sources import link
@@ -117,7 +117,8 @@ def released(brief: Brief, day: dt.date) -> tuple[str, str, ReductionTable]:
     known = standing(brief, day, node.cells)
     page = mark_changes(crew_page(brief, version("briefkit"), known), brief.identity)
     if page.mark or known.table is None:
-        raise BuildError(f"{brief.identity.number} rev {brief.identity.revision}: {page.mark}; see briefkit check")
+        name = f"{brief.identity.number} rev {brief.identity.revision}"
+        raise BuildError(f"{name}: {page.mark}; against its release:\n{in_the_way(brief, day)}")
     ran = run_node(node, brief.identity.notebook)
     unchanged(brief, page, node)
     return compose(page, ran, brief.identity.folder), page.mark, known.table

@@ -3,8 +3,9 @@
 from __future__ import annotations
 
 import datetime as dt
+import shlex
 from collections.abc import Iterable
-from typing import Any
+from typing import Any, Final
 
 from briefkit.brief.check import findings, page_standing, stands_against
 from briefkit.brief.compare import explained
@@ -12,6 +13,8 @@ from briefkit.brief.identity import Brief, load_brief
 from briefkit.brief.seal import seal_of
 from briefkit.brief.sign import valid
 from briefkit.brief.standing import DRAFT, Standing
+
+_SHOWN: Final = 5  # lines of what stands against a release; briefkit check has them all
 
 
 def standing(brief: Brief, today: dt.date, cells: Iterable[Any] | None = None) -> Standing:
@@ -29,6 +32,17 @@ def standing(brief: Brief, today: dt.date, cells: Iterable[Any] | None = None) -
     expired = identity.expires if identity.expires <= today else None
     relaxed = tuple((one, explained(brief, one)) for one in differences)
     return Standing("" if released else DRAFT, seal, valid(identity, seal), relaxed, table, expired)
+
+
+def in_the_way(brief: Brief, today: dt.date) -> str:
+    """What stands against the release of a brief, a line each: the first few, and how many more."""
+    found = list(map(str, stands_against(findings(brief.identity.folder, today))))
+    more = len(found) - _SHOWN
+    said = [
+        *found[:_SHOWN],
+        *([f"and {more} more: briefkit check {shlex.quote(str(brief.identity.folder))}"] if more > 0 else []),
+    ]
+    return "\n".join(f"  {line}" for line in said) or "  a file of the brief changed meanwhile: look, then issue again"
 
 
 def _hashes(brief: Brief) -> tuple[str, ...]:

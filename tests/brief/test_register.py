@@ -222,3 +222,17 @@ def test_the_basis_documents_are_named_with_their_revision(complete: Path, signi
     path.write_text(f"{whole[:start]}{basis}\n\n{whole[end:]}", encoding="utf-8")
     (found,) = serious(signing(path.parent))
     assert found[1] == text
+
+
+def test_a_revision_that_names_no_section_is_noted(complete: Path) -> None:
+    """Its page would carry no bar in the margin: a note, and nothing against release."""
+    path = complete / "vellmark-2t" / "brief.toml"
+    first = path.read_text(encoding="utf-8")
+    path.write_text(first.replace("revision = 0", "revision = 1"), encoding="utf-8")
+    said = "no section named for revision 1: no bar stands in the margin"
+    (note,) = [one for one in findings(path, TODAY, page=False) if one.text == said]
+    assert (note.level, note.place) == (Level.NOTE, "vellmark-2t/brief.toml: changes")
+    named = first.replace("revision = 0", "revision = 1", 1).replace("revision = 0", 'sections = ["2"]\nrevision = 1')
+    for text in (first, named, first.replace("revision = 0", "revision = 1", 1)):
+        path.write_text(text, encoding="utf-8")
+        assert not [one for one in findings(path, TODAY, page=False) if "margin" in one.text]
