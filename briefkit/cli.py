@@ -17,6 +17,7 @@ from briefkit.errors import BriefkitError
 if TYPE_CHECKING:
     from briefkit.brief.build import Result
     from briefkit.brief.finding import Finding
+    from briefkit.brief.new import Question
 
 app = typer.Typer(
     help="Briefs on retreating-blade stall for the crews of your own aircraft: one offline page each.",
@@ -258,7 +259,8 @@ def new_command(
 ) -> None:
     """Make a brief for a type of yours.
 
-    Six answers; what is not given as an option is asked. Nothing that exists is written over.
+    Six answers; what is not given as an option is asked, and asked again until it will do. Nothing that exists is
+    written over.
     """
     given = {
         "type_name": type_name,
@@ -269,15 +271,11 @@ def new_command(
         "mass_unit": mass_unit,
     }
     with _plain_errors():
-        from briefkit.brief.new import QUESTIONS, Answers, Starter, new
+        from briefkit.brief.new import Answers, Starter, new
 
         if starter not in tuple(Starter):
             raise typer.BadParameter(f"{starter!r} is not one of {', '.join(Starter)}", param_hint="--starter")
-        for question in QUESTIONS:
-            if not given[question.name]:
-                choices = f" ({', '.join(question.choices)})" if question.choices else ""
-                given[question.name] = typer.prompt(question.text + choices)
-        made = new(folder, Answers(**given), dt.date.today(), starter)
+        made = new(folder, Answers(**_asked({name: said for name, said in given.items() if said})), _day(None), starter)
         for file in made.written:
             typer.echo(f"written: {file}")
         if starter == Starter.RECURRENT_CHECK:
@@ -290,6 +288,26 @@ def new_command(
         typer.echo(f"see page 1:  briefkit build {where}")
         typer.echo(f"what is still to be typed:  briefkit check {where}")
         typer.echo(f"work on it:  briefkit live {where}")
+
+
+def _asked(given: dict[str, str]) -> dict[str, str]:
+    """The answers given as options, held at once and all together, and those asked for, each held as it is typed."""
+    from briefkit.brief.new import QUESTIONS, fault_of, faults_of
+
+    if faults := faults_of(given):
+        raise BriefkitError("\n".join(f"--{one.name.replace('_', '-')}: {fault}" for one, fault in faults))
+    for question in QUESTIONS:
+        if question.name in given:
+            continue
+
+        def held(typed: str, question: Question = question) -> str:
+            if fault := fault_of(question, typed.strip(), given):
+                raise typer.BadParameter(str(fault))  # said, and asked again
+            return typed.strip()
+
+        choices = f" ({', '.join(question.choices)})" if question.choices else ""
+        given[question.name] = typer.prompt(question.text + choices, value_proc=held)
+    return given
 
 
 @app.command("deck")

@@ -181,6 +181,27 @@ def test_new_refuses_an_answer_that_is_not_one(tmp_path):
     assert not (tmp_path / "x").exists()
 
 
+def test_new_asks_again_at_once_and_keeps_the_answers_before(tmp_path):
+    typed = ("Testrel 9", "many", "3", "teetering", "articulated", "clockwise", "knots", "kt", "kg")
+    done = CliRunner().invoke(app, ["new", str(tmp_path / "x")], input="\n".join(typed) + "\n")
+    assert done.exit_code == 0, done.output
+    said = done.output.partition("written:")[0]
+    assert said.count("Type name, as on your documents") == 1
+    many = "Error: read 'many'; permitted: Main rotor blades: 2, 3, 4, 5, 6, 7, 8\nMain rotor blades (2, 3"
+    assert many in said
+    assert "Error: read '3 blades'; permitted: 2 blades with a teetering hub; is the hub articulated?\nHub (" in said
+    assert "did you mean kt?\nUnit of the airspeed indicator" in said
+    made = (tmp_path / "x" / "aircraft" / "testrel-9.toml").read_text(encoding="utf-8")
+    assert "blades = 3" in made
+
+
+def test_new_lists_every_option_that_will_not_do_before_it_asks(tmp_path):
+    done = run("new", tmp_path / "x", "--blades", "many", "--hub", "hinge", "--mass-unit", "lbs")
+    assert (done.exit_code, done.stdout) == (1, "")
+    assert [line.partition(":")[0] for line in done.stderr.splitlines()] == ["--blades", "--hub", "--mass-unit"]
+    assert not (tmp_path / "x").exists()
+
+
 def test_live_serves_this_machine_only_behind_a_token(operator, monkeypatch, capsys):
     served: list[list[str]] = []
     overrides: list[object] = []

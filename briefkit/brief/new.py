@@ -11,6 +11,7 @@ import json
 import os
 import re
 import tomllib
+from collections.abc import Mapping
 from dataclasses import dataclass
 from enum import StrEnum
 from pathlib import Path
@@ -62,20 +63,44 @@ class Answers:
     mass_unit: str
 
     def __post_init__(self) -> None:
-        for question in QUESTIONS:
-            answer = getattr(self, question.name)
-            if question.choices and answer not in question.choices:
-                remedy = did_you_mean(str(answer), question.choices)
-                raise ReadingError(str(answer), f"{question.text}: {', '.join(question.choices)}", remedy)
-        if not _NAME.fullmatch(self.type_name) or not self.stem:
-            raise ReadingError(self.type_name, "a name of letters, digits and spaces that names a file", "")
-        if self.hub == "teetering" and self.blades != "2":
-            raise ReadingError(f"{self.blades} blades", "2 blades with a teetering hub", "is the hub articulated?")
+        for _, fault in faults_of(vars(self)):
+            raise fault
 
     @property
     def stem(self) -> str:
         """The name of the aircraft file: "Pelquill 2T" is pelquill-2t."""
-        return re.sub(r"[^a-z0-9]+", "-", self.type_name.lower()).strip("-")
+        return _stem(self.type_name)
+
+
+def fault_of(question: Question, answer: str, known: Mapping[str, str]) -> ReadingError | None:
+    """What is wrong with an answer beside those `known` already, by name; None where nothing is."""
+    if question.choices and answer not in question.choices:
+        remedy = did_you_mean(answer, question.choices)
+        return ReadingError(answer, f"{question.text}: {', '.join(question.choices)}", remedy)
+    if not question.choices and not (_NAME.fullmatch(answer) and _stem(answer)):
+        return ReadingError(answer, "a name of letters, digits and spaces that names a file", "")
+    both = {**known, question.name: answer}
+    if both.get("hub") == "teetering" and (blades := both.get("blades", "2")) != "2":
+        return ReadingError(f"{blades} blades", "2 blades with a teetering hub", "is the hub articulated?")
+    return None
+
+
+def faults_of(given: Mapping[str, str]) -> list[tuple[Question, ReadingError]]:
+    """Every answer given, by name, that will not do, with its question; what is not given yet is not held."""
+    known: dict[str, str] = {}
+    found = []
+    for question in QUESTIONS:
+        if question.name not in given:
+            continue
+        if fault := fault_of(question, given[question.name], known):
+            found.append((question, fault))
+        else:
+            known[question.name] = given[question.name]
+    return found
+
+
+def _stem(type_name: str) -> str:
+    return re.sub(r"[^a-z0-9]+", "-", type_name.lower()).strip("-")
 
 
 # What an invented example aircraft is in each unit: round figures, not conversions of one another.

@@ -16,7 +16,7 @@ from briefkit.aircraft.operation import load_operation
 from briefkit.brief.check import Level, findings, stands_against
 from briefkit.brief.crew_page import crew_page
 from briefkit.brief.identity import Brief, load_brief
-from briefkit.brief.new import QUESTIONS, Answers, new
+from briefkit.brief.new import QUESTIONS, Answers, faults_of, new
 from briefkit.brief.templates import template_folder
 from briefkit.envelope.reductions import RowKind, reductions
 from briefkit.errors import FaultyFile, ReadingError
@@ -201,6 +201,14 @@ def test_a_wrong_answer_says_what_is_permitted(field: str, answer: str, words: s
 def test_a_teetering_hub_has_two_blades() -> None:
     with pytest.raises(ReadingError, match="2 blades with a teetering hub"):
         Answers("Vrenholt 3", "3", "teetering", "clockwise", "kt", "lb")
+
+
+def test_every_answer_that_will_not_do_is_found_and_what_is_not_given_is_not_held() -> None:
+    given = {"blades": "many", "hub": "teetering", "mass_unit": "stone"}
+    assert [question.name for question, _ in faults_of(given)] == ["blades", "mass_unit"]
+    ((question, fault),) = faults_of(given | {"blades": "3", "mass_unit": "kg"})
+    assert (question.name, fault.read) == ("hub", "3 blades")
+    assert faults_of({}) == faults_of({"hub": "teetering"}) == []
 
 
 def test_the_starters_are_found() -> None:
