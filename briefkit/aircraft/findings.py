@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections import Counter
 from collections.abc import Iterator
+from dataclasses import replace
 from typing import Final
 
 import numpy as np
@@ -111,6 +112,32 @@ def place_of(chart: VneChart, index: tuple[int, ...]) -> str:
         added = len(nodes[axis]) - len(texts)  # an entry below a first one that says "or less"
         parts.append(f"{name} {texts[max(index[list(Axis).index(axis)] - added, 0)]}")
     return ", ".join(parts)
+
+
+def cell_text(chart: VneChart, index: tuple[int, ...], unit: str) -> str:
+    """A cell's speed with its unit: the figure as typed where the cell was."""
+    typed = "" if chart.printed is None else str(chart.printed[index])
+    return f"{typed} {unit}" if typed.replace(".", "").isdigit() else _text(chart, index, unit)
+
+
+def explained(aircraft: Aircraft, place: str, found: list[EntryFinding]) -> list[EntryFinding]:
+    """Those findings on other cells of the power-on chart that are gone once the cell at `place` is left out."""
+    chart = aircraft.vne
+    speeds = chart.speeds.copy()
+    for index in np.ndindex(speeds.shape):
+        if place_of(chart, index) == place:
+            speeds[index] = np.nan
+    rest = replace(chart, speeds=speeds)
+    left = {(one.kind, one.cells) for one in _rising("", rest, aircraft.units.speed)}
+    kinds = {*(kind for kind, _ in _RISES.values()), Kind.OUT_OF_LINE}
+    return [
+        one
+        for one in found
+        if one.kind in kinds
+        and ".power_on" in one.fault.key
+        and one.cells != place
+        and (one.kind, one.cells) not in left
+    ]
 
 
 def _text(chart: VneChart, index: tuple[int, ...], unit: str) -> str:

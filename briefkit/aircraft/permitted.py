@@ -27,7 +27,8 @@ def power_off_findings(key: str, aircraft: Aircraft) -> list[EntryFinding]:
         if np.any(above > _SLACK):
             worst = int(np.nanargmax(above))
             place = _point(aircraft, float(height[worst]), float(temperature[worst]), float(mass[worst]))
-            read = f"{_shown(float(above[worst]), unit)} above it at {place}"
+            value = units.show(float(on[worst] + above[worst]), "speed", unit, 1)
+            read = f"{value} at {place}, {_shown(float(above[worst]), unit)} above power-on VNE there"
             found.append(finding(Kind.POWER_OFF_ABOVE_POWER_ON, "", f"{key}.chart", read, "not above power-on VNE"))
     climb = aircraft.limits.climb_speed.value
     cas = aircraft.calibration.to_calibrated
@@ -40,7 +41,8 @@ def power_off_findings(key: str, aircraft: Aircraft) -> list[EntryFinding]:
     if np.any(short > _SLACK):
         worst = int(np.nanargmax(short))
         place = _point(aircraft, float(height[worst]), float(temperature[worst]), float(mass[worst]))
-        read = f"{_shown(float(short[worst]), unit)} under it at {place}"
+        value = units.show(float(slow[worst]), "speed", unit, 1)
+        read = f"{value} at {place}, {_shown(float(short[worst]), unit)} too slow"
         permitted = "midway between power-on VNE and climb speed, or more (14 CFR 27.1505(c)(1))"
         found.append(finding(Kind.POWER_OFF_UNDER_MIDPOINT, "", key, read, permitted))
     return found
@@ -96,7 +98,8 @@ def supplement_findings(key: str, aircraft: Aircraft) -> list[EntryFinding]:
     if np.any(above > _SLACK):
         worst = int(np.nanargmax(above))
         place = _point(aircraft, float(height[worst]), float(temperature[worst]), float(mass[worst]))
-        read = f"{_shown(float(above[worst]), unit)} above it at {place}"
+        value = units.show(float(on[worst]), "speed", unit, 1)
+        read = f"{value} at {place}, {_shown(float(above[worst]), unit)} above the basic VNE there"
         return [finding(Kind.SUPPLEMENT_ABOVE_BASIC, "", f"{key}.power_on", read, "not above the basic VNE")]
     if chart.cap is not None and chart.cap != basic.cap and chart.cap >= np.nanmax(chart.speeds) - _SLACK:
         permitted = "a figure below the basic VNE somewhere"

@@ -9,13 +9,15 @@ from typing import Final
 import numpy as np
 
 from briefkit import units
-from briefkit.aircraft.answers import EntryFinding, Kind, answered, finding
+from briefkit.aircraft.answers import EntryFinding, Kind, addressed, answered, finding
+from briefkit.aircraft.cell_lines import line_of
 from briefkit.aircraft.chart import Axis
-from briefkit.aircraft.findings import all_findings, place_of
+from briefkit.aircraft.findings import all_findings, cell_text, explained, place_of
 from briefkit.aircraft.load import load_configurations
 from briefkit.aircraft.model import Aircraft, Limits, RotorData, Stated
 from briefkit.brief.finding import Finding, Level, invented_finding, loaded, source_findings
 from briefkit.envelope.chart_shape import LARGEST_RESIDUAL, chart_shape
+from briefkit.reading.document import Document
 
 # A value typed without a spread counts as exact. These never are: each moves the onset band or the pictures.
 _NEVER_EXACT: Final = ("chord", "twist", "flap_inertia", "lift_slope", "drag_area")
@@ -62,16 +64,39 @@ def _findings(place: str, aircraft: Aircraft) -> list[Finding]:
     if outside:
         text = f"{outside} cells lie outside the airspeed calibration: no answer is computed from them"
         found.append(Finding(Level.NOTE, f"{place}: vne.power_on.chart", text))
-    every = [*all_findings(aircraft), *similarity_findings(aircraft)]
-    for one in every:
-        if not answered(aircraft, one):
-            text = f"read {one.fault.read}; expected: {one.fault.permitted}"
-            found.append(Finding(Level.REASON, f"{place}: {one.fault.key}", text, one.fault.remedy))
+    every = [*similarity_findings(aircraft), *all_findings(aircraft)]
+    found += _unanswered(place, aircraft, every)
     for answer in aircraft.answers:
         where = f"{place}: reasons.{answer.kind}"
         meant = [one for one in every if answered(replace(aircraft, answers=(answer,)), one)]
         text = f"answers {len(meant)} findings{f' ({answer.cells})' if answer.cells else ''}: {answer.reason}"
         found.append(Finding(Level.NOTE, where, text, "" if meant else "answers nothing: take it out"))
+    return found
+
+
+def _unanswered(place: str, aircraft: Aircraft, every: list[EntryFinding]) -> list[Finding]:
+    """What still needs a reason, the cell farthest off the common curve first.
+
+    A neighbour that only looks wrong beside such a cell is named with it, not by itself, for as long as that cell has
+    no reason of its own.
+    """
+    document, path = Document(place), Path(place)
+    file = f"{path.parent.name}/{path.name}" if path.parent.name == "aircraft" else path.name
+    left = [one for one in every if not answered(aircraft, one)]
+    found = []
+    while left:
+        one = left.pop(0)
+        beside = []
+        if one.kind is Kind.SIMILARITY and one.cells != "all":
+            beside = explained(aircraft, one.cells, left)
+            left = [other for other in left if other not in beside]
+        names = list(dict.fromkeys(other.cells for other in beside))
+        verb = "looks" if len(names) == 1 else "look"
+        tail = f"; {' and '.join(names)} {verb} wrong only beside it" if names else ""
+        fault, line = addressed(one, aircraft, file), line_of(document, one.fault.key)
+        where = f"{place}, line {line}: {fault.key}" if line else f"{place}: {fault.key}"
+        text = f"read {fault.read}; expected: {fault.permitted}{tail}"
+        found.append(Finding(Level.REASON, where, text, fault.remedy))
     return found
 
 
@@ -90,13 +115,15 @@ def similarity_findings(aircraft: Aircraft) -> list[EntryFinding]:
     permitted = f"within {largest} of the curve all falling cells share (speed over tip speed against loading)"
     if not shape.collapses:
         worst = units.show(float(np.nanmax(np.abs(shape.residual))), "speed", unit, 1)
-        count = f"{len(shape.findings)} of {int(np.isfinite(shape.residual).sum())} cells off it, by up to {worst}"
+        falling = int(np.isfinite(shape.residual).sum())
+        count = f"{len(shape.findings)} of {falling} cells off it, by up to {worst}"
         return [finding(Kind.SIMILARITY, "all", f"{table}.power_on", count, permitted)]
     for cell in shape.findings:
         off = units.show(abs(float(shape.residual[cell])), "speed", unit, 1)
         side = "above" if shape.residual[cell] > 0.0 else "below"
-        place = place_of(chart, tuple(int(at) for at in shape.index[cell]))
-        found.append(finding(Kind.SIMILARITY, place, f"{table}.power_on", f"{off} {side} it", permitted))
+        index = tuple(int(at) for at in shape.index[cell])
+        read = f"{cell_text(chart, index, unit)}, {off} {side} the curve of the others"
+        found.append(finding(Kind.SIMILARITY, place_of(chart, index), f"{table}.power_on", read, permitted))
     return found
 
 

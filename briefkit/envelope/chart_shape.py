@@ -31,6 +31,7 @@ _MANY: Final = 30  # falling cells from which one degree more is known well enou
 _WHOLE: Final = 1.0 / 3.0  # of the falling cells, off the curve: then it is the chart and not the cell
 _LEAST: Final = 6  # falling cells; fewer make no curve
 _ROUNDS: Final = 30
+_SUSPECTS: Final = 3  # cells farthest off, each tried as the one that is wrong
 _ROBUST: Final = 0.7 * units.KNOT  # residuals beyond this weigh less and less (Huber's weights)
 
 
@@ -117,16 +118,33 @@ def _shapes(speeds: Floats) -> NDArray[np.object_]:
 
 
 def _residuals(loading: Floats, vne: Floats) -> Floats:
-    """Distance from a smooth curve fitted so that a few cells off it do not pull it (iterated Huber weights)."""
+    """Distance from the common curve; where one cell left out of the fit clears all others, from theirs alone."""
     spread = np.log(loading)
     x = (spread - spread.mean()) / max(float(np.ptp(spread)), 1e-9)
     degree = _DEGREE + (1 if len(x) >= _MANY else 0)
     powers = np.stack([x**n for n in range(degree + 1)], axis=1)
-    weight = np.ones_like(x)
-    residual: Floats = np.zeros_like(x)
+    every = np.ones(len(x), dtype=bool)
+    residual = _fitted(powers, vne, every)
+    off = np.abs(residual) > LARGEST_RESIDUAL
+    if off.sum() > 1 and len(x) > _LEAST:
+        # One bad cell can pull the curve off its neighbours: then it is the one to name, and they are not.
+        for cell in np.argsort(-np.abs(residual), kind="stable")[:_SUSPECTS]:
+            others = every.copy()
+            others[cell] = False
+            alone = _fitted(powers, vne, others)
+            far = np.abs(alone) > LARGEST_RESIDUAL
+            if far[cell] and far.sum() == 1:
+                return alone
+    return residual
+
+
+def _fitted(powers: Floats, vne: Floats, kept: Flags) -> Floats:
+    """Distance from a smooth curve through the cells kept, a few of them off it not pulling it (Huber's weights)."""
+    weight = kept.astype(float)
+    residual: Floats = np.zeros_like(vne)
     for _ in range(_ROUNDS):
         root = np.sqrt(weight)[:, None]
         curve, *_ = np.linalg.lstsq(powers * root, vne * root[:, 0], rcond=None)
         residual = vne - powers @ curve
-        weight = _ROBUST / np.maximum(np.abs(residual), _ROBUST)
+        weight = np.where(kept, _ROBUST / np.maximum(np.abs(residual), _ROBUST), 0.0)
     return residual

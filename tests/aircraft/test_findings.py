@@ -179,7 +179,56 @@ def test_a_mistyped_cell_off_the_common_curve_needs_a_reason(file_3f):
     assert similarity_findings(file_3f.load()) == []
     (found,) = similarity_findings(file_3f.replaced(("264     241     213", "264     241     231")).load())
     assert (found.kind, found.cells) == (Kind.SIMILARITY, "row 2,000, column 2,380")
-    assert "km/h above it" in found.fault.read.replace("\u00a0", " ")
+    assert found.fault.read.replace("\u00a0", " ") == "231 km/h, 19.8 km/h above the curve of the others"
+
+
+def test_120_typed_as_102_is_named_first_and_alone_with_its_line(file_4h):
+    """Its neighbours "rise" only beside it; once it has a reason of its own they are asked for theirs."""
+    from briefkit.brief.check_aircraft import aircraft_findings
+    from briefkit.brief.finding import Level
+
+    def reasons(file):
+        file.load()
+        path = file.folder / "type.toml"
+        return [one for one in aircraft_findings(path)[1] if one.level is Level.REASON], path
+
+    slip = file_4h.replaced(("6,000        129   130   120", "6,000        129   130   102"))
+    (found,), path = reasons(slip)
+    line = slip.text[: slip.text.index("129   130   102")].count("\n") + 1
+    assert found.place == f"{path}, line {line}: vne.power_on, row 6,000, column 0"
+    said = found.text.replace("\u00a0", " ")
+    assert said.startswith("read 102 kt, 18.7 kt below the curve of the others; expected: within 2 kt")
+    assert said.endswith("row 9,000, column 0 and row 6,000, column +20 look wrong only beside it")
+    there = next(text for text in slip.text.split("\n") if text.startswith("similarity = "))
+    pasted = found.remedy[found.remedy.index(": similarity = ") + 2 :]
+    places = [one.place.rpartition(": ")[2] for one in reasons(slip.replaced((there, pasted)))[0]]
+    assert places == ["vne.power_on.chart, row 9,000, column 0", "vne.power_on.chart, row 6,000, column +20"]
+
+
+def test_a_finding_is_told_with_the_line_it_stands_on(file_2t, file_3f):
+    from briefkit.aircraft.cell_lines import line_of
+    from briefkit.reading.document import Document
+
+    def line(file, key, text, after=""):
+        file.load()
+        start = file.text.index(after)
+        wanted = file.text[: file.text.index(text, start)].count("\n") + 1
+        assert line_of(Document(file.folder / "type.toml"), key) == wanted
+
+    stacked = f"source = \"2-4\"\nreading = \"interpolate\"\nchart = '''\n{THREE}\n'''"
+    three = file_2t.table("vne.power_on", stacked)
+    line(three, "vne.power_on.chart, row 10,000, column +40, at ≤2,006lb", "10,000   86")
+    line(three, "vne.power_on.chart, row 10,000, column +40, at ≤1,700lb", "10,000   96")
+    body = 'source = "2-4"\nreading_error = "1 kt"\nlines = \'\'\'\nft   kt indicated\n-20 degC: 0 112, 10,000 86\n'
+    printed = file_2t.table("vne.power_on", body + "+40 degC: 0 108, 10,000 61\n'''")
+    line(printed, "vne.power_on.lines, point 10,000, line +40 degC", "+40 degC: 0")
+    line(file_2t, "calibration.table, row 100", "100             98")
+    line(file_2t, "vne.power_on.chart, column 0", "ft \\ degC")
+    line(file_2t, "vne.power_off.constant", 'constant = "85 kt"')
+    kit = '[[configuration]]\nname = "doors off"\nsource = "p. 2"\n[configuration.power_on]\nreading = "interpolate"\n'
+    own = file_2t.added(f"{kit}chart = '''\n{THREE.split('at 2,006')[0].split(chr(10), 1)[1]}'''")
+    line(own, "configuration (doors off).power_on, row 10,000, column +40", "10,000   96", "doors off")
+    assert line_of(Document(file_2t.folder / "type.toml"), "configuration (floats).power_on, row 0") == 0
 
 
 # Made from one curve: VNE true = 42 m/s x sqrt(850 / loading), indicated by the 2T's calibration, whole knots.
