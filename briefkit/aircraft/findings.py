@@ -158,7 +158,8 @@ def _rising(key: str, chart: VneChart, unit: str) -> list[EntryFinding]:
     for axis, (kind, words) in _RISES.items():
         for index, before in _pairs(chart, axis):
             if chart.speeds[index] > chart.speeds[before] + _SLACK:
-                permitted = f"VNE that does not rise with {words} ({_text(chart, before, unit)} before it)"
+                lower = f"{_text(chart, before, unit)} before it, {place_of(chart, before)}: look at both"
+                permitted = f"VNE that does not rise with {words} ({lower})"
                 found.append(finding(kind, place_of(chart, index), key, _text(chart, index, unit), permitted))
     return [*found, *_out_of_line(key, chart, unit), *_uneven(key, chart)]
 

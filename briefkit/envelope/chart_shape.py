@@ -109,8 +109,8 @@ def _shapes(speeds: Floats) -> NDArray[np.object_]:
     flat = (known == highest) & ((known == highest).sum() > 1)
     warmer = np.concatenate([known[:, 1:], np.full_like(known[:, :1], -np.inf)], axis=1)
     # An edge runs in from the coldest column; a low cell with a higher one on its cold side is no edge.
-    level = flat | (known <= warmer)
-    cold = ~flat & np.logical_and.accumulate(level, axis=1)
+    # So is one beside a flat cell on its cold side, however the cells warmer than it go on.
+    cold = np.logical_and.accumulate(~flat & (known <= warmer), axis=1)
     shape = np.array([Shape.FALLING] * speeds.size, dtype=object).reshape(speeds.shape)
     shape[cold] = Shape.COLD
     shape[flat] = Shape.FLAT

@@ -8,7 +8,7 @@ import numpy as np
 import pytest
 
 from briefkit import units
-from briefkit.envelope.chart_shape import Shape, chart_shape
+from briefkit.envelope.chart_shape import Shape, _residuals, chart_shape
 from briefkit.physics import airspeed, atmosphere
 
 KT = units.KNOT
@@ -100,3 +100,19 @@ def test_a_chart_that_does_not_go_with_loading_is_told_as_a_whole(two_t):
     shape = chart_shape(three_variables(0.08)(two_t))
     assert not shape.collapses
     assert chart_shape(two_t).collapses
+
+
+def test_a_low_cell_beside_the_plateau_is_no_cold_edge(two_t):
+    """112, 112, 107 typed 89, 99: what is lower than its cold neighbour falls with something else than the cold."""
+    shape = chart_shape(spoiled(two_t, 1, 2, -18.0))
+    assert shape.index[shape.findings].tolist() == [[1, 2, 0, 0]]
+    assert not np.any(shape.shape == Shape.COLD)
+
+
+def test_one_cell_that_pulls_the_curve_is_named_alone():
+    """By construction: nine cells on one curve of loading, the first 20 kt off and its only near neighbour not."""
+    loading = np.array([470.0, 480.0, 650.0, 690.0, 710.0, 760.0, 840.0, 890.0, 940.0])
+    vne = 42.0 * np.sqrt(850.0 / loading)
+    vne[0] += 20.0 * KT
+    off = np.abs(_residuals(loading, vne)) > 2.0 * KT
+    assert np.nonzero(off)[0].tolist() == [0]
