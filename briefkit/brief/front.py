@@ -179,7 +179,7 @@ def if_it_starts(aircraft: Aircraft) -> Section:
     others = (
         "Light in the seat, or the rotor horn?" if cues.needs_low_g_caution(aircraft) else "The rotor horn, or sinking?"
     )
-    tail = f"{source}{'; ' + mirrored if mirrored else ''}. {others} Not this: “Which one is it?”, page 2."
+    tail = f"{source}{'; ' + mirrored if mirrored else ''}. {others} Not this: page 2."
     felt = cues.onset_words(aircraft)
     return Section("4. If it starts", before=(felt[:1].upper() + felt[1:], *sentences, tail))
 
