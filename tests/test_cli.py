@@ -297,6 +297,7 @@ def sign_all(folder):
         assert done.exit_code == 0, done.output
 
 
+@pytest.mark.slow
 def test_signing_by_hand_and_what_is_refused(company):
     folder = company / "vellmark-2t"
     done = run("sign", folder, "--role", "checked", "--code", "NRC-21", "--date", "2030-03-05")

@@ -100,6 +100,7 @@ def test_a_block_that_starts_on_the_line_of_its_quotes_points_at_the_right_line(
     assert [fault.line for fault in document.faults] == [4]
 
 
+@pytest.mark.slow
 @settings(suppress_health_check=[HealthCheck.function_scoped_fixture], deadline=None)
 @given(st.text(alphabet=st.sampled_from("0129.,;-+ \t\nkftdegCindicated\\ \u2212"), max_size=60))
 def test_any_text_is_a_chart_or_has_a_fault(tmp_path: Path, text: str) -> None:
@@ -109,6 +110,7 @@ def test_any_text_is_a_chart_or_has_a_fault(tmp_path: Path, text: str) -> None:
         assert not np.any(table.speeds <= 0.0)
 
 
+@pytest.mark.slow
 @settings(suppress_health_check=[HealthCheck.function_scoped_fixture], deadline=None)
 @given(row=st.integers(0, 3), column=st.integers(0, 4), cell=st.text(alphabet="0123456789.,-+ OlkFt?", max_size=5))
 def test_a_mistyped_cell_is_refused_at_its_row_or_changes_only_itself(

@@ -286,6 +286,7 @@ def test_the_2t_has_no_entry_findings(two_t: Aircraft) -> None:
     assert entry_findings(two_t) == []
 
 
+@pytest.mark.slow
 @pytest.mark.parametrize("name", ["pelquill-2t", "ormbrae-3f", "kvillarn-4h"])
 @settings(max_examples=40, deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture])
 @given(data=st.data())

@@ -47,12 +47,14 @@ def only(world: Path, today: dt.date = TODAY) -> Finding:
     return finding
 
 
+@pytest.mark.slow
 def test_a_complete_brief_has_nothing_but_notes(world: Path) -> None:
     assert serious(world) == []
     notes = findings(world / "vellmark-2t", TODAY)
     assert [note.place.rpartition(": ")[2] for note in notes if note.level is Level.NOTE] == ["rotor.lift_slope"]
 
 
+@pytest.mark.slow
 def test_the_demo_brief_is_blocked_because_it_is_invented_and_unsigned(examples: Path) -> None:
     found = findings(examples / "vellmark-2t", TODAY)
     blocking = [finding.place.rpartition(": ")[2] for finding in found if finding.level is Level.BLOCKS]
@@ -118,6 +120,7 @@ def test_a_missing_source_in_the_operation_blocks(world: Path) -> None:
     assert only(world).place.endswith("work_areas.vellmark")
 
 
+@pytest.mark.slow
 def test_cells_outside_the_calibration_are_noted(world: Path) -> None:
     (world / "vellmark-2t" / "deck.toml").unlink()  # one of its cases asks where the calibration then ends
     edit(world / "aircraft" / "pelquill-2t.toml", ("\n120             116", ""))
@@ -177,6 +180,7 @@ def test_a_revision_without_a_line_of_changes_blocks(world: Path) -> None:
     assert only(world).text == "no line for revision 1"
 
 
+@pytest.mark.slow
 def test_the_notebook_has_to_be_there_and_readable_and_outputs_are_noted(world: Path) -> None:
     (world / "vellmark-2t" / "deck.toml").unlink()  # one of its cases asks where the calibration then ends
     path = world / "vellmark-2t" / "brief.ipynb"
@@ -207,6 +211,7 @@ def test_a_whole_operator_folder_lists_a_shared_finding_once(world: Path) -> Non
     assert len(found) == 1
 
 
+@pytest.mark.slow
 def test_two_briefs_of_one_number_and_revision_block(world: Path) -> None:
     second = Path(shutil.copytree(world / "vellmark-2t", world / "second"))
     assert "NB-2T-001 rev 0 is also the brief in" in only(world).text
@@ -241,6 +246,7 @@ def test_a_faulty_deck_blocks_and_leaves_the_page_a_draft(signed: Path, signing)
     assert standing(load_brief(signed), TODAY).mark == DRAFT
 
 
+@pytest.mark.slow
 def test_no_finding_holds_a_path_of_this_machine(world: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     """From anywhere, by any path: places are those inside the operator folder."""
     for other in ("corrant-3f", "ysbrane-4h"):

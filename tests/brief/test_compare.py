@@ -32,6 +32,7 @@ def named(found: list[Difference]) -> dict[str, tuple[str, str, bool]]:
     return {one.name: (one.old, one.new, one.less_conservative) for one in found}
 
 
+@pytest.mark.slow
 def test_two_of_a_kind_differ_in_nothing(revisions) -> None:
     _, _, differences = revisions
     assert differences() == []
@@ -40,6 +41,7 @@ def test_two_of_a_kind_differ_in_nothing(revisions) -> None:
 CHART_ROW = "6,000        105    96     88     80"
 
 
+@pytest.mark.slow
 def test_a_raised_vne_cell_is_less_conservative_and_a_lowered_one_is_not(revisions, signing) -> None:
     """G37: cells. The manual's own figures are 105, 96, 88, 80 KIAS."""
     _, new, differences = revisions
@@ -52,6 +54,7 @@ def test_a_raised_vne_cell_is_less_conservative_and_a_lowered_one_is_not(revisio
     assert len(cells) == 2
 
 
+@pytest.mark.slow
 def test_a_row_left_out_raises_what_is_read_between_its_neighbours(revisions, signing) -> None:
     """Halfway from 4,000 to 8,000 ft: 112 and 95 make 103.5, under the printed 105; 106 and 87 make 96.5, over 96."""
     _, new, differences = revisions
@@ -80,6 +83,7 @@ def test_interpolating_where_the_lower_entry_held_is_less_conservative(revisions
     assert found["VNE power on, between entries"] == ("next lower VNE", "interpolate", True)
 
 
+@pytest.mark.slow
 @pytest.mark.parametrize(
     ("old", "new", "name", "less"),
     [
@@ -168,6 +172,7 @@ def two_brief(examples: Path):
     return load_brief(examples / "vellmark-2t")
 
 
+@pytest.mark.slow
 def test_words_dates_sources_and_cells_are_listed(revisions, signing, nb) -> None:
     _, new, differences = revisions
     signing.edit(new / "brief.toml", ("2032-02-29", "2031-12-31"), ("OM-C rev 9", "OM-C rev 10"))

@@ -49,6 +49,7 @@ def text(*sections):
     return "\n".join(found)
 
 
+@pytest.mark.slow
 def test_an_unsigned_page_is_a_draft(page):
     assert page.mark == DRAFT
     assert page.running.startswith("DRAFT: not for crews | NB-2T-001 rev 0 | expires 29 Feb 2032")

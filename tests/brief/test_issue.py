@@ -65,6 +65,7 @@ def revised(folder: Path, signing, *pairs: tuple[str, str], effective: str = "20
     return signing(folder)
 
 
+@pytest.mark.slow
 def test_a_signed_brief_is_issued_registered_and_archived(issued) -> None:
     folder, page, entry = issued
     register = load_register(folder.parent)
@@ -86,6 +87,7 @@ def test_the_register_and_the_archive_revoke_no_signature(issued) -> None:
     assert stands_against(findings(folder, IN_FORCE)) == []
 
 
+@pytest.mark.slow
 def test_an_archive_holds_no_outputs_and_no_metadata(signed: Path, tmp_path: Path) -> None:
     path = signed / "brief.ipynb"
     notebook = json.loads(path.read_text(encoding="utf-8"))
@@ -106,6 +108,7 @@ def test_a_draft_is_never_issued(complete: Path, tmp_path: Path) -> None:
     assert not (tmp_path / "out").exists()
 
 
+@pytest.mark.slow
 def test_a_page_edited_after_signing_is_never_issued(signed: Path, tmp_path: Path, signing) -> None:
     """G36: swap after signing."""
     signing.edit(signed.parent / "operation.toml", ('"1,800 lb"', '"1,810 lb"'))
@@ -113,6 +116,7 @@ def test_a_page_edited_after_signing_is_never_issued(signed: Path, tmp_path: Pat
         issue(signed, tmp_path / "out", DAY, make)
 
 
+@pytest.mark.slow
 def test_a_file_changed_while_it_is_issued_stops_it(signed: Path, tmp_path: Path) -> None:
     """G36: between looking and writing."""
 
@@ -126,6 +130,7 @@ def test_a_file_changed_while_it_is_issued_stops_it(signed: Path, tmp_path: Path
     assert not (signed.parent / "register.toml").exists()
 
 
+@pytest.mark.slow
 def test_a_revision_is_issued_once(issued, tmp_path: Path) -> None:
     folder, page, _ = issued
     before = page.read_bytes(), (folder.parent / "register.toml").read_bytes()
@@ -180,6 +185,7 @@ def test_only_a_released_page_carries_no_mark(signed: Path, signing) -> None:
     assert standing(load_brief(signed), IN_FORCE).mark == DRAFT
 
 
+@pytest.mark.slow
 def test_cells_that_were_not_saved_make_a_draft(signed: Path, nb) -> None:
     cells = [nb.text("Something else")]
     known = standing(load_brief(signed), IN_FORCE, cells)
@@ -195,6 +201,7 @@ def test_a_brief_loaded_before_an_edit_makes_a_draft(signed: Path, signing) -> N
     assert standing(load_brief(signed), IN_FORCE).mark == ""
 
 
+@pytest.mark.slow
 @pytest.mark.parametrize(
     ("day", "mark"),
     [(dt.date(2032, 2, 28), ""), (dt.date(2032, 2, 29), "EXPIRED 29 Feb 2032: not for crews")],
@@ -307,6 +314,7 @@ def test_an_archive_that_is_gone_or_altered_blocks(issued, signing) -> None:
         assert found.text.startswith("the last issued revision cannot be read")
 
 
+@pytest.mark.slow
 def test_what_crews_were_told_is_what_the_page_printed(issued, signing) -> None:
     """G37: the rows of the issued page are on record; another version of briefkit cannot rewrite them."""
     folder, _, _ = issued

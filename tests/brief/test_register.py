@@ -84,6 +84,7 @@ def test_what_is_added_is_read_back_and_nothing_else_changes(tmp_path: Path) -> 
     assert len(register.documents) == 5
 
 
+@pytest.mark.slow
 @given(
     title=st.text(st.characters(blacklist_categories=("Cs", "Cc")), min_size=1).filter(str.strip),
     masses=st.lists(st.sampled_from(["2,006 lb", "910 kg"]), max_size=3),
@@ -168,6 +169,7 @@ def test_current_sources_have_nothing_against_them(complete: Path, signing) -> N
     assert serious(signing(registered(complete, DOCUMENTS))) == []
 
 
+@pytest.mark.slow
 def test_a_revised_manual_blocks_every_number_from_it_and_names_the_briefs(complete: Path, signing) -> None:
     """G14: a source older than its registered current revision; and the signatures themselves still hold."""
     folder = signing(registered(complete, DOCUMENTS.replace('revision = "4"', 'revision = "5"')))
@@ -180,6 +182,7 @@ def test_a_revised_manual_blocks_every_number_from_it_and_names_the_briefs(compl
     assert [one.text for one in over] == [f"flight manual (pelquill-2t), now rev 5, touches {folder.name}"]
 
 
+@pytest.mark.slow
 def test_a_source_newer_than_the_register_or_without_a_revision_blocks(complete: Path, signing) -> None:
     folder = registered(complete, DOCUMENTS)
     signing.edit(complete / "aircraft" / "pelquill-2t.toml", ("flight manual 5-2 rev 4", "flight manual 5-2 rev 5"))
@@ -189,6 +192,7 @@ def test_a_source_newer_than_the_register_or_without_a_revision_blocks(complete:
     assert any("does not say which revision" in text for text in found)
 
 
+@pytest.mark.slow
 def test_a_document_past_its_review_blocks(complete: Path, signing) -> None:
     """G14: review date passed."""
     text = DOCUMENTS.replace('name = "OM-B"', 'name = "OM-B"\nreview = 2030-06-01')
@@ -197,6 +201,7 @@ def test_a_document_past_its_review_blocks(complete: Path, signing) -> None:
     assert serious(registered(complete, text.replace("2030-06-01", "2030-06-02"))) == []
 
 
+@pytest.mark.slow
 def test_an_issued_page_that_rests_on_a_revised_document_is_to_be_recalled(complete: Path) -> None:
     path = complete / "register.toml"
     path.write_text(DOCUMENTS.replace('revision = "11"', 'revision = "12"'), encoding="utf-8")

@@ -129,6 +129,7 @@ def test_content_hidden_in_a_text_block_that_looks_like_a_signature_is_covered(b
     assert seal_module._brief_toml(brief / "brief.toml") != one
 
 
+@pytest.mark.slow
 @given(source=st.text(max_size=60), other=st.text(max_size=60))
 @settings(max_examples=40, deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture])
 def test_two_notebooks_have_one_seal_only_if_their_words_are_the_same(brief: Path, source: str, other: str) -> None:

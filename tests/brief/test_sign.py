@@ -25,6 +25,7 @@ def said(folder: Path) -> list[str]:
     return [text for text, _ in problems(brief, seal_of(brief.identity))]
 
 
+@pytest.mark.slow
 def test_a_brief_signed_by_three_has_nothing_against_release(signed: Path) -> None:
     """G35, the good case: computed page and all."""
     assert said(signed) == []

@@ -169,6 +169,7 @@ def test_level_at_full_rotor_speed_it_is_the_manuals_vne(two_t, kind):
     np.testing.assert_array_equal(answers.ias[usable], answers.vne[usable])
 
 
+@pytest.mark.slow
 @pytest.mark.parametrize("kind", KINDS)
 def test_covered_bank_is_where_the_chart_ends(two_t, kind):
     aircraft = replace(two_t, vne=KINDS[kind])

@@ -103,6 +103,7 @@ def test_never_above_the_manuals_vne(two_t):
     assert np.isnan(answers.ias[~usable]).all()
 
 
+@pytest.mark.slow
 def test_agrees_with_a_brute_force_search(two_t):
     """A 25 ft x 0.25 C search, written out here from the definition, never finds 0.02 kt more."""
     rng = np.random.default_rng(20303)
@@ -141,6 +142,7 @@ def brute_force(aircraft, many, i):
     return None if back < 44.0 else float(np.interp(back, (44, 62, 80, 98, 116), (40, 60, 80, 100, 120)))
 
 
+@pytest.mark.slow
 @settings(max_examples=60, deadline=None)
 @given(
     height=st.floats(0, 9900), oat=st.floats(-19, 29), mass=st.floats(1301, 2006), bank=st.floats(0, 40),
@@ -263,6 +265,7 @@ def permitted(aircraft, rng, count, load=(1.0, 1.0), rotor=(1.0, 1.0)):
     )
 
 
+@pytest.mark.slow
 def test_a_climb_can_only_lower_the_answer(two_t):
     turn = Condition(mass="1,800 lb", pressure_altitude="8,000 ft", oat="20 degC", bank="30 deg")
     level = equivalent_vne(two_t, turn).ias

@@ -80,6 +80,7 @@ def test_1e_and_7_guard_the_rotor_speed(two_t, four_h):
         equivalent_vne(two_t, here.with_(rotor_speed="90 %"))
 
 
+@pytest.mark.slow
 def test_2_light_is_different(two_t):
     light = Condition(mass="1,411 lb", pressure_altitude="5,210 ft", oat="36 degC", bank="30 deg")
     assert equivalent_vne(two_t, light).set_by is SetBy.MANUAL_VNE

@@ -35,6 +35,7 @@ def test_four_rules_with_their_signs(rules):
     assert [rule.step for rule in rules] == ["+1,000 ft", "+10 °C", "+100 lb", "−1 %"]
 
 
+@pytest.mark.slow
 def test_each_rule_holds_within_a_knot_over_its_range(two_t, rules):
     at = equivalent_vne(two_t, PLANNED).ias
     for rule in rules:
@@ -62,6 +63,7 @@ def test_a_stated_climb_is_in_the_set_by_table(two_t, operation):
     assert heavy[1] > heavy[0] + 1.0
 
 
+@pytest.mark.slow
 def test_set_by_table_is_the_single_answers(two_t, operation):
     fleet, area = operation.fleet["pelquill-2t"], operation.work_areas["vellmark"]
     rows = set_by_table(two_t, fleet, (area,))

@@ -34,6 +34,7 @@ def test_onset_speed_is_where_the_tip_reaches_the_angle(two_t):
     np.testing.assert_allclose(np.degrees(tip_angle_at(rotor, many, speed)), 12.0, atol=1e-5)
 
 
+@pytest.mark.slow
 def test_onset_agrees_with_a_plain_bisection(two_t):
     rotor, many = rotor_of(two_t), Conditions.of(SIX)
     low, high = np.full(6, 20.0), np.full(6, 70.0)

@@ -120,6 +120,7 @@ def test_ordinary_words_with_those_letters_pass(parts):
     assert "finance" in still(Exhibit(dataclasses.replace(parts, caption="Banana, information, finance.")))
 
 
+@pytest.mark.slow
 def test_a_bare_figure_is_named_by_its_title(scales, figure):
     assert texts(fragment(still(line_figure(scales, figure))), f"figure/{SVG}svg/{SVG}title") == ["Named"]
     with pytest.raises(ValueError, match="needs a title"):

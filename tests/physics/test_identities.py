@@ -76,6 +76,7 @@ def motion(pitch: float, through: float, flap: tuple[float, float, float] = (0.0
     return np.array([[pitch, 0.0, 0.0, *flap, through, 0.0, 0.0]])
 
 
+@pytest.mark.slow
 @pytest.mark.parametrize("row", range(6))
 def test_thrust_integrals_of_tr_716(table: Table, row: int) -> None:
     line = table("naca_tr716_thrust.csv")[row]

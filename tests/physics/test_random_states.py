@@ -225,6 +225,7 @@ def test_any_state_is_solved_or_has_a_reason(
     sound(trim(rotor, state, section=section))
 
 
+@pytest.mark.slow
 @settings(max_examples=60, deadline=None, derandomize=True)
 @given(
     name=st.sampled_from(list(MANUALS)),

@@ -159,6 +159,7 @@ def test_slopes_of_the_equations(
         assert np.abs(slopes[:, :, number] - differenced).max() < 1e-3 * np.abs(differenced).max()
 
 
+@pytest.mark.slow
 def test_grid_converges(
     rotor: Rotor, mass: tuple[float, float], state_of: StateOf, record_property: Callable[[str, object], None]
 ) -> None:
@@ -267,6 +268,7 @@ def test_refused_outside_the_model(rotor: Rotor, mass: tuple[float, float], stat
         assert np.isnan(flight.angle).all()
 
 
+@pytest.mark.slow
 def test_past_the_greatest_thrust_there_is_no_trim(rotor: Rotor, mass: tuple[float, float], state_of: StateOf) -> None:
     # With the stalling section thrust has a maximum; a load past it has a reason and its last residual, no number.
     load = np.linspace(1.0, 2.2, 25)

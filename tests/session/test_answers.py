@@ -38,6 +38,7 @@ def calibrated_kt(mach: float, static: float) -> float:
     return math.sqrt(5.0 * ((impact / 101325.0 + 1.0) ** (1 / 3.5) - 1.0)) * 340.294 * 3600 / 1852
 
 
+@pytest.mark.slow
 def test_a_turn_by_hand(two_t, operation):
     """1,800 lb, 8,000 ft, +20 °C, 30°: with a pencil, the typed chart, and an atmosphere that is not ours."""
     load = 1.0 / math.cos(math.radians(30.0))

@@ -229,6 +229,7 @@ def test_nothing_is_drawn_from_the_name_of_a_type(operator):
     assert generate(load_aircraft(path), operation, "ysbrane") == before.replace("Kvillarn 4H", "Something 9Z")
 
 
+@pytest.mark.slow
 def test_the_roll_is_the_handbook_s_mirrored(operator):
     """G22, G23: FAA-H-8083-21B ch. 2 and 11, "usually to the left"; a clockwise rotor mirrors it."""
     operation = load_operation(operator)
@@ -240,6 +241,7 @@ def test_the_roll_is_the_handbook_s_mirrored(operator):
     assert "usually left" not in right
 
 
+@pytest.mark.slow
 def test_a_written_deck_is_never_written_over(operator, brief):
     (brief / "deck.toml").unlink()
     path = write_deck(brief)

@@ -36,6 +36,7 @@ def revise(operator, old, new):
     file.write_text(text.replace(old, new), encoding="utf-8")
 
 
+@pytest.mark.slow
 def test_nothing_differs_on_the_day(path, deck):
     done = recompute(read_log(path))
     assert done.steps == 2 * len(deck.cases)
@@ -43,6 +44,7 @@ def test_nothing_differs_on_the_day(path, deck):
     assert done.notes == ()
 
 
+@pytest.mark.slow
 def test_a_revised_chart_says_what_differs_and_by_how_much(path, operator):
     """The cell 8,000 ft, +40 is typed 66 for 70: halfway, at +30, VNE falls by 2 (linear interpolation)."""
     revise(operator, "87     79     70", "87     79     66")
@@ -59,6 +61,7 @@ def test_a_revised_chart_says_what_differs_and_by_how_much(path, operator):
     assert "Cold morning, light: stall is not what decides" not in untouched
 
 
+@pytest.mark.slow
 def test_a_changed_file_with_the_same_figures_is_only_noted(path, operator):
     revise(operator, "# Invented aircraft.", "# An invented aircraft.")
     done = recompute(read_log(path))
@@ -66,6 +69,7 @@ def test_a_changed_file_with_the_same_figures_is_only_noted(path, operator):
     assert len(done.notes) == 1
 
 
+@pytest.mark.slow
 def test_an_altered_output_shows(path):
     path.write_bytes(path.read_bytes().replace(b'"reduction":10.0', b'"reduction":5.0'))
     done = recompute(read_log(path))
@@ -86,6 +90,7 @@ def test_inputs_nobody_could_have_typed_are_refused_in_words(path):
     assert any(one.what == "inputs" and "refused" in one.today for one in recompute(read_log(path)).differences)
 
 
+@pytest.mark.slow
 def test_a_log_that_was_moved_needs_its_operator(path, operator, tmp_path_factory):
     moved = tmp_path_factory.mktemp("elsewhere") / path.name
     moved.write_bytes(path.read_bytes())
@@ -130,6 +135,7 @@ def test_the_command(path, operator, tmp_path):
     assert "not a session log" in done.output
 
 
+@pytest.mark.slow
 def test_a_torn_log_is_reported_by_the_command(path):
     path.write_bytes(path.read_bytes()[:-20])
     done = CliRunner().invoke(app, ["recompute", str(path)])

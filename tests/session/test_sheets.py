@@ -116,6 +116,7 @@ def test_no_deck_no_pages(brief, example):
     assert deck_findings(load_brief(brief)) == []
 
 
+@pytest.mark.slow
 def test_check_hears_of_a_faulty_deck(brief):
     edited(brief, 'most_bank = "20 deg"', 'most_bank = "30 deg"')
     (found,) = deck_findings(load_brief(brief))

@@ -250,6 +250,7 @@ def test_an_area_the_manual_forbids_is_raised(two_t, fleet, operation, models_op
     assert models_open() == before
 
 
+@pytest.mark.slow
 def test_what_sets_the_answer_where(shown, two_t, live, fleet, operation, plain):
     areas = [operation.work_areas[key] for key in ("vellmark", "sundreth")]
     parts = shown(SetByTable, two_t, fleet, areas).still_parts()

@@ -64,6 +64,7 @@ def test_a_case_goes_predict_manual_computed_decide_and_every_step_is_on_the_log
     assert log_of(panel).faults == ()
 
 
+@pytest.mark.slow
 def test_no_answer_is_sent_to_the_browser_before_it_is_shown(panel, deck, from_browser, press):
     said = deck.answers(deck.cases[0])
     hidden = [said.computed.text, said.manual.where, deck.cases[0].teaching, deck.cases[0].expected]
