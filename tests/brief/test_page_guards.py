@@ -144,4 +144,6 @@ def test_a_link_does_not_lead_out_of_the_operator_folder(operator, brief, tmp_pa
 def test_a_link_within_the_operator_folder_may_stand(operator, brief, tmp_path):
     (brief / "brief.ipynb").rename(operator / "shared.ipynb")
     (brief / "brief.ipynb").symlink_to(operator / "shared.ipynb")
-    export.stays_inside(load_brief(brief).identity)
+    identity = load_brief(brief).identity
+    export.stays_inside(identity)  # raises where a link leads out, as the test above
+    assert identity.notebook.resolve() == (operator / "shared.ipynb").resolve()
